@@ -1,0 +1,1 @@
+"""Arrays in, frozen records of arrays out; NumPy and SciPy only."""

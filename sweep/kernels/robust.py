@@ -1,0 +1,164 @@
+"""Heteroskedasticity-consistent Wald statistics of a stack.
+
+With the orthonormal columns Q of a regression's factor, the estimate of the restricted
+block is b = L_cc⁻ᵀ Q_cᵀy and its sandwich (White 1980; MacKinnon & White 1985) is
+L_cc⁻ᵀ M L_cc⁻¹ with M = Q_cᵀ diag(ω e²) Q_c, so that
+
+    b′V⁻¹b = (Q_cᵀy)′ M⁻¹ (Q_cᵀy).
+
+ω is 1 (HC0), T/(T−k) (HC1), 1/(1−h) (HC2), 1/(1−h)² (HC3), h the leverage in the whole
+regression.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+from dataclasses import dataclass
+
+import numpy as np
+
+from sweep.kernels.layout import Floats, Ints, Layout, Moments
+from sweep.kernels.stacks import Flag, Regression, Solver, StackFit, forward
+
+__all__ = ["COVARIANCES", "RobustFit", "robust_stack"]
+
+COVARIANCES = ("HC0", "HC1", "HC2", "HC3")
+FULL_LEVERAGE = 1e-10
+"""1 − h below which an observation counts as fitted exactly."""
+
+
+@dataclass(frozen=True, slots=True)
+class RobustFit:
+    """One covariance's Wald statistics.
+
+    Attributes
+    ----------
+    wald : ndarray, shape (w, e)
+        b′V⁻¹b, NaN where it does not exist.
+    coefficient_sum_error : ndarray, shape (w, e)
+        Standard error of the coefficient sum, standardised units.
+    exact_row : ndarray of bool, shape (w,)
+        Where HC2 and HC3 do not exist because an observation has leverage one.
+    """
+
+    wald: Floats
+    coefficient_sum_error: Floats
+    exact_row: np.ndarray
+
+
+def robust_stack(
+    moments: Moments,
+    select: Ints,
+    layout: Layout,
+    start: int,
+    regression: Regression,
+    fit: StackFit,
+    covariances: Sequence[str],
+) -> dict[str, RobustFit]:
+    """Return heteroskedasticity-consistent Wald statistics for every covariance asked for.
+
+    Parameters
+    ----------
+    moments, select, layout, start, regression
+        As for :func:`sweep.kernels.stacks.fit_stack`.
+    fit : StackFit
+        Its result; windows flagged there stay NaN.
+    covariances : sequence of str
+        Members of :data:`COVARIANCES`.
+
+    Returns
+    -------
+    dict of str to RobustFit
+    """
+    count = select.size, regression.effects.size
+    results = {
+        name: RobustFit(np.full(count, np.nan), np.full(count, np.nan), np.zeros(select.size, bool))
+        for name in covariances
+    }
+    fine = np.flatnonzero(fit.flag == Flag.FINE)
+    order = regression.order
+    for inside, rows in moments.design(select[fine], layout, start) if fine.size else []:
+        members = fine[inside]
+        for part in np.array_split(np.arange(members.size), _pieces(rows, members.size)):
+            _fill(rows[part][:, :, order], fit, members[part], regression, results)
+    return results
+
+
+def _pieces(rows: Floats, members: int) -> int:
+    """Return how many pieces keep a stack's working rows near 16 MB."""
+    return int(min(members, max(1, rows.nbytes // 2**24)))
+
+
+def _fill(
+    matrix: Floats,
+    fit: StackFit,
+    members: np.ndarray,
+    regression: Regression,
+    results: dict[str, RobustFit],
+) -> None:
+    k, q = regression.regressors, regression.restricted.size
+    basis = _orthonormal(matrix[:, :, :k], fit.lower[members], fit.solver[members] == Solver.QR, k)
+    leverage = (basis**2).sum(axis=2)
+    block = basis[:, :, k - q :]
+    ones = np.ones((members.size, q))
+    direction = forward(fit.lower[members][:, k - q : k, k - q : k], ones)
+    for effect in range(regression.effects.size):
+        observed = matrix[:, :, k + effect]
+        projection = np.einsum("wtk,wt->wk", basis, observed)
+        residual = observed - np.einsum("wtk,wk->wt", basis, projection)
+        for name, result in results.items():
+            weight, exact = _weight(name, leverage, k)
+            middle = np.einsum("wti,wt,wtj->wij", block, weight * residual**2, block, optimize=True)
+            wald, error = _wald(middle, projection[:, k - q :], direction)
+            wald[exact], error[exact] = np.nan, np.nan
+            result.wald[members, effect] = wald
+            result.coefficient_sum_error[members, effect] = error
+            result.exact_row[members] |= exact
+
+
+def _orthonormal(columns: Floats, lower: Floats, by_qr: np.ndarray, k: int) -> Floats:
+    """Return the orthonormal columns of each regression, shape (w, t, k)."""
+    basis = np.empty_like(columns)
+    plain = ~by_qr
+    if plain.any():
+        inverse = np.linalg.inv(lower[plain][:, :k, :k])
+        basis[plain] = columns[plain] @ inverse.transpose(0, 2, 1)
+    if by_qr.any():
+        unitary, upper = np.linalg.qr(columns[by_qr])
+        basis[by_qr] = unitary * np.where(np.einsum("wcc->wc", upper) < 0, -1.0, 1.0)[:, None, :]
+    return basis
+
+
+def _weight(name: str, leverage: Floats, k: int) -> tuple[Floats, np.ndarray]:
+    """Return ω, shape (w, t), and where the covariance does not exist, shape (w,)."""
+    count = leverage.shape[1]
+    if name == "HC0":
+        return np.ones_like(leverage), np.zeros(leverage.shape[0], bool)
+    if name == "HC1":
+        return np.full_like(leverage, count / (count - k)), np.zeros(leverage.shape[0], bool)
+    room = 1.0 - leverage
+    exact = (room < FULL_LEVERAGE).any(axis=1)
+    room = np.where(room < FULL_LEVERAGE, 1.0, room)
+    return room ** (-1.0 if name == "HC2" else -2.0), exact
+
+
+def _wald(middle: Floats, projection: Floats, direction: Floats) -> tuple[Floats, Floats]:
+    """Return b′V⁻¹b and the standard error of the coefficient sum, each (w,)."""
+    error = np.sqrt(np.einsum("wi,wij,wj->w", direction, middle, direction, optimize=True))
+    wald = np.full(middle.shape[0], np.nan)
+    _solve_into(middle, projection, wald, np.arange(wald.size))
+    return wald, error
+
+
+def _solve_into(middle: Floats, projection: Floats, wald: Floats, members: np.ndarray) -> None:
+    """Solve the members of a stack, halving it around those that are singular."""
+    try:
+        factor = np.linalg.cholesky(middle[members])
+    except np.linalg.LinAlgError:
+        if members.size == 1:
+            return
+        half = members.size // 2
+        _solve_into(middle, projection, wald, members[:half])
+        _solve_into(middle, projection, wald, members[half:])
+        return
+    wald[members] = (forward(factor, projection[members]) ** 2).sum(axis=1)

@@ -1,0 +1,115 @@
+"""Cross products of windows from their own rows.
+
+The route for windows that running sums cannot serve: fixed samples, episodes left out,
+transformations taken inside the window, Fourier terms of windows of unequal length.
+"""
+
+from __future__ import annotations
+
+from collections import defaultdict
+from dataclasses import dataclass
+
+import numpy as np
+
+from sweep.kernels.layout import Floats, Gram, Ints, Layout
+
+__all__ = ["RowMoments", "WindowRows"]
+
+
+@dataclass(frozen=True, slots=True)
+class WindowRows:
+    """One window.
+
+    Attributes
+    ----------
+    values : ndarray, shape (t, m)
+        Transformed series, NaN where they do not exist or touch an episode left out.
+    terms : ndarray, shape (t, d)
+        Deterministic columns; column 0 is the constant.
+    exists : ndarray of bool, shape (t, m)
+        Where the series exist, episodes disregarded: what bounds the regression's rows.
+    """
+
+    values: Floats
+    terms: Floats
+    exists: np.ndarray
+
+
+class RowMoments:
+    """Cross products taken row by row.
+
+    Parameters
+    ----------
+    windows : list of WindowRows
+        One entry a window.
+    centre : bool
+        Subtract the window's means; only valid when every regression has a constant.
+    """
+
+    def __init__(self, windows: list[WindowRows], *, centre: bool) -> None:
+        self.terms = windows[0].terms.shape[1]
+        self._windows = windows
+        self._values: list[Floats] = []
+        scales = []
+        for window in windows:
+            rows, spread = _standardise(window.values, centre=centre)
+            self._values.append(rows)
+            scales.append(spread)
+        self.scale: Floats = np.array(scales)
+
+    def usable(self, columns: tuple[int, ...]) -> tuple[Ints, Ints]:
+        """Return first and last row, each (w,), at which all the series exist."""
+        bounds = [_common_rows(window.exists[:, list(columns)]) for window in self._windows]
+        both = np.array(bounds, dtype=np.int64)
+        return both[:, 0], both[:, 1]
+
+    def gram(self, select: Ints, layout: Layout, start: int) -> Gram:
+        """Return the cross products over the complete rows ``first + start`` … ``last``."""
+        products = np.empty((select.size, layout.size, layout.size))
+        observations = np.empty(select.size, dtype=np.int64)
+        for position, rows in enumerate(self._designs(select, layout, start)):
+            products[position] = rows.T @ rows
+            observations[position] = rows.shape[0]
+        return Gram(products, np.ones((select.size, layout.size)), observations)
+
+    def design(self, select: Ints, layout: Layout, start: int) -> list[tuple[Ints, Floats]]:
+        """Return (positions in ``select``, rows (w, t, c)) in groups of equal length."""
+        groups: dict[int, list[tuple[int, Floats]]] = defaultdict(list)
+        for position, rows in enumerate(self._designs(select, layout, start)):
+            groups[rows.shape[0]].append((position, rows))
+        return [
+            (np.array([p for p, _ in members], dtype=np.int64), np.stack([r for _, r in members]))
+            for _, members in sorted(groups.items())
+        ]
+
+    def _designs(self, select: Ints, layout: Layout, start: int) -> list[Floats]:
+        first, last = self.usable(layout.columns)
+        return [self._design(int(w), layout, int(first[w]) + start, int(last[w])) for w in select]
+
+    def _design(self, w: int, layout: Layout, first: int, last: int) -> Floats:
+        values = self._values[w]
+        count = max(last - first + 1, 0)
+        rows = np.empty((count, layout.size))
+        if not count:
+            return rows
+        rows[:, : self.terms] = self._windows[w].terms[first : last + 1]
+        for position, (column, lag) in enumerate(layout.series(), start=self.terms):
+            rows[:, position] = values[first - lag : last - lag + 1, column]
+        return rows[np.isfinite(rows).all(axis=1)]
+
+
+def _common_rows(exists: np.ndarray) -> tuple[int, int]:
+    """Return the first and last row at which every series exists, (0, -1) if none."""
+    where = np.flatnonzero(exists.all(axis=1))
+    return (int(where[0]), int(where[-1])) if where.size else (0, -1)
+
+
+def _standardise(values: Floats, *, centre: bool) -> tuple[Floats, Floats]:
+    """Return the window in standard units, NaN kept, and the units used (m,)."""
+    exists = np.isfinite(values)
+    count = np.maximum(exists.sum(axis=0), 1)
+    mean = np.where(exists, values, 0.0).sum(axis=0) / count
+    deviation = values - mean
+    spread = np.sqrt((np.where(exists, deviation, 0.0) ** 2).sum(axis=0) / count)
+    spread = np.where(spread > 0, spread, 1.0)
+    return (deviation if centre else values) / spread, spread
