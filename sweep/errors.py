@@ -26,7 +26,8 @@ class Fault:
     mend: str = ""
 
     def __str__(self) -> str:
-        text = f"{self.place}: {self.problem}."
+        stop = "" if self.problem.endswith("?") else "."
+        text = f"{self.place}: {self.problem}{stop}"
         return f"{text} {self.mend}" if self.mend else text
 
 

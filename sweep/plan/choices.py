@@ -17,7 +17,7 @@ __all__ = [
     "DeterministicChoice",
     "LagChoice",
     "MeasureChoice",
-    "TestChoice",
+    "ProcedureChoice",
     "TransformationChoice",
     "WindowChoice",
 ]
@@ -161,7 +161,7 @@ class TransformationChoice(Choice):
 
 
 @dataclass(frozen=True, slots=True)
-class TestChoice(Choice):
+class ProcedureChoice(Choice):
     """The statistic and its reference law.
 
     Attributes

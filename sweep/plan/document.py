@@ -1,0 +1,219 @@
+"""The plan file as a validated document: what may be written, nothing of what it means yet."""
+
+from __future__ import annotations
+
+from typing import Annotated, Any, Literal, get_args
+
+from pydantic import AfterValidator, Field, StrictInt, StrictStr, WithJsonSchema, model_validator
+from pydantic.json_schema import SkipJsonSchema
+
+from sweep.plan.suggest import suggestion
+from sweep.plan.tables import (
+    CRITERIA,
+    STATISTICS,
+    TRANSFORMATIONS,
+    TRENDS,
+    DeterministicTable,
+    LagTable,
+    MeasureTable,
+    ProcedureTable,
+    Table,
+    TransformationTable,
+    WindowTable,
+    _refuse,
+    anything_of,
+)
+
+__all__ = ["AXIS_KEYS", "PlanDocument"]
+
+# Store name → key in [axes] (plural) and in [baseline] and rules (singular).
+AXIS_KEYS = {
+    "lags": ("lags", "lags"),
+    "deterministics": ("deterministics", "deterministics"),
+    "window": ("windows", "window"),
+    "transformation": ("transformations", "transformation"),
+    "test": ("tests", "test"),
+    "conditioning": ("conditioning", "conditioning"),
+    "measures": ("measures", "measures"),
+}
+
+Frequencies = Literal["annual", "quarterly", "monthly", "weekly", "business daily", "daily"]
+
+
+def _lag(value: Any) -> Any:
+    known = get_args(CRITERIA)
+    if isinstance(value, str):
+        if value not in known:
+            _refuse(f'"{value}" is not a criterion' + suggestion(value, known))
+    elif isinstance(value, bool) or not isinstance(value, int):
+        _refuse("a lag order is a whole number or the name of a criterion")
+    elif value < 1:
+        _refuse(f"{value} is not a lag order; orders start at 1")
+    return value
+
+
+LagPlain = Annotated[
+    Any,
+    AfterValidator(_lag),
+    WithJsonSchema({"anyOf": [{"type": "integer", "minimum": 1}, {"enum": get_args(CRITERIA)}]}),
+]
+LagEntry = anything_of(LagTable, LagPlain)
+DeterministicEntry = anything_of(DeterministicTable, TRENDS)
+WindowEntry = anything_of(WindowTable, Literal["full sample"])
+TransformationEntry = anything_of(TransformationTable, TRANSFORMATIONS)
+ProcedureEntry = anything_of(ProcedureTable, STATISTICS)
+Conditioning = Literal["given", "pairwise", "leave one out", "every subset"]
+MeasureEntry = anything_of(MeasureTable, StrictStr)
+
+
+class DataTable(Table):
+    """Where the series are."""
+
+    file: StrictStr = Field(description="CSV, Parquet or Excel; relative to the plan file.")
+    date: StrictStr = Field(description="Column that holds the dates.")
+    frequency: Frequencies = Field(description="How often the series are observed.")
+    calendar: Literal["every period", "as observed"] = Field(
+        default="every period",
+        description="'as observed': consecutive rows are consecutive periods (weekly, daily).",
+    )
+    source: StrictStr = Field(default="", description="Where the data come from.")
+    licence: StrictStr = Field(default="", description="Terms under which they are used.")
+
+
+class ExogenousTable(Table):
+    """A regressor that is not modelled: current value and lags 1 to ``lags``."""
+
+    series: StrictStr = Field(description="Column of the data file.")
+    lags: StrictInt = Field(default=0, ge=0, description="Lags beside the current value.")
+
+
+class FindingTable(Table):
+    """A claim: cause, effect, and what it is conditioned on."""
+
+    name: StrictStr = Field(min_length=1, description="Short name of the finding.")
+    cause: StrictStr
+    effect: StrictStr
+    given: list[StrictStr] = Field(default=[], description="Conditioning series.")
+    claim: Literal["leads", "leads one way", "leads both ways", "does not lead"] = "leads"
+    sign: Literal["positive", "negative"] | None = None
+    reverse_sign: Literal["positive", "negative"] | None = None
+    exogenous: list[ExogenousTable] = Field(default=[], description="Unmodelled regressors.")
+
+    @model_validator(mode="after")
+    def _signs(self) -> FindingTable:
+        if self.claim == "does not lead" and (self.sign or self.reverse_sign):
+            _refuse('a sign makes no sense under the claim "does not lead"; leave it out')
+        if self.reverse_sign and self.claim != "leads both ways":
+            _refuse('"reverse_sign" belongs to the claim "leads both ways"')
+        return self
+
+
+class ReportedTable(Table):
+    """The numbers that are in print."""
+
+    statistic: float | None = None
+    p_value: float | None = Field(default=None, ge=0, le=1)
+    observations: StrictInt | None = Field(default=None, ge=1)
+    tolerance: float = Field(
+        default=0.0005, gt=0, description="Largest difference that counts as reproduced."
+    )
+    finding: StrictStr | None = Field(
+        default=None, description="Finding the numbers belong to; the first if left out."
+    )
+
+
+class BaselineTable(Table):
+    """The specification that is reported: one choice an axis."""
+
+    lags: LagEntry
+    deterministics: DeterministicEntry = "constant"
+    window: WindowEntry = "full sample"
+    transformation: TransformationEntry
+    test: ProcedureEntry = "F"
+    conditioning: Literal["given", "pairwise"] = "given"
+    reported: ReportedTable | None = None
+
+
+def _axis(entry: Any, description: str) -> Any:
+    return Annotated[list[entry], Field(min_length=1, description=description)]
+
+
+class AxesTable(Table):
+    """What is swept; an axis left out holds the baseline's choice alone."""
+
+    lags: _axis(LagEntry, "Orders and criteria.") | None = None  # type: ignore[valid-type]
+    deterministics: _axis(DeterministicEntry, "Deterministic terms.") | None = None  # type: ignore[valid-type]
+    windows: _axis(WindowEntry, "Sample windows.") | None = None  # type: ignore[valid-type]
+    transformations: _axis(TransformationEntry, "Scales.") | None = None  # type: ignore[valid-type]
+    tests: _axis(ProcedureEntry, "Ways of testing.") | None = None  # type: ignore[valid-type]
+    conditioning: _axis(Conditioning, "Conditioning sets.") | None = None  # type: ignore[valid-type]
+    measures: dict[str, _axis(MeasureEntry, "Columns for a role.")] | None = None  # type: ignore[valid-type]
+
+
+class WhenTable(Table):
+    """Choices whose combination is ruled out: each axis lists choices or their names."""
+
+    lags: list[Any] | None = None
+    deterministics: list[Any] | None = None
+    window: list[Any] | None = None
+    transformation: list[Any] | None = None
+    test: list[Any] | None = None
+    conditioning: list[Any] | None = None
+    measures: list[Any] | None = None
+
+
+class RuleTable(Table):
+    """A combination that the author holds indefensible."""
+
+    when: WhenTable
+    because: StrictStr = Field(min_length=1)
+    finding: StrictStr | None = Field(default=None, description="Only for this finding.")
+
+
+class ScreensTable(Table):
+    """Preconditions: those a specification must pass, and those only shown."""
+
+    require: list[StrictStr] = Field(default=["enough observations"])
+    report: list[StrictStr] = Field(default=[])
+
+
+class SampleDesign(Table):
+    """``design = { sample = 5000 }``: a stratified draw of the full cross."""
+
+    sample: StrictInt = Field(ge=10, description="Specifications a finding.")
+
+
+class SweepTable(Table):
+    """How much of the cross is run."""
+
+    design: anything_of(SampleDesign, Literal["full", "one change", "two changes"]) = "full"  # type: ignore[valid-type]
+    coefficients: Literal["baseline", "fixed windows", "all", "none"] = Field(
+        default="fixed windows", description="For which specifications each lag's coefficient is kept."
+    )
+
+
+def _unavailable(value: Any) -> Any:
+    if value is not None:
+        _refuse("not yet available in this version; leave it out")
+    return value
+
+
+Later = SkipJsonSchema[Annotated[Any, AfterValidator(_unavailable)]]
+
+
+class PlanDocument(Table):
+    """A whole plan file."""
+
+    title: StrictStr = Field(min_length=1)
+    significance: float = Field(default=0.05, gt=0, lt=1)
+    seed: StrictInt = Field(default=0, ge=0)
+    data: DataTable
+    findings: list[FindingTable] = Field(min_length=1)
+    baseline: BaselineTable
+    axes: AxesTable = AxesTable()
+    rule_out: list[RuleTable] = []
+    screens: ScreensTable = ScreensTable()
+    sweep: SweepTable = SweepTable()
+    calibration: Later = None
+    requests: Later = None
+    extends: Later = None

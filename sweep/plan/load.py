@@ -1,0 +1,140 @@
+"""Read a plan file and report everything that is wrong with it at once."""
+
+from __future__ import annotations
+
+import re
+import tomllib
+from pathlib import Path
+from typing import Any
+
+from pydantic import ValidationError
+
+from sweep.errors import Fault, InputFault
+from sweep.plan.axes import build_plan
+from sweep.plan.document import PlanDocument
+from sweep.plan.model import Plan
+from sweep.plan.suggest import suggestion
+
+__all__ = ["load_plan", "plan_from_text"]
+
+
+def load_plan(path: str | Path) -> Plan:
+    """Read and validate a plan file; the data are not read.
+
+    Parameters
+    ----------
+    path : str or Path
+        A TOML file as the README describes it.
+
+    Returns
+    -------
+    Plan
+
+    Raises
+    ------
+    InputFault
+        With every fault of the file, each with its path and a suggestion.
+    """
+    path = Path(path)
+    try:
+        text = path.read_text(encoding="utf-8")
+    except FileNotFoundError:
+        raise InputFault(_no_file(path)) from None
+    except IsADirectoryError:
+        raise InputFault(Fault(str(path), "this is a folder, not a plan file")) from None
+    except UnicodeDecodeError:
+        mend = "Save it as UTF-8 text."
+        raise InputFault(Fault(str(path), "the plan file is not UTF-8 text", mend)) from None
+    except OSError as error:
+        reason = error.strerror or "unknown reason"
+        raise InputFault(Fault(str(path), f"the plan file cannot be read ({reason})")) from None
+    return plan_from_text(text, path)
+
+
+def plan_from_text(text: str, path: Path) -> Plan:
+    """Validate the text of a plan file as if it stood at ``path``.
+
+    Raises
+    ------
+    InputFault
+        With every fault found.
+    """
+    try:
+        content = tomllib.loads(text)
+    except tomllib.TOMLDecodeError as error:
+        mend = "Check quotes, brackets and commas there."
+        raise InputFault(Fault(path.name, f"not valid TOML: {error}", mend)) from None
+    try:
+        document = PlanDocument.model_validate(content)
+    except ValidationError as error:
+        raise InputFault(*(_fault(item) for item in error.errors())) from None
+    return build_plan(document, text, path)
+
+
+def _no_file(path: Path) -> Fault:
+    near = [p.name for p in path.parent.glob("*.toml")] if path.parent.is_dir() else []
+    mend = suggestion(path.name, near).removeprefix("; ")
+    mend = mend[:1].upper() + mend[1:] if mend else 'Write one with "crosswind new DATA".'
+    return Fault(str(path), "there is no such plan file", mend)
+
+
+def _fault(item: Any) -> Fault:
+    context = item.get("ctx") or {}
+    kind = str(context.get("kind", item["type"]))
+    place = _place(item["loc"])
+    text = str(context.get("text", item["msg"])).rstrip(".")
+    if kind == "missing":
+        return Fault(place, "this key is missing", "Add it.")
+    if kind in ("literal_error", "union_tag_invalid"):
+        known = re.findall(r"'([^']*)'", text)
+        return Fault(place, f'"{item["input"]}" is not known here' + _near(item["input"], known))
+    if kind.startswith("greater_than") or kind.startswith("less_than"):
+        return Fault(place, f"{item['input']} is out of range", text.replace("Input", "It") + ".")
+    if kind == "too_short":
+        return Fault(place, "an empty list leaves nothing to run", "Give at least one choice.")
+    if kind in _TYPES:
+        found = _TYPE_WORDS.get(type(item["input"]).__name__, type(item["input"]).__name__)
+        return Fault(place, f"{_TYPES[kind]} is needed here, not {found}")
+    return Fault(place, text[:1].lower() + text[1:] if text.startswith("Input") else text)
+
+
+_TYPES = {
+    "int_type": "a whole number",
+    "int_parsing": "a whole number or a known name",
+    "int_from_float": "a whole number",
+    "float_type": "a number",
+    "float_parsing": "a number",
+    "string_type": "a text in quotes",
+    "bool_type": "true or false",
+    "list_type": "a list in [brackets]",
+    "dict_type": "a table",
+    "model_type": "a table",
+    "model_attributes_type": "a table",
+    "string_too_short": "a text that is not empty",
+}
+_TYPE_WORDS = {
+    "str": "a text",
+    "int": "a number",
+    "float": "a number with a decimal point",
+    "bool": "true or false",
+    "list": "a list",
+    "dict": "a table",
+    "date": "a date",
+    "datetime": "a date and time",
+}
+
+
+def _near(word: Any, known: list[str]) -> str:
+    return suggestion(str(word), known)
+
+
+def _place(location: tuple[int | str, ...]) -> str:
+    """Write a location as it would be pointed at in the file."""
+    text = ""
+    for part in location:
+        if isinstance(part, int):
+            text += f"[{part + 1}]"
+        elif not str(part).startswith("~"):
+            text += f".{part}" if text else str(part)
+    return text or "the plan"
+
