@@ -1,0 +1,62 @@
+"""The figures: one file each and the dictionary that names them.
+
+A chart is a module with ``NAME``, ``QUESTION``, ``NEEDS`` (the frames it reads, named as the
+functions of ``store.read``), ``build(frames, context, width)`` and
+``describe(frames, context)``.  The dictionary imports a module when it is first asked for,
+so that the command line starts without the drawing library.
+"""
+
+from __future__ import annotations
+
+from importlib import import_module
+from typing import TYPE_CHECKING, Protocol, cast
+
+if TYPE_CHECKING:
+    from collections.abc import Mapping
+
+    import altair
+    import pandas
+
+    from .context import Context
+
+__all__ = ["CHARTS", "ChartModule", "chart"]
+
+
+class ChartModule(Protocol):
+    """What every chart's module provides."""
+
+    NAME: str
+    QUESTION: str
+    NEEDS: tuple[str, ...]
+
+    def build(
+        self, frames: Mapping[str, pandas.DataFrame], context: Context, width: str = "wide"
+    ) -> altair.LayerChart:
+        """Draw the figure at a named print width (``narrow`` 85 mm, ``wide`` 175 mm)."""
+
+    def describe(self, frames: Mapping[str, pandas.DataFrame], context: Context) -> str:
+        """Return the text alternative, made from the same numbers."""
+
+
+# Name of the chart and its module, in the order of the report.
+CHARTS: dict[str, str] = {
+    "survival by choice": "survival_by_choice",
+    "single changes": "single_changes",
+    "windows": "windows",
+}
+
+
+def chart(name: str) -> ChartModule:
+    """Return the module of a chart.
+
+    Parameters
+    ----------
+    name : str
+        A key of ``CHARTS``.
+
+    Raises
+    ------
+    KeyError
+        If there is no chart of that name.
+    """
+    return cast("ChartModule", import_module(f"{__name__}.{CHARTS[name]}"))

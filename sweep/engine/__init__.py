@@ -1,0 +1,1 @@
+"""From a plan to stored rows: tasks, waves of workers, one writer."""

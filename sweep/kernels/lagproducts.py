@@ -62,10 +62,18 @@ class RunningMoments:
         high = min(self._valid[j][1] for j in columns)
         return np.maximum(self.first, low), np.minimum(self.last, high)
 
+    def observations(self, select: Ints, layout: Layout, start: int) -> Ints:
+        """Return the regression rows T of each selected window, shape (w,)."""
+        first, last = self.usable(layout.columns)
+        return np.maximum(last[select] - first[select] - start + 1, 0)
+
     def gram(self, select: Ints, layout: Layout, start: int) -> Gram:
         """Return the cross products over rows ``first + start`` … ``last``."""
         first, last = self.usable(layout.columns)
-        first, last = first[select] + start - self.low, last[select] + 1 - self.low
+        count = self.observations(select, layout, start)
+        last = last[select] + 1 - self.low
+        first = last - count
+        first, last = np.where(count > 0, first, 0), np.where(count > 0, last, 0)
         address = self._address(layout)
         flat = self._running.reshape(-1)
         upper = flat.take(address + last[:, None, None])
@@ -73,12 +81,12 @@ class RunningMoments:
         diagonal = np.einsum("wcc->wc", products)
         total = np.einsum("wcc->wc", upper)
         ratio = np.divide(total, diagonal, out=np.full_like(total, np.inf), where=diagonal > 0)
-        return Gram(products, np.maximum(ratio, 1.0), last - first)
+        return Gram(products, np.maximum(ratio, 1.0), count)
 
     def design(self, select: Ints, layout: Layout, start: int) -> list[tuple[Ints, Floats]]:
         """Return (positions in ``select``, rows (w, t, c)) in groups of equal length."""
         first, last = self.usable(layout.columns)
-        first, count = first[select] + start - self.low, last[select] - first[select] - start + 1
+        first, count = first[select] + start - self.low, self.observations(select, layout, start)
         groups = []
         for length in np.unique(count):
             members = np.flatnonzero(count == length)

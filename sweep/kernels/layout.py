@@ -111,6 +111,10 @@ class Moments(Protocol):
         """Return first and last row, each (w,), at which all the series exist."""
         ...
 
+    def observations(self, select: Ints, layout: Layout, start: int) -> Ints:
+        """Return the regression rows T of each selected window, shape (w,)."""
+        ...
+
     def gram(self, select: Ints, layout: Layout, start: int) -> Gram:
         """Return the cross products over rows ``first + start`` … ``last``."""
         ...

@@ -18,7 +18,7 @@ from dataclasses import dataclass
 import numpy as np
 
 from sweep.kernels.layout import Floats, Ints, Layout, Moments
-from sweep.kernels.stacks import Flag, Regression, Solver, StackFit, forward
+from sweep.kernels.stacks import Flag, Regression, Solver, StackFit, forward, inverse_lower
 
 __all__ = ["COVARIANCES", "RobustFit", "robust_stack"]
 
@@ -37,12 +37,15 @@ class RobustFit:
         b′V⁻¹b, NaN where it does not exist.
     coefficient_sum_error : ndarray, shape (w, e)
         Standard error of the coefficient sum, standardised units.
+    lag_errors : ndarray, shape (w, e, q)
+        Standard errors of the single lag coefficients, standardised units.
     exact_row : ndarray of bool, shape (w,)
         Where HC2 and HC3 do not exist because an observation has leverage one.
     """
 
     wald: Floats
     coefficient_sum_error: Floats
+    lag_errors: Floats
     exact_row: np.ndarray
 
 
@@ -72,7 +75,12 @@ def robust_stack(
     """
     count = select.size, regression.effects.size
     results = {
-        name: RobustFit(np.full(count, np.nan), np.full(count, np.nan), np.zeros(select.size, bool))
+        name: RobustFit(
+            np.full(count, np.nan),
+            np.full(count, np.nan),
+            np.full((*count, regression.restricted.size), np.nan),
+            np.zeros(select.size, bool),
+        )
         for name in covariances
     }
     fine = np.flatnonzero(fit.flag == Flag.FINE)
@@ -100,8 +108,8 @@ def _fill(
     basis = _orthonormal(matrix[:, :, :k], fit.lower[members], fit.solver[members] == Solver.QR, k)
     leverage = (basis**2).sum(axis=2)
     block = basis[:, :, k - q :]
-    ones = np.ones((members.size, q))
-    direction = forward(fit.lower[members][:, k - q : k, k - q : k], ones)
+    inverse = inverse_lower(fit.lower[members][:, k - q : k, k - q : k])
+    direction = inverse.sum(axis=2)
     for effect in range(regression.effects.size):
         observed = matrix[:, :, k + effect]
         projection = np.einsum("wtk,wt->wk", basis, observed)
@@ -110,7 +118,9 @@ def _fill(
             weight, exact = _weight(name, leverage, k)
             middle = np.einsum("wti,wt,wtj->wij", block, weight * residual**2, block, optimize=True)
             wald, error = _wald(middle, projection[:, k - q :], direction)
-            wald[exact], error[exact] = np.nan, np.nan
+            lags = np.sqrt(np.einsum("wik,wij,wjk->wk", inverse, middle, inverse, optimize=True))
+            wald[exact], error[exact], lags[exact] = np.nan, np.nan, np.nan
+            result.lag_errors[members, effect] = lags
             result.wald[members, effect] = wald
             result.coefficient_sum_error[members, effect] = error
             result.exact_row[members] |= exact

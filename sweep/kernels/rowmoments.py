@@ -63,6 +63,11 @@ class RowMoments:
         both = np.array(bounds, dtype=np.int64)
         return both[:, 0], both[:, 1]
 
+    def observations(self, select: Ints, layout: Layout, start: int) -> Ints:
+        """Return the regression rows T of each selected window, shape (w,)."""
+        rows = self._designs(select, layout, start)
+        return np.array([part.shape[0] for part in rows], dtype=np.int64)
+
     def gram(self, select: Ints, layout: Layout, start: int) -> Gram:
         """Return the cross products over the complete rows ``first + start`` … ``last``."""
         products = np.empty((select.size, layout.size, layout.size))

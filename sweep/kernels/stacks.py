@@ -20,7 +20,7 @@ import numpy as np
 
 from sweep.kernels.layout import Floats, Gram, Ints, Layout, Moments
 
-__all__ = ["Factor", "Flag", "Regression", "Solver", "StackFit", "factorise", "fit_stack", "forward"]
+__all__ = ["Factor", "Flag", "Regression", "Solver", "StackFit", "factorise", "fit_stack", "forward", "inverse_lower"]
 
 EPSILON = float(np.finfo(np.float64).eps)
 QR_TRIGGER = 1e-11
@@ -116,6 +116,26 @@ class StackFit:
     lower: Floats
     solver: Ints
     flag: Ints
+
+    def lag_coefficients(self, effect: int) -> tuple[Floats, Floats]:
+        """Return the cause's lag coefficients of one effect and their classical errors.
+
+        Parameters
+        ----------
+        effect : int
+            Position on the axis e.
+
+        Returns
+        -------
+        values, errors : ndarray, shape (w, q)
+            Standardised units; b = L_cc⁻ᵀ l_yc and se_j² = s1/(T−k) · (L_cc⁻ᵀ L_cc⁻¹)_jj.
+        """
+        k, q = self.regressors, self.restrictions
+        inverse = inverse_lower(self.lower[:, k - q : k, k - q : k])
+        values = np.einsum("wij,wi->wj", inverse, self.lower[:, k + effect, k - q : k])
+        freedom = np.maximum(self.observations - k, 1)
+        variance = self.residual[:, effect] / freedom
+        return values, np.sqrt(variance[:, None] * (inverse**2).sum(axis=1))
 
 
 def fit_stack(
@@ -334,3 +354,13 @@ def forward(lower: Floats, right: Floats) -> Floats:
         known = np.einsum("wi,wi->w", lower[:, j, :j], solution[:, :j])
         solution[:, j] = (right[:, j] - known) / lower[:, j, j]
     return solution
+
+
+def inverse_lower(lower: Floats) -> Floats:
+    """Invert a stack of small lower triangles, shape (w, q, q)."""
+    inverse = np.zeros_like(lower)
+    for column in range(lower.shape[1]):
+        right = np.zeros(lower.shape[:2])
+        right[:, column] = 1.0
+        inverse[:, :, column] = forward(lower, right)
+    return inverse

@@ -1,0 +1,141 @@
+"""What every figure and table must be able to say about itself."""
+
+from __future__ import annotations
+
+from collections.abc import Mapping
+from dataclasses import dataclass
+from typing import TYPE_CHECKING, Any
+
+from sweep.verdicts.survival import Counts, losses_sentence, overall
+from sweep.verdicts.words import level_text
+
+if TYPE_CHECKING:
+    import pandas as pd
+
+__all__ = ["Context", "claim_sentence", "context_of"]
+
+
+@dataclass(frozen=True, slots=True)
+class Context:
+    """The finding, its level and its counts.
+
+    Attributes
+    ----------
+    title : str
+        Title of the plan.
+    finding : str
+        Name of the finding.
+    statement : str
+        The claim as a sentence without its full stop.
+    significance : float
+        Level in (0, 1).
+    counts : Counts
+        Counts of the whole finding.
+    design : str
+        ``full``, ``one change``, ``two changes`` or words for a sample.
+    data_note : str
+        Source of the data in words; may be empty.
+    claim : str
+        The claim's kind, as the plan names it.
+    """
+
+    title: str
+    finding: str
+    statement: str
+    significance: float
+    counts: Counts
+    design: str = "full"
+    data_note: str = ""
+    claim: str = "leads"
+
+    @property
+    def level(self) -> str:
+        """Return the significance level in per cent."""
+        return level_text(self.significance)
+
+    @property
+    def lead(self) -> str:
+        """Return finding and level, the words with which every subtitle starts."""
+        return f"Finding: {self.statement}; significance level {self.level}."
+
+    @property
+    def losses(self) -> str:
+        """Return what was planned and not counted, as a sentence."""
+        return losses_sentence(self.counts)
+
+
+def _series(finding: Mapping[str, Any], role: str) -> str:
+    return str(finding[role])
+
+
+def claim_sentence(finding: Mapping[str, Any]) -> str:
+    """Put a finding's claim into one sentence, without its full stop.
+
+    Parameters
+    ----------
+    finding : mapping
+        The finding's record: cause, effect, given, claim, sign, reverse_sign.
+
+    Examples
+    --------
+    >>> claim_sentence({"cause": "freight", "effect": "rents", "given": "diesel",
+    ...                 "claim": "leads", "sign": 1, "reverse_sign": 0})
+    'freight leads rents, given diesel, with a positive sum of coefficients'
+    """
+    cause, effect = _series(finding, "cause"), _series(finding, "effect")
+    words = {
+        "leads": f"{cause} leads {effect}",
+        "leads one way": f"{cause} leads {effect} and not the reverse",
+        "leads both ways": f"{cause} and {effect} lead each other",
+        "does not lead": f"{cause} does not lead {effect}",
+    }[str(finding["claim"])]
+    given = str(finding.get("given") or "")
+    if given:
+        words += f", given {given}"
+    signs = {1: "positive", -1: "negative"}
+    forward = signs.get(int(finding.get("sign") or 0))
+    backward = signs.get(int(finding.get("reverse_sign") or 0))
+    if forward:
+        words += f", with a {forward} sum of coefficients"
+    if backward:
+        words += f", in reverse a {backward} one"
+    return words
+
+
+def context_of(
+    finding: Mapping[str, Any],
+    survival: pd.DataFrame,
+    *,
+    significance: float,
+    title: str,
+    design: str = "full",
+    data_note: str = "",
+) -> Context:
+    """Build the context of one finding from its record and its survival frame.
+
+    Parameters
+    ----------
+    finding : mapping
+        The finding's record as the store keeps it.
+    survival : DataFrame
+        The survival frame of this finding.
+    significance : float
+        The plan's level.
+    title, design, data_note : str
+        From the sweep's record.
+
+    Raises
+    ------
+    ValueError
+        If the survival frame has not exactly one overall row.
+    """
+    return Context(
+        title=title,
+        finding=str(finding["name"]),
+        statement=claim_sentence(finding),
+        significance=significance,
+        counts=overall(survival),
+        design=design,
+        data_note=data_note,
+        claim=str(finding["claim"]),
+    )

@@ -1,0 +1,91 @@
+"""Choices that no combination could run: faults of the plan, found without estimating."""
+
+from __future__ import annotations
+
+from collections.abc import Mapping
+
+from sweep.engine.orders import FREEDOM_FOR_CRITERION
+from sweep.errors import Fault
+from sweep.panel.calendar import Calendar
+from sweep.panel.transforms import TRANSFORMS
+from sweep.panel.windows import Positions
+from sweep.plan.choices import (
+    ConditioningChoice,
+    DeterministicChoice,
+    LagChoice,
+    TransformationChoice,
+)
+from sweep.plan.model import Finding, Plan
+
+__all__ = ["fewest_terms", "shortest_faults"]
+
+
+def shortest_faults(
+    plan: Plan, windows: tuple[Mapping[int, Positions], ...], calendar: Calendar
+) -> list[Fault]:
+    """Find windows too short for every lag choice, and lags too long for every window.
+
+    A window that is short for some specifications only is no fault: those become infeasible.
+    """
+    faults: list[Fault] = []
+    lags = [choice for choice in plan.axes["lags"] if isinstance(choice, LagChoice)]
+    for finding in plan.findings:
+        lost = _lost_rows(plan, calendar)
+        for code, positions in windows[finding.number].items():
+            size = int((positions.last - positions.first).max()) + 1
+            # A moving or fixed window that starts later may read the values lost at the start.
+            room = size - (lost if int(positions.first.min()) == 0 and positions.count == 1 else 0)
+            if not any(_fits(plan, finding, lag, room) for lag in lags):
+                label = plan.axes["window"][code].label
+                faults.append(
+                    Fault("axes.windows", f'"{label}" has {size} periods, fewer than the smallest '
+                          f'regression of "{finding.name}" needs', "Lengthen it or use fewer lags.")
+                )  # fmt: skip
+        longest = max(
+            (int((p.last - p.first).max()) + 1 for p in windows[finding.number].values()),
+            default=0,
+        )
+        for lag in lags:
+            if not _fits(plan, finding, lag, longest):
+                faults.append(
+                    Fault("axes.lags", f'"{lag.label}" lags leave no degree of freedom in the '
+                          f'longest window of "{finding.name}" ({longest} periods)',
+                          "Use fewer lags or longer windows.")
+                )  # fmt: skip
+    return faults
+
+
+def fewest_terms(plan: Plan) -> int:
+    """Return the fewest deterministic columns of any choice."""
+    seasons = plan.frequency.seasons
+    counts = []
+    for choice in plan.axes["deterministics"]:
+        assert isinstance(choice, DeterministicChoice)
+        special = len(choice.steps) + len(choice.pulses) + 2 * choice.fourier
+        counts.append(choice.trend + 1 + (seasons - 1) * choice.seasonal + special)
+    return min(counts)
+
+
+def _lost_rows(plan: Plan, calendar: Calendar) -> int:
+    """Return the fewest rows that a transformation choice loses at the start of the data."""
+    lost = []
+    for choice in plan.axes["transformation"]:
+        assert isinstance(choice, TransformationChoice)
+        names = {choice.default, *(name for _, name in choice.series)}
+        lost.append(max(TRANSFORMS[n].offsets(calendar.frequency, choice.horizon)[-1] for n in names))
+    return min(lost)
+
+
+def _fits(plan: Plan, finding: Finding, lag: LagChoice, room: int) -> bool:
+    """Say whether some combination leaves a degree of freedom in ``room`` periods."""
+    given = []
+    for code in plan.finding_axes[finding.number]["conditioning"].codes:
+        choice = plan.axes["conditioning"][code]
+        assert isinstance(choice, ConditioningChoice)
+        given.append(len(finding.given) - len(choice.without))
+    fixed = fewest_terms(plan) + sum(item.lags + 1 for item in finding.exogenous)
+    own, cause, others = (lag.own, lag.cause, lag.given) if not lag.criterion else (1, 1, 1)
+    start = max([own, cause, others, lag.common, *(item.lags for item in finding.exogenous)])
+    regressors = fixed + own + cause + min(given) * others
+    spare = FREEDOM_FOR_CRITERION if lag.criterion else 1
+    return room - start - regressors >= spare

@@ -1,0 +1,297 @@
+"""The regressions of a task: every right-hand side fitted once, whoever asks for it."""
+
+from __future__ import annotations
+
+from collections import defaultdict
+from dataclasses import dataclass, field
+
+import numpy as np
+from numpy.typing import NDArray
+
+from sweep.engine.orders import term_space
+from sweep.engine.panel import TaskPanel
+from sweep.engine.reasons import FLAG_REASON, Reason
+from sweep.engine.task import System
+from sweep.kernels.layout import Gram, Layout, Moments
+from sweep.kernels.robust import RobustFit, robust_stack
+from sweep.kernels.stacks import Flag, Regression, StackFit, fit_stack
+
+__all__ = ["Equation", "FitBook", "Fitted"]
+
+Floats = NDArray[np.float64]
+Ints = NDArray[np.int64]
+
+_REASON_OF_FLAG = np.array([FLAG_REASON[flag] for flag in Flag], dtype=np.int64)
+# Terms that can be constant or collinear inside a window; trends never are.
+_SPECIAL_TERMS = ("season", "step", "pulse", "sine", "cosine")
+
+
+@dataclass(frozen=True, slots=True)
+class Equation:
+    """One equation: effect on its own lags, the given series and the cause.
+
+    Attributes
+    ----------
+    effect, cause : int
+        Panel columns.
+    modelled : tuple of int
+        All series of the system.
+    exogenous : tuple of (column, lags)
+    orders : (int, int, int)
+        Lags of the effect, of the cause, of the given series.
+    start : int
+        Rows left out after the first usable one.
+    term : int
+        Choice of deterministic terms.
+    """
+
+    effect: int
+    cause: int
+    modelled: tuple[int, ...]
+    exogenous: tuple[tuple[int, int], ...]
+    orders: tuple[int, int, int]
+    start: int
+    term: int
+
+    @classmethod
+    def of(
+        cls, system: System, orders: tuple[int, int, int], start: int, term: int, *, reverse: bool
+    ) -> Equation:
+        """Return the finding's equation, or that of the reverse direction."""
+        effect, cause = system.effect, system.cause
+        if reverse:
+            effect, cause = cause, effect
+        return cls(effect, cause, system.modelled, system.exogenous, orders, start, term)
+
+    @property
+    def right_hand_side(self) -> tuple[object, ...]:
+        """What equations with the same regressors have in common."""
+        own, _, given = self.orders
+        shared = () if own == given else (self.effect,)
+        return (self.cause, self.modelled, self.exogenous, self.orders, self.start, self.term, shared)
+
+    def reach(self) -> dict[int, int]:
+        """Return the largest lag of every series."""
+        own, cause, given = self.orders
+        held = dict.fromkeys(self.modelled, given)
+        held[self.effect], held[self.cause] = own, cause
+        return held | dict(self.exogenous)
+
+
+@dataclass(frozen=True, slots=True)
+class Fitted:
+    """Numbers of one equation in the windows of a task, raw units.
+
+    Attributes
+    ----------
+    explained, residual : ndarray, shape (w,)
+        s0 − s1 and s1 in standardised units (their ratio is what counts).
+    observations : ndarray of int, shape (w,)
+    regressors, restrictions : int
+    coefficient_sum : ndarray, shape (w,)
+        Units of the effect over units of the cause, as transformed.
+    errors : mapping of covariance to ndarray, shape (w,)
+        Standard error of the coefficient sum.
+    robust_wald : mapping of covariance to ndarray, shape (w,)
+    standardised_sum : ndarray, shape (w,)
+        Coefficient sum times sd(cause)/sd(effect) on the regression's rows.
+    solver, reason : ndarray of int, shape (w,)
+    exact_row : ndarray of bool, shape (w,)
+    lag_values : ndarray, shape (w, q), or (w, 0) where single lags were not asked for
+    lag_errors : mapping of covariance to ndarray, shape (w, q)
+    """
+
+    explained: Floats
+    residual: Floats
+    observations: Ints
+    regressors: int
+    restrictions: int
+    coefficient_sum: Floats
+    errors: dict[str, Floats]
+    robust_wald: dict[str, Floats]
+    standardised_sum: Floats
+    solver: Ints
+    reason: Ints
+    exact_row: NDArray[np.bool_]
+    lag_values: Floats
+    lag_errors: dict[str, Floats]
+
+
+@dataclass(slots=True)
+class _Request:
+    windows: NDArray[np.bool_]
+    effects: set[int] = field(default_factory=set)
+    covariances: set[str] = field(default_factory=set)
+    equation: Equation | None = None
+    single_lags: bool = False
+
+
+class FitBook:
+    """Collects the equations that are asked for, then fits each right-hand side once.
+
+    Parameters
+    ----------
+    panel : TaskPanel
+    """
+
+    def __init__(self, panel: TaskPanel) -> None:
+        self._panel = panel
+        self._requests: dict[tuple[object, ...], _Request] = {}
+        self._fitted: dict[Equation, Fitted] = {}
+
+    def ask(
+        self, equation: Equation, windows: Ints, covariances: set[str], *, single_lags: bool
+    ) -> None:
+        """Note that an equation is needed in some windows, and with which covariances."""
+        key = equation.right_hand_side
+        if key not in self._requests:
+            count = self._panel.task.first.size
+            self._requests[key] = _Request(np.zeros(count, bool), equation=equation)
+        request = self._requests[key]
+        request.windows[windows] = True
+        request.effects.add(equation.effect)
+        request.covariances |= covariances
+        request.single_lags |= single_lags
+
+    def fit(self) -> None:
+        """Fit everything that was asked for, one gather of moments for each sample."""
+        samples: dict[tuple[object, ...], list[_Request]] = defaultdict(list)
+        for request in self._requests.values():
+            equation = request.equation
+            assert equation is not None
+            moments, _ = self._panel.moments(equation.term)
+            reach = tuple(sorted(equation.reach().items()))
+            samples[id(moments), reach, equation.start].append(request)
+        for requests in samples.values():
+            self._fit_sample(requests)
+
+    def __getitem__(self, equation: Equation) -> Fitted:
+        return self._fitted[equation]
+
+    def _fit_sample(self, requests: list[_Request]) -> None:
+        equation = requests[0].equation
+        assert equation is not None
+        moments, _ = self._panel.moments(equation.term)
+        held = sorted(equation.reach().items())
+        layout = Layout(moments.terms, tuple(c for c, _ in held), tuple(lag for _, lag in held))
+        union = np.any([request.windows for request in requests], axis=0)
+        windows = np.flatnonzero(union)
+        gram = moments.gram(windows, layout, equation.start)
+        for request in requests:
+            inside = np.flatnonzero(request.windows[windows])
+            part = gram
+            if inside.size != windows.size:
+                part = Gram(
+                    gram.products[inside], gram.cancellation[inside], gram.observations[inside]
+                )
+            self._fit_request(request, moments, part, windows[inside], layout)
+
+    def _fit_request(
+        self, request: _Request, moments: Moments, gram: Gram, windows: Ints, layout: Layout
+    ) -> None:
+        equation = request.equation
+        assert equation is not None
+        effects = sorted(request.effects)
+        _, columns = self._panel.moments(equation.term)
+        regression = _regression(equation, effects, columns, layout)
+        fit = fit_stack(moments, gram, windows, layout, equation.start, regression)
+        reason = self._reasons(equation, gram, windows, columns, fit)
+        robust: dict[str, RobustFit] = {}
+        names = sorted(request.covariances - {"classical"})
+        if names:
+            robust = robust_stack(
+                moments, windows, layout, equation.start, regression, fit, names
+            )
+        for position, effect in enumerate(effects):
+            key = Equation(
+                effect, equation.cause, equation.modelled, equation.exogenous, equation.orders,
+                equation.start, equation.term,
+            )  # fmt: skip
+            unit = moments.scale[windows, effect] / moments.scale[windows, equation.cause]
+            self._fitted[key] = self._spread_out(
+                fit, robust, position, unit, windows, reason, single_lags=request.single_lags
+            )
+
+    def _reasons(
+        self, equation: Equation, gram: Gram, windows: Ints, columns: Ints, fit: StackFit
+    ) -> Ints:
+        """Say why a window has no numbers; a filter or a term comes before a poor matrix."""
+        reason = _REASON_OF_FLAG[fit.flag]
+        terms = self._panel.task.terms[equation.term]
+        if any(term.kind in _SPECIAL_TERMS for term in terms):
+            enough = fit.flag != Flag.TOO_FEW_ROWS
+            idle = enough & ~term_space(gram.products[:, columns[:, None], columns])
+            reason[idle] = Reason.TERM
+        series = list(equation.reach())
+        reason[self._panel.blocked[windows][:, series].any(axis=1)] = Reason.FILTER_EPISODE
+        return reason
+
+    def _spread_out(
+        self,
+        fit: StackFit,
+        robust: dict[str, RobustFit],
+        position: int,
+        unit: Floats,
+        windows: Ints,
+        reason: Ints,
+        *,
+        single_lags: bool,
+    ) -> Fitted:
+        """Put the numbers of one effect into arrays over all windows of the task."""
+        count = self._panel.task.first.size
+
+        def wide(values: NDArray[np.generic], empty: float = np.nan) -> NDArray[np.float64]:
+            out = np.full((count, *values.shape[1:]), empty)
+            out[windows] = values
+            return out
+
+        errors = {"classical": wide(fit.coefficient_sum_error[:, position] * unit)}
+        exact = np.zeros(count, bool)
+        for name, result in robust.items():
+            errors[name] = wide(result.coefficient_sum_error[:, position] * unit)
+            exact[windows] |= result.exact_row
+        lag_values, lag_errors = np.empty((count, 0)), {}
+        if single_lags:
+            values, error = fit.lag_coefficients(position)
+            lag_values = wide(values * unit[:, None])
+            lag_errors = {"classical": wide(error * unit[:, None])} | {
+                name: wide(result.lag_errors[:, position] * unit[:, None])
+                for name, result in robust.items()
+            }
+        return Fitted(
+            explained=wide(fit.explained[:, position]),
+            residual=wide(fit.residual[:, position]),
+            observations=wide(fit.observations, 0).astype(np.int64),
+            regressors=fit.regressors,
+            restrictions=fit.restrictions,
+            coefficient_sum=wide(fit.coefficient_sum[:, position] * unit),
+            errors=errors,
+            robust_wald={name: wide(result.wald[:, position]) for name, result in robust.items()},
+            standardised_sum=wide(
+                fit.coefficient_sum[:, position] * fit.spread_ratio[:, position]
+            ),
+            solver=wide(fit.solver, 0).astype(np.int64),
+            reason=wide(reason, Reason.TOO_FEW_ROWS).astype(np.int64),
+            exact_row=exact,
+            lag_values=lag_values,
+            lag_errors=lag_errors,
+        )
+
+
+def _regression(
+    equation: Equation, effects: list[int], columns: Ints, layout: Layout
+) -> Regression:
+    own, cause, given = equation.orders
+    order = {c: (own if c == equation.effect else given) for c in equation.modelled}
+    nuisance = [*columns.tolist()]
+    for column, lags in equation.exogenous:
+        nuisance += [layout.at(column, lag) for lag in range(lags + 1)]
+    for column in equation.modelled:
+        if column != equation.cause:
+            nuisance += [layout.at(column, lag) for lag in range(1, order[column] + 1)]
+    return Regression(
+        np.array(nuisance, dtype=np.int64),
+        np.array([layout.at(equation.cause, lag) for lag in range(1, cause + 1)], dtype=np.int64),
+        np.array([layout.at(effect, 0) for effect in effects], dtype=np.int64),
+        layout.at(equation.cause, 0),
+    )

@@ -1,0 +1,147 @@
+"""The moments of a task: transformed series and deterministic terms, by block or by window."""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+
+import numpy as np
+from numpy.typing import NDArray
+
+from sweep.engine.task import Task
+from sweep.kernels.lagproducts import RunningMoments
+from sweep.kernels.layout import Moments
+from sweep.kernels.rowmoments import RowMoments, WindowRows
+from sweep.panel.deterministics import CONSTANT, Term, TermContext, term_columns
+from sweep.panel.transforms import TRANSFORMS
+
+__all__ = ["TaskPanel", "window_values"]
+
+Floats = NDArray[np.float64]
+Ints = NDArray[np.int64]
+
+
+class TaskPanel:
+    """Moments of a task, built once for regressions with a constant and once for those without.
+
+    Parameters
+    ----------
+    task : Task
+    """
+
+    def __init__(self, task: Task) -> None:
+        self.task = task
+        self.lags = max((max(c.own, c.cause, c.given, c.maximum) for c in task.lags), default=1)
+        exogenous = [lags for system in task.systems for _, lags in system.exogenous]
+        self.lags = max([self.lags, *exogenous])
+        self._built: dict[bool, tuple[Moments, tuple[Term, ...]]] = {}
+        self.blocked = _filter_meets_episode(task)
+
+    def moments(self, term: int) -> tuple[Moments, Ints]:
+        """Return the moments for one choice of terms and its columns in their layout."""
+        wanted = self.task.terms[term]
+        centre = CONSTANT in wanted
+        if centre not in self._built:
+            self._built[centre] = self._build(centre)
+        moments, terms = self._built[centre]
+        return moments, np.array([terms.index(item) for item in wanted], dtype=np.int64)
+
+    def _build(self, centre: bool) -> tuple[Moments, tuple[Term, ...]]:
+        task = self.task
+        groups = [terms for terms in task.terms if (CONSTANT in terms) == centre]
+        every = sorted({item for terms in groups for item in terms} - {CONSTANT})
+        terms = (CONSTANT, *every)  # column 0 is the constant, wanted or not, for the means
+        fourier = any(item.kind in ("sine", "cosine") for item in terms)
+        equal = np.unique(task.last - task.first).size == 1
+        local = all(TRANSFORMS[scale.name].kind == "local" for scale in task.scales)
+        if task.running and local and (equal or not fourier):
+            values = _local_values(task)
+            columns = _block_terms(task, terms)
+            return (
+                RunningMoments(values, columns, task.first, task.last, self.lags, centre=centre),
+                terms,
+            )
+        windows = [self._window(w, terms) for w in range(task.first.size)]
+        return RowMoments(windows, centre=centre), terms
+
+    def _window(self, w: int, terms: Sequence[Term]) -> WindowRows:
+        task = self.task
+        values, exists = window_values(task, w)
+        rows = np.arange(task.first[w], task.last[w] + 1)
+        half = max((rows.size - 1) / 2, 1.0)
+        context = TermContext(
+            rows, task.season[rows], task.seasons, (rows[0] + rows[-1]) / 2, half, float(rows.size)
+        )
+        return WindowRows(values, term_columns(terms, context), exists)
+
+
+def _block_terms(task: Task, terms: Sequence[Term]) -> Floats:
+    low, high = int(task.first.min()), int(task.last.max())
+    context = TermContext(
+        np.arange(task.values.shape[0]), task.season, task.seasons, (low + high) / 2,
+        max((high - low) / 2, 1.0), float(task.last[0] - task.first[0] + 1),
+    )  # fmt: skip
+    return term_columns(terms, context)
+
+
+def _local_values(task: Task) -> Floats:
+    columns = [
+        TRANSFORMS[scale.name].apply(
+            task.values[:, j], task.frequency, scale.smoothing, scale.horizon
+        )
+        for j, scale in enumerate(task.scales)
+    ]
+    return np.column_stack(columns)
+
+
+def window_values(task: Task, w: int) -> tuple[Floats, NDArray[np.bool_]]:
+    """Return one window's transformed series and where they exist.
+
+    Local transformations may read values before the window and are taken on the whole
+    series; the others are taken inside it, on values outside the episodes.
+
+    Returns
+    -------
+    values : ndarray, shape (t, m)
+        NaN where a series does not exist or uses a value of an episode left out.
+    exists : ndarray of bool, shape (t, m)
+        Where it exists, episodes disregarded.
+    """
+    first, last = int(task.first[w]), int(task.last[w])
+    inside = np.zeros(task.values.shape[0], bool)
+    for start, end in task.episodes[w]:
+        inside[start : end + 1] = True
+    values = np.empty((last - first + 1, len(task.scales)))
+    exists = np.empty(values.shape, bool)
+    for j, scale in enumerate(task.scales):
+        transform = TRANSFORMS[scale.name]
+        raw = task.values[:, j]
+        if transform.kind == "local":
+            column = transform.apply(raw, task.frequency, scale.smoothing, scale.horizon)
+            exists[:, j] = np.isfinite(column[first : last + 1])
+            touched = inside.copy()
+            for offset in transform.offsets(task.frequency, scale.horizon):
+                if offset:
+                    touched[offset:] |= inside[:-offset]
+            values[:, j] = np.where(touched, np.nan, column)[first : last + 1]
+        else:
+            cut = np.where(inside, np.nan, raw)[first : last + 1]
+            if inside[first : last + 1].any() and transform.name == "Hodrick-Prescott cycle":
+                values[:, j] = np.nan  # the whole window is not applicable
+            else:
+                values[:, j] = transform.apply(
+                    cut, task.frequency, scale.smoothing, scale.horizon
+                )
+            exists[:, j] = np.isfinite(values[:, j])
+    return values, exists
+
+
+def _filter_meets_episode(task: Task) -> NDArray[np.bool_]:
+    """Say, for each window and series, where a filter of the whole window meets an episode."""
+    filters = np.array([scale.name == "Hodrick-Prescott cycle" for scale in task.scales])
+    meets = np.array(
+        [
+            any(start <= last and end >= first for start, end in episodes)
+            for episodes, first, last in zip(task.episodes, task.first, task.last, strict=True)
+        ]
+    )
+    return np.asarray(meets[:, None] & filters)

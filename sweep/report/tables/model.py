@@ -1,0 +1,97 @@
+"""One small model for every table, whatever it is written as."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from typing import Any, Literal
+
+from sweep.verdicts.words import MISSING, missing, number, p_text, percent, period_text
+
+__all__ = ["Column", "Table", "cell_text"]
+
+Kind = Literal["text", "count", "share", "p", "number", "date"]
+
+
+@dataclass(frozen=True, slots=True)
+class Column:
+    """One column.
+
+    Attributes
+    ----------
+    heading : str
+        Words above it.
+    kind : str
+        How its values are written: text, count, share (0–1, written in per cent), p,
+        number (three significant digits) or date.
+    name : str
+        Its name in data files, lower case with underscores.
+    """
+
+    heading: str
+    kind: Kind = "text"
+    name: str = ""
+
+    @property
+    def field(self) -> str:
+        """Return the column's name in data files."""
+        return self.name or self.heading.lower().replace(" ", "_").replace("-", "_")
+
+    @property
+    def right(self) -> bool:
+        """Whether values are set flush right."""
+        return self.kind not in ("text", "date")
+
+
+@dataclass(frozen=True, slots=True)
+class Table:
+    """A table before it is written in any format.
+
+    Attributes
+    ----------
+    name : str
+        Its name in the family.
+    title : str
+        Caption, a sentence that stands alone.
+    columns : tuple of Column
+        From left to right.
+    rows : tuple of tuple
+        Plain values, one for each column; None where there is none.
+    notes : tuple of str
+        Sentences below the table: what is counted, what was left out.
+    group : int
+        Columns at the left whose repeated values begin a new group; 0 for none.
+    """
+
+    name: str
+    title: str
+    columns: tuple[Column, ...]
+    rows: tuple[tuple[Any, ...], ...]
+    notes: tuple[str, ...] = ()
+    group: int = 0
+
+    def __post_init__(self) -> None:
+        for row in self.rows:
+            if len(row) != len(self.columns):
+                raise ValueError(
+                    f"table {self.name}: a row has {len(row)} values for "
+                    f"{len(self.columns)} columns"
+                )
+
+
+def cell_text(value: Any, kind: Kind) -> str:
+    """Write one value the way people read it."""
+    if missing(value) or value == "":
+        return MISSING
+    if kind == "count":
+        return f"{int(value):,}"
+    if kind == "share":
+        return percent(float(value))
+    if kind == "p":
+        return p_text(float(value))
+    if kind == "number":
+        return number(float(value))
+    if kind == "date":
+        return period_text(value)
+    if isinstance(value, bool):
+        return "yes" if value else "no"
+    return str(value)

@@ -1,0 +1,60 @@
+"""One change at a time: every choice that differs from the baseline on one axis."""
+
+from __future__ import annotations
+
+from collections.abc import Mapping
+from typing import TYPE_CHECKING
+
+from sweep.verdicts.words import p_text, reason_text
+
+from .model import Column, Table
+
+if TYPE_CHECKING:
+    import pandas as pd
+
+    from sweep.charts.context import Context
+
+__all__ = ["NAME", "NEEDS", "build"]
+
+NAME = "single changes"
+NEEDS = ("single_changes", "baseline")
+
+_COLUMNS = (
+    Column("Axis"),
+    Column("Choice"),
+    Column("Rows", "count", "positions"),
+    Column("Admissible", "count"),
+    Column("Survived", "count"),
+    Column("Turned", "count", "flips"),
+    Column("p after", "p", "p_value"),
+    Column("lowest p", "p", "p_low"),
+    Column("highest p", "p", "p_high"),
+    Column("Change in z", "number", "z_change"),
+    Column("Sum of coefficients", "number", "coefficient_sum"),
+    Column("Status"),
+)
+
+
+def build(frames: Mapping[str, pd.DataFrame], context: Context) -> Table:
+    """Return the single changes of one finding in plan order."""
+    rows = []
+    for record in frames["single_changes"].to_dict("records"):
+        fields = (column.field for column in _COLUMNS[:-1])
+        status = reason_text(record["status"], record["reason"])
+        rows.append((*(record[field] for field in fields), status))
+    baseline = frames["baseline"].iloc[0]
+    notes = (
+        f"{context.lead} Baseline: p {p_text(baseline['p_value'])}. Turned: rows in which the "
+        "finding holds where it does not at the baseline, or the other way round. For moving "
+        "windows p, z and the sum are medians over positions. z is the inverse normal survival "
+        "function of p, capped at 37; a change in z says how far the evidence moved, whether or "
+        "not the level was crossed."
+    )
+    return Table(
+        NAME,
+        f"Single changes from the baseline: {context.statement}.",
+        _COLUMNS,
+        tuple(rows),
+        (notes,),
+        group=1,
+    )

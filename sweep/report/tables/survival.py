@@ -1,0 +1,63 @@
+"""Survival by axis and choice, with every count."""
+
+from __future__ import annotations
+
+from collections.abc import Mapping
+from typing import TYPE_CHECKING
+
+from .model import Column, Table
+
+if TYPE_CHECKING:
+    import pandas as pd
+
+    from sweep.charts.context import Context
+
+__all__ = ["NAME", "NEEDS", "build"]
+
+NAME = "survival"
+NEEDS = ("survival",)
+
+_COLUMNS = (
+    ("axis", Column("Axis")),
+    ("choice", Column("Choice")),
+    ("is_baseline", Column("Baseline", name="is_baseline")),
+    ("planned", Column("Planned", "count")),
+    ("not_applicable", Column("Not applicable", "count")),
+    ("infeasible", Column("Infeasible", "count")),
+    ("failed", Column("Failed", "count")),
+    ("screened_out", Column("Screened out", "count")),
+    ("admissible", Column("Admissible", "count")),
+    ("survived", Column("Survived", "count")),
+    ("other_sign", Column("Other sign", "count")),
+    ("distinct", Column("Distinct computations", "count", "distinct")),
+    ("raw_share", Column("Share of rows", "share", "raw_share")),
+    ("headline_share", Column("Weighted share", "share", "headline_share")),
+    ("share_at_1", Column("at 1%", "share", "share_at_1")),
+    ("share_at_5", Column("at 5%", "share", "share_at_5")),
+    ("share_at_10", Column("at 10%", "share", "share_at_10")),
+    ("median_p_value", Column("Median p", "p", "median_p_value")),
+)
+
+
+def build(frames: Mapping[str, pd.DataFrame], context: Context) -> Table:
+    """Return the table of one finding, overall row first."""
+    frame = frames["survival"]
+    rows = []
+    for record in frame.to_dict("records"):
+        values = [record[name] for name, _ in _COLUMNS]
+        values[2] = bool(record["is_baseline"]) or None
+        rows.append(tuple(values))
+    notes = (
+        f"{context.lead} Planned = not applicable + infeasible + failed + screened out + "
+        "admissible. Weighted share: each row weighs 1 / (positions of its window entry) / "
+        "(size of its test group). Other sign: significant, but not with the claimed sign. The "
+        "columns at 1, 5 and 10% are the weighted share were that the level."
+    )
+    return Table(
+        NAME,
+        f"Survival by axis and choice: {context.statement}.",
+        tuple(column for _, column in _COLUMNS),
+        tuple(rows),
+        (notes,),
+        group=1,
+    )

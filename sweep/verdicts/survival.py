@@ -1,0 +1,245 @@
+"""How often a finding survives, in counts and in sentences.
+
+The headline of a full sweep is Σ w·survived / Σ w·admissible over planned rows, with
+w = 1/(positions of the window entry) × 1/(size of the test group).  It is always written
+beside its counts.
+"""
+
+from __future__ import annotations
+
+import math
+from dataclasses import dataclass
+from typing import TYPE_CHECKING, Any
+
+from .words import counted, joined, level_text, missing, percent, share_text
+
+if TYPE_CHECKING:
+    import pandas as pd
+
+__all__ = [
+    "OVERALL",
+    "Counts",
+    "axis_sentences",
+    "counts_of",
+    "headline",
+    "levels_sentence",
+    "losses_sentence",
+    "overall",
+    "sampling_interval",
+]
+
+OVERALL = "all"
+
+# Steps below which a range over choices is not worth a sentence of its own.
+_FLAT = 1e-12
+
+
+@dataclass(frozen=True, slots=True)
+class Counts:
+    """The counts of one finding, or of one choice of it.
+
+    Attributes
+    ----------
+    planned, not_applicable, infeasible, failed, screened_out, admissible, survived : int
+        Rows; planned = not applicable + infeasible + failed + screened out + admissible.
+    other_sign : int
+        Rows that reject at the level but with the sign that was not claimed.
+    distinct : int
+        Distinct computations among the admissible rows.
+    headline : float or None
+        Weighted share in [0, 1]; None where nothing is admissible.
+    at_1, at_5, at_10 : float or None
+        The same share were the level 1%, 5% or 10%.
+    median_p : float or None
+        Median p-value of the admissible rows.
+    """
+
+    planned: int
+    not_applicable: int
+    infeasible: int
+    failed: int
+    screened_out: int
+    admissible: int
+    survived: int
+    other_sign: int
+    distinct: int
+    headline: float | None
+    at_1: float | None
+    at_5: float | None
+    at_10: float | None
+    median_p: float | None
+
+    @property
+    def raw(self) -> float | None:
+        """Unweighted share of survivors among admissible rows."""
+        return self.survived / self.admissible if self.admissible else None
+
+    @property
+    def left_out(self) -> int:
+        """Planned rows that are not counted in the share."""
+        return self.planned - self.admissible
+
+
+def _whole(value: Any) -> int:
+    return 0 if missing(value) else int(value)
+
+
+def _share(value: Any) -> float | None:
+    return None if missing(value) else float(value)
+
+
+def counts_of(row: Any) -> Counts:
+    """Return the counts held by one row of the survival frame.
+
+    Parameters
+    ----------
+    row : mapping
+        A row with the columns of the store's view ``survival``.
+    """
+    whole = {
+        name: _whole(row[name])
+        for name in (
+            "planned",
+            "not_applicable",
+            "infeasible",
+            "failed",
+            "screened_out",
+            "admissible",
+            "survived",
+            "other_sign",
+            "distinct",
+        )
+    }
+    return Counts(
+        **whole,
+        headline=_share(row["headline_share"]),
+        at_1=_share(row["share_at_1"]),
+        at_5=_share(row["share_at_5"]),
+        at_10=_share(row["share_at_10"]),
+        median_p=_share(row["median_p_value"]),
+    )
+
+
+def overall(survival: pd.DataFrame) -> Counts:
+    """Return the counts of the whole finding.
+
+    Parameters
+    ----------
+    survival : DataFrame
+        The survival frame of one finding, with its row of axis ``all``.
+
+    Raises
+    ------
+    ValueError
+        If the frame has no overall row, or more than one.
+    """
+    rows = survival[survival["axis"] == OVERALL]
+    if len(rows) != 1:
+        raise ValueError(f"the survival frame of one finding has {len(rows)} overall rows, not 1")
+    return counts_of(rows.iloc[0])
+
+
+def headline(counts: Counts, design: str = "full") -> str:
+    """Write the headline with its counts, e.g. ``412 of 660 rows (62%); weighted 57%; …``.
+
+    Parameters
+    ----------
+    counts : Counts
+        Counts of the whole finding.
+    design : str
+        The sweep's design; designs that change a few choices at a time pool nothing.
+    """
+    if not counts.admissible:
+        return f"none of {counts.planned:,} planned rows is admissible"
+    share = percent(counts.raw)
+    text = f"{counts.survived:,} of {counted(counts.admissible, 'row')} ({share})"
+    if not design.endswith(("change", "changes")):
+        text += f"; weighted {percent(counts.headline)}"
+    return f"{text}; {counted(counts.distinct, 'distinct computation')}"
+
+
+def levels_sentence(counts: Counts, significance: float) -> str:
+    """Write the weighted share at 1, 5 and 10% (and at the plan's level if it is another)."""
+    if not counts.admissible:
+        return "There is no share to state at any level."
+    parts = [
+        f"{percent(share)} at {label}"
+        for share, label in ((counts.at_1, "1%"), (counts.at_5, "5%"), (counts.at_10, "10%"))
+    ]
+    if not any(math.isclose(significance, level) for level in (0.01, 0.05, 0.10)):
+        parts.insert(0, f"{percent(counts.headline)} at the plan's {level_text(significance)}")
+    return f"By significance level, the weighted share is {joined(parts)}."
+
+
+def losses_sentence(counts: Counts) -> str:
+    """Say what was planned and not counted, with each count."""
+    losses = [
+        (counts.not_applicable, "not applicable"),
+        (counts.infeasible, "infeasible"),
+        (counts.failed, "failed"),
+        (counts.screened_out, "screened out"),
+    ]
+    parts = [f"{count:,} {name}" for count, name in losses if count]
+    if not parts:
+        return f"All {counted(counts.planned, 'planned row')} are admissible."
+    return (
+        f"Of {counted(counts.planned, 'planned row')}, {counts.admissible:,} are admissible; "
+        f"left out: {joined(parts)}."
+    )
+
+
+def sampling_interval(survival: pd.DataFrame) -> tuple[float, float] | None:
+    """Return a 95% interval of the headline share of a stratified sample of the plan.
+
+    The strata are the window entries, which the headline weighs alike, so with H strata
+    var = Σ_h p_h(1−p_h)/(n_h H²).  Each p_h is shrunk to (survived + 2)/(n_h + 4), so that
+    a stratum of all or none still has a variance (Agresti & Coull 1998).
+
+    Parameters
+    ----------
+    survival : DataFrame
+        The survival frame of one finding.
+
+    Returns
+    -------
+    tuple of float or None
+        Lower and upper end in [0, 1]; None where nothing is admissible.
+    """
+    share = overall(survival).headline
+    strata = survival[(survival["axis"] == "window") & (survival["admissible"] > 0)]
+    if share is None or strata.empty:
+        return None
+    rows = strata["admissible"].to_numpy(dtype=float)
+    shrunk = (strata["survived"].to_numpy(dtype=float) + 2) / (rows + 4)
+    variance = float((shrunk * (1 - shrunk) / rows).sum()) / len(strata) ** 2
+    reach = 1.959964 * math.sqrt(variance)
+    return max(0.0, share - reach), min(1.0, share + reach)
+
+
+def axis_sentences(survival: pd.DataFrame) -> list[str]:
+    """Say, for each axis with several choices, where survival is lowest and highest."""
+    sentences = []
+    parts = survival[survival["axis"] != OVERALL]
+    for axis in parts["axis"].drop_duplicates():
+        rows = parts[(parts["axis"] == axis) & (parts["admissible"] > 0)]
+        if len(rows) < 2:
+            continue
+        low = rows.loc[rows["headline_share"].astype(float).idxmin()]
+        high = rows.loc[rows["headline_share"].astype(float).idxmax()]
+        spread = float(high["headline_share"]) - float(low["headline_share"])
+        if spread < _FLAT:
+            sentences.append(
+                f"By {axis}: {percent(float(low['headline_share']))} for every one of "
+                f"{counted(len(rows), 'choice')}."
+            )
+            continue
+        sentences.append(
+            f"By {axis}: from {percent(float(low['headline_share']))} under {low['choice']} "
+            f"({_rows(low)}) to {percent(float(high['headline_share']))} under {high['choice']} "
+            f"({_rows(high)})."
+        )
+    return sentences
+
+
+def _rows(row: Any) -> str:
+    return share_text(_whole(row["survived"]), _whole(row["admissible"])).split(" (")[0]
