@@ -12,7 +12,7 @@ from sweep.verdicts.words import level_text
 if TYPE_CHECKING:
     import pandas as pd
 
-__all__ = ["Context", "claim_sentence", "context_of"]
+__all__ = ["Context", "baseline_record", "claim_sentence", "context_of"]
 
 
 @dataclass(frozen=True, slots=True)
@@ -100,6 +100,31 @@ def claim_sentence(finding: Mapping[str, Any]) -> str:
     if backward:
         words += f", in reverse a {backward} one"
     return words
+
+
+class _Absent(dict[str, Any]):
+    """A baseline row that is not in the store: every number is missing."""
+
+    def __missing__(self, name: str) -> None:
+        return None
+
+
+def baseline_record(baseline: pd.DataFrame) -> Mapping[str, Any]:
+    """Return the baseline's row as a mapping.
+
+    Parameters
+    ----------
+    baseline : DataFrame
+        The store's frame of that name: one row, or none while a run has not reached it.
+
+    Returns
+    -------
+    mapping
+        Without a row, the status is ``not run yet`` and every other value None.
+    """
+    if baseline.empty:
+        return _Absent(status="not run yet", reason="", failed_screens="")
+    return {str(name): value for name, value in baseline.iloc[0].items()}
 
 
 def context_of(

@@ -13,7 +13,7 @@ from sweep.verdicts.words import counted, missing, number, p_text, reason_text
 
 from . import marks
 from .arrangement import Arrangement, Row, arrange, by_axis, label_room
-from .context import Context
+from .context import Context, baseline_record
 from .layout import shortened, text_width
 from .theme import ABSENT, BASELINE, FAILS, HAIRLINE, INK, PALE, QUIET, SURVIVES, WIDTHS
 
@@ -50,7 +50,7 @@ def _placed(p_value: Any) -> float | None:
 
 def _outcome(record: Mapping[str, Any], width: str) -> str:
     """Return the words at the right of a row: the p-value and what became of the finding."""
-    if not int(record["rows_ok"]):
+    if missing(record["p_value"]):
         text = reason_text(record["status"], record["reason"])
         return text if width == "wide" else str(record["status"])
     words = p_text(record["p_value"])
@@ -92,7 +92,7 @@ def _record(row: Row, width: str) -> dict[str, Any]:
     }
 
 
-def _subtitle(context: Context, baseline: Mapping[Any, Any], arranged: Arrangement) -> str:
+def _subtitle(context: Context, baseline: Mapping[str, Any], arranged: Arrangement) -> str:
     words = [context.lead]
     if missing(baseline["p_value"]):
         why = reason_text(baseline["status"], baseline["reason"])
@@ -127,7 +127,7 @@ def build(
         ``narrow`` (85 mm) or ``wide`` (175 mm).
     """
     parts = by_axis(frames["single_changes"])
-    baseline = frames["baseline"].iloc[0].to_dict()
+    baseline = baseline_record(frames["baseline"])
     room = label_room(parts, _LABEL[width])
     arranged = arrange(parts, room, lambda record: int(record["flips"]) > 0, _TOP)
     height = max(arranged.height, _TOP) + 4
@@ -204,7 +204,7 @@ def _labels(arranged: Arrangement, height: float) -> list[alt.Chart]:
 
 
 def _baseline(
-    baseline: Mapping[Any, Any], height: float, track: tuple[float, float]
+    baseline: Mapping[str, Any], height: float, track: tuple[float, float]
 ) -> list[alt.Chart]:
     place = _placed(baseline["p_value"])
     if place is None:
@@ -297,7 +297,7 @@ def _outcomes(
 def describe(frames: Mapping[str, pd.DataFrame], context: Context) -> str:
     """Say in words what the figure shows."""
     changes = frames["single_changes"]
-    baseline = frames["baseline"].iloc[0]
+    baseline = baseline_record(frames["baseline"])
     state = baseline["survives"]
     words = [
         f"Single changes from the baseline. {context.lead}",

@@ -98,20 +98,21 @@ def _pieces(task: Task, group: _Group) -> list[tuple[Equation, Equation, Ints]]:
     members, window = group.members[usable], window[usable]
     if not members.size:
         return []
-    table = np.stack(
-        [
-            forward.own, forward.cause, forward.given, forward.start,
-            backward.own, backward.cause, backward.given, backward.start,
-        ],
-        axis=1,
-    )[window]  # fmt: skip
-    kinds, which = np.unique(table, axis=0, return_inverse=True)
+    parts = (
+        forward.own, forward.cause, forward.given, forward.start,
+        backward.own, backward.cause, backward.given, backward.start,
+    )  # fmt: skip
+    key = np.zeros(window.size, np.int64)
+    for part in parts[: 4 if backward is forward else 8]:
+        key = key * 128 + part[window]
+    _, which, number = np.unique(key, return_index=True, return_inverse=True)
     system = task.systems[group.system]
     pieces = []
-    for number, kind in enumerate(kinds.tolist()):
+    for piece, example in enumerate(window[which].tolist()):
+        kind = [int(part[example]) for part in parts]
         ahead = Equation.of(system, tuple(kind[:3]), kind[3], group.term, reverse=False)
         back = Equation.of(system, tuple(kind[4:7]), kind[7], group.term, reverse=True)
-        pieces.append((ahead, back, members[which.reshape(-1) == number]))
+        pieces.append((ahead, back, members[number.reshape(-1) == piece]))
     return pieces
 
 

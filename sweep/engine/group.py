@@ -3,14 +3,17 @@
 from __future__ import annotations
 
 from collections.abc import Iterator
+from dataclasses import dataclass
 
 import numpy as np
 from numpy.typing import NDArray
 
-from sweep.engine.cost import seconds_a_row, seconds_a_window
+from sweep.engine.cost import task_seconds
 from sweep.engine.prepare import Prepared
 from sweep.engine.task import Scale, System, Task
+from sweep.panel.deterministics import Term
 from sweep.panel.load import data_digest
+from sweep.panel.transforms import TRANSFORMS
 from sweep.panel.windows import Positions
 from sweep.plan.choices import (
     AXES,
@@ -34,7 +37,7 @@ SECONDS = 0.6
 
 
 def make_tasks(prepared: Prepared, missing: Ints, details: NDArray[np.bool_]) -> list[Task]:
-    """Group rows by panel, cut each panel into blocks of windows, dear tasks first.
+    """Group rows by panel, cut each panel into runs of windows, dear tasks first.
 
     Parameters
     ----------
@@ -59,7 +62,7 @@ def make_tasks(prepared: Prepared, missing: Ints, details: NDArray[np.bool_]) ->
 
 
 def _by_panel(prepared: Prepared, missing: Ints) -> Iterator[Ints]:
-    """Split rows by series, transformation and moving window entry (fixed ones together)."""
+    """Split rows by series and transformation; findings on the same series go together."""
     plan, rows = prepared.plan, prepared.rows
     panels: dict[object, int] = {}
     table = np.zeros((len(plan.findings), len(plan.axes["measures"])), np.int64)
@@ -72,11 +75,8 @@ def _by_panel(prepared: Prepared, missing: Ints) -> Iterator[Ints]:
                 for c, p in sorted(prepared.windows[finding.number].items())
             )
             table[finding.number, code] = panels.setdefault((roles, span), len(panels))
-    moving = np.array([bool(getattr(c, "moving", "")) for c in plan.axes["window"]])
-    entry = np.where(moving, np.arange(moving.size) + 1, 0)
     key = table[rows.finding[missing], rows.codes["measures"][missing]]
     key = key * len(plan.axes["transformation"]) + rows.codes["transformation"][missing]
-    key = key * (moving.size + 1) + entry[rows.codes["window"][missing]]
     order = np.argsort(key, kind="stable")
     for members in np.split(order, np.flatnonzero(np.diff(key[order])) + 1):
         yield missing[members]
@@ -91,42 +91,27 @@ def _columns(prepared: Prepared, finding: Finding, code: int) -> tuple[str, ...]
 def _panel_tasks(
     prepared: Prepared, members: Ints, details: NDArray[np.bool_]
 ) -> Iterator[Task]:
+    """Cut the windows of a panel, in order of entry and position, into tasks of even cost."""
     rows = prepared.rows
-    window_code = rows.codes["window"][members]
-    choice = prepared.plan.axes["window"][int(window_code[0])]
-    assert isinstance(choice, WindowChoice)
-    if choice.moving:
-        where = rows.position[members].astype(np.int64)
-    else:
-        _, where = np.unique(window_code, return_inverse=True)
-        where = where.reshape(-1)
+    longest = int(rows.position[members].max()) + 1
+    where = rows.codes["window"][members].astype(np.int64) * longest + rows.position[members]
     order = np.argsort(where, kind="stable")
     members, where = members[order], where[order]
-    limit = _block_limit(choice)
-    cost = seconds_a_row(prepared, members) * members.size / max(int(where.max()) + 1, 1)
-    cost += seconds_a_window(prepared, members)
-    each = max(1, min(limit, int(SECONDS / max(cost, 1e-9)), _rows_limit(where)))
-    for block in np.split(members, np.flatnonzero(np.diff(where // each)) + 1):
-        yield _task(prepared, block, details, choice, cost * each)
-
-
-def _rows_limit(where: Ints) -> int:
-    windows = int(where.max()) + 1
-    return max(1, int(LARGEST_TASK * windows / where.size))
-
-
-def _block_limit(choice: WindowChoice) -> int:
-    """Return how many neighbouring windows share running sums: span at most twice the window."""
-    if choice.moving == "rolling":
-        return max(1, min(256, choice.length // choice.step))
-    return 128
+    starts = np.concatenate([[0], np.flatnonzero(np.diff(where)) + 1])
+    calls, per_row = task_seconds(prepared, members)
+    pieces = min(
+        max(round(per_row * members.size / SECONDS), -(-members.size // LARGEST_TASK), 1),
+        starts.size,
+    )
+    cuts = starts[np.linspace(0, starts.size, pieces + 1).astype(int)[1:-1]]
+    for part in np.split(members, cuts):
+        yield _task(prepared, part, details, calls + per_row * part.size)
 
 
 def _task(
     prepared: Prepared,
     members: Ints,
     details: NDArray[np.bool_],
-    choice: WindowChoice,
     cost: float,
 ) -> Task:
     plan, rows, calendar = prepared.plan, prepared.rows, prepared.dataset.calendar
@@ -142,9 +127,10 @@ def _task(
               transformation.horizon)
         for column, role in pairs
     )  # fmt: skip
-    first, last, episodes, window = _window_rows(prepared, members, choice)
-    systems, system = _systems(prepared, members, names)
     used = {axis: np.unique(rows.codes[axis][members]) for axis in AXES}
+    terms = tuple(prepared.terms[int(c)] for c in used["deterministics"])
+    windows = _window_rows(prepared, members, scales, terms)
+    systems, system = _systems(prepared, members, names)
     season = calendar.season(np.arange(len(calendar)))
     values = np.column_stack([prepared.dataset.column(name) for name in names])
     return Task(
@@ -153,13 +139,14 @@ def _task(
         frequency=calendar.frequency.name,
         season=season,
         seasons=calendar.frequency.seasons,
-        first=first,
-        last=last,
-        episodes=episodes,
-        running=bool(choice.moving) and not any(episodes),
+        first=windows.first,
+        last=windows.last,
+        episodes=windows.episodes,
+        block=windows.block,
+        spans=windows.spans,
         systems=systems,
         lags=tuple(_lag(plan.axes["lags"][c]) for c in used["lags"]),
-        terms=tuple(prepared.terms[int(c)] for c in used["deterministics"]),
+        terms=terms,
         procedures=tuple(_procedure(plan.axes["test"][c]) for c in used["test"]),
         row=members,
         system=system,
@@ -168,7 +155,7 @@ def _task(
             used["deterministics"], rows.codes["deterministics"][members]
         ).astype(np.int16),
         procedure=np.searchsorted(used["test"], rows.codes["test"][members]).astype(np.int16),
-        window=window,
+        window=windows.window,
         coefficients=details[members],
         tokens=_column_tokens(prepared, names, scales),
         cost=cost,
@@ -185,24 +172,65 @@ def _procedure(choice: object) -> ProcedureChoice:
     return choice
 
 
+@dataclass(frozen=True, slots=True)
+class _Windows:
+    first: Ints
+    last: Ints
+    episodes: tuple[tuple[tuple[int, int], ...], ...]
+    block: Ints
+    spans: dict[int, tuple[int, int]]
+    window: NDArray[np.int32]
+
+
 def _window_rows(
-    prepared: Prepared, members: Ints, choice: WindowChoice
-) -> tuple[Ints, Ints, tuple[tuple[tuple[int, int], ...], ...], NDArray[np.int32]]:
-    """Return the windows of a block and each row's window in it."""
+    prepared: Prepared,
+    members: Ints,
+    scales: tuple[Scale, ...],
+    terms: tuple[tuple[Term, ...], ...],
+) -> _Windows:
+    """Return the windows of a task, the running sums that serve them, and each row's window."""
     rows = prepared.rows
     found = prepared.windows[int(rows.finding[members[0]])]
-    code = rows.codes["window"][members].astype(np.int64)
-    if choice.moving:
-        positions: Positions = found[int(code[0])]
-        places, window = np.unique(rows.position[members], return_inverse=True)
-        episodes = (positions.episodes,) * places.size
-        first, last = positions.first[places], positions.last[places]
-    else:
-        codes, window = np.unique(code, return_inverse=True)
-        first = np.array([found[int(c)].first[0] for c in codes], dtype=np.int64)
-        last = np.array([found[int(c)].last[0] for c in codes], dtype=np.int64)
-        episodes = tuple(found[int(c)].episodes for c in codes)
-    return first, last, episodes, window.reshape(-1).astype(np.int32)
+    longest = int(rows.position[members].max()) + 1
+    key = rows.codes["window"][members].astype(np.int64) * longest + rows.position[members]
+    kinds, window = np.unique(key, return_inverse=True)
+    code, position = kinds // longest, kinds % longest
+    first, last = np.empty_like(kinds), np.empty_like(kinds)
+    block = np.full(kinds.size, -1, np.int64)
+    spans: dict[int, tuple[int, int]] = {}
+    episodes: list[tuple[tuple[int, int], ...]] = [()] * kinds.size
+    local = all(TRANSFORMS[scale.name].kind == "local" for scale in scales)
+    fourier = any(term.kind == "sine" for choice in terms for term in choice)
+    for entry in np.unique(code).tolist():
+        here = np.flatnonzero(code == entry)
+        positions: Positions = found[entry]
+        first[here] = positions.first[position[here]]
+        last[here] = positions.last[position[here]]
+        for w in here.tolist():
+            episodes[w] = positions.episodes
+        choice = prepared.plan.axes["window"][entry]
+        assert isinstance(choice, WindowChoice)
+        unequal = choice.moving in ("expanding", "shrinking")
+        if choice.moving and local and not positions.episodes and not (fourier and unequal):
+            number = position[here] // _block_limit(choice)
+            block[here] = entry * 2**32 + number
+            for b in np.unique(number).tolist():
+                spans[entry * 2**32 + b] = _block_span(positions, b, _block_limit(choice))
+    return _Windows(
+        first, last, tuple(episodes), block, spans, window.reshape(-1).astype(np.int32)
+    )
+
+
+def _block_span(positions: Positions, block: int, limit: int) -> tuple[int, int]:
+    inside = slice(block * limit, (block + 1) * limit)
+    return int(positions.first[inside].min()), int(positions.last[inside].max())
+
+
+def _block_limit(choice: WindowChoice) -> int:
+    """Return how many neighbouring windows share running sums: span at most twice the window."""
+    if choice.moving == "rolling":
+        return max(1, min(256, choice.length // choice.step))
+    return 128
 
 
 def _systems(

@@ -11,6 +11,7 @@ from sweep.engine.task import Task
 from sweep.kernels.lagproducts import RunningMoments
 from sweep.kernels.layout import Moments
 from sweep.kernels.rowmoments import RowMoments, WindowRows
+from sweep.kernels.together import JoinedMoments
 from sweep.panel.deterministics import CONSTANT, Term, TermContext, term_columns
 from sweep.panel.transforms import TRANSFORMS
 
@@ -33,6 +34,7 @@ class TaskPanel:
         self.lags = max((max(c.own, c.cause, c.given, c.maximum) for c in task.lags), default=1)
         exogenous = [lags for system in task.systems for _, lags in system.exogenous]
         self.lags = max([self.lags, *exogenous])
+        self._local: Floats | None = None
         self._built: dict[bool, tuple[Moments, tuple[Term, ...]]] = {}
         self.blocked = _filter_meets_episode(task)
 
@@ -50,18 +52,29 @@ class TaskPanel:
         groups = [terms for terms in task.terms if (CONSTANT in terms) == centre]
         every = sorted({item for terms in groups for item in terms} - {CONSTANT})
         terms = (CONSTANT, *every)  # column 0 is the constant, wanted or not, for the means
-        fourier = any(item.kind in ("sine", "cosine") for item in terms)
-        equal = np.unique(task.last - task.first).size == 1
-        local = all(TRANSFORMS[scale.name].kind == "local" for scale in task.scales)
-        if task.running and local and (equal or not fourier):
-            values = _local_values(task)
-            columns = _block_terms(task, terms)
-            return (
-                RunningMoments(values, columns, task.first, task.last, self.lags, centre=centre),
-                terms,
-            )
-        windows = [self._window(w, terms) for w in range(task.first.size)]
-        return RowMoments(windows, centre=centre), terms
+        parts: list[tuple[Moments, Ints]] = []
+        for block in np.unique(task.block[task.block >= 0]):
+            numbers = np.flatnonzero(task.block == block)
+            parts.append((self._running(int(block), numbers, terms, centre), numbers))
+        alone = np.flatnonzero(task.block < 0)
+        if alone.size:
+            windows = [self._window(w, terms) for w in alone.tolist()]
+            parts.append((RowMoments(windows, centre=centre), alone))
+        return JoinedMoments(parts), terms
+
+    def _running(
+        self, block: int, numbers: Ints, terms: tuple[Term, ...], centre: bool
+    ) -> RunningMoments:
+        task = self.task
+        span = task.spans[block]
+        if self._local is None:
+            self._local = _local_values(task)
+        period = float(task.last[numbers[0]] - task.first[numbers[0]] + 1)
+        columns = _block_terms(task, terms, span, period)
+        return RunningMoments(
+            self._local, columns, task.first[numbers], task.last[numbers], span, self.lags,
+            centre=centre,
+        )  # fmt: skip
 
     def _window(self, w: int, terms: Sequence[Term]) -> WindowRows:
         task = self.task
@@ -74,11 +87,13 @@ class TaskPanel:
         return WindowRows(values, term_columns(terms, context), exists)
 
 
-def _block_terms(task: Task, terms: Sequence[Term]) -> Floats:
-    low, high = int(task.first.min()), int(task.last.max())
+def _block_terms(
+    task: Task, terms: Sequence[Term], span: tuple[int, int], period: float
+) -> Floats:
+    low, high = span
     context = TermContext(
         np.arange(task.values.shape[0]), task.season, task.seasons, (low + high) / 2,
-        max((high - low) / 2, 1.0), float(task.last[0] - task.first[0] + 1),
+        max((high - low) / 2, 1.0), period,
     )  # fmt: skip
     return term_columns(terms, context)
 

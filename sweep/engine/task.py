@@ -67,8 +67,10 @@ class Task:
         Calendar rows of the windows.
     episodes : tuple of tuple of (int, int), length w
         Episodes left out of each window.
-    running : bool
-        Neighbouring windows that running sums may serve.
+    block : ndarray of int, shape (w,)
+        Which running sums serve the window, -1 where its own rows do.
+    spans : mapping of block to (int, int)
+        Calendar rows that each block's running sums cover.
     systems, lags, terms, procedures : tuple
         What the row codes point into.
     row : ndarray of int64, shape (s,)
@@ -91,7 +93,8 @@ class Task:
     first: Ints
     last: Ints
     episodes: tuple[tuple[tuple[int, int], ...], ...]
-    running: bool
+    block: Ints
+    spans: dict[int, tuple[int, int]]
     systems: tuple[System, ...]
     lags: tuple[LagChoice, ...]
     terms: tuple[tuple[Term, ...], ...]

@@ -30,6 +30,9 @@ class RunningMoments:
         Deterministic columns on the calendar; column 0 is the constant.
     first, last : ndarray of int, shape (w,)
         First and last calendar row of each window.
+    span : (int, int)
+        Calendar rows of the whole block, whichever of its windows are asked for, so that
+        numbers do not depend on what was computed before.
     lags : int
         Largest lag of any layout that will be asked for.
     centre : bool
@@ -43,10 +46,17 @@ class RunningMoments:
     """
 
     def __init__(
-        self, values: Floats, terms: Floats, first: Ints, last: Ints, lags: int, *, centre: bool
+        self,
+        values: Floats,
+        terms: Floats,
+        first: Ints,
+        last: Ints,
+        span: tuple[int, int],
+        lags: int,
+        *,
+        centre: bool,
     ) -> None:
-        self.low = int(first.min())
-        high = int(last.max())
+        self.low, high = span
         block = values[self.low : high + 1]
         self.first, self.last, self.lags, self.terms = first, last, lags, terms.shape[1]
         self._valid = [_bounds(np.isfinite(block[:, j]), self.low) for j in range(block.shape[1])]

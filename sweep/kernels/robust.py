@@ -18,7 +18,7 @@ from dataclasses import dataclass
 import numpy as np
 
 from sweep.kernels.layout import Floats, Ints, Layout, Moments
-from sweep.kernels.stacks import Flag, Regression, Solver, StackFit, forward, inverse_lower
+from sweep.kernels.stacks import Flag, Regression, Solver, StackFit, forward
 
 __all__ = ["COVARIANCES", "RobustFit", "robust_stack"]
 
@@ -107,23 +107,26 @@ def _fill(
     k, q = regression.regressors, regression.restricted.size
     basis = _orthonormal(matrix[:, :, :k], fit.lower[members], fit.solver[members] == Solver.QR, k)
     leverage = (basis**2).sum(axis=2)
-    block = basis[:, :, k - q :]
-    inverse = inverse_lower(fit.lower[members][:, k - q : k, k - q : k])
+    block = np.ascontiguousarray(basis[:, :, k - q :])
+    inverse = np.linalg.inv(fit.lower[members][:, k - q : k, k - q : k])
     direction = inverse.sum(axis=2)
-    for effect in range(regression.effects.size):
-        observed = matrix[:, :, k + effect]
-        projection = np.einsum("wtk,wt->wk", basis, observed)
-        residual = observed - np.einsum("wtk,wk->wt", basis, projection)
-        for name, result in results.items():
-            weight, exact = _weight(name, leverage, k)
-            middle = np.einsum("wti,wt,wtj->wij", block, weight * residual**2, block, optimize=True)
-            wald, error = _wald(middle, projection[:, k - q :], direction)
-            lags = np.sqrt(np.einsum("wik,wij,wjk->wk", inverse, middle, inverse, optimize=True))
+    observed = matrix[:, :, k:]
+    projection = basis.transpose(0, 2, 1) @ observed
+    squares = (observed - basis @ projection) ** 2
+    for name, result in results.items():
+        weight, exact = _weight(name, leverage, k)
+        for effect in range(regression.effects.size):
+            weighted = block * (weight * squares[:, :, effect])[:, :, None]
+            middle = weighted.transpose(0, 2, 1) @ block
+            wald = _wald(middle, projection[:, k - q :, effect])
+            error = np.sqrt((direction[:, None] @ middle @ direction[:, :, None])[:, 0, 0])
+            sandwich = inverse.transpose(0, 2, 1) @ middle @ inverse
+            lags = np.sqrt(np.einsum("wkk->wk", sandwich))
             wald[exact], error[exact], lags[exact] = np.nan, np.nan, np.nan
             result.lag_errors[members, effect] = lags
             result.wald[members, effect] = wald
             result.coefficient_sum_error[members, effect] = error
-            result.exact_row[members] |= exact
+        result.exact_row[members] |= exact
 
 
 def _orthonormal(columns: Floats, lower: Floats, by_qr: np.ndarray, k: int) -> Floats:
@@ -152,12 +155,11 @@ def _weight(name: str, leverage: Floats, k: int) -> tuple[Floats, np.ndarray]:
     return room ** (-1.0 if name == "HC2" else -2.0), exact
 
 
-def _wald(middle: Floats, projection: Floats, direction: Floats) -> tuple[Floats, Floats]:
-    """Return b′V⁻¹b and the standard error of the coefficient sum, each (w,)."""
-    error = np.sqrt(np.einsum("wi,wij,wj->w", direction, middle, direction, optimize=True))
+def _wald(middle: Floats, projection: Floats) -> Floats:
+    """Return b′V⁻¹b, shape (w,), NaN where V is singular."""
     wald = np.full(middle.shape[0], np.nan)
     _solve_into(middle, projection, wald, np.arange(wald.size))
-    return wald, error
+    return wald
 
 
 def _solve_into(middle: Floats, projection: Floats, wald: Floats, members: np.ndarray) -> None:

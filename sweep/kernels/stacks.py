@@ -20,7 +20,7 @@ import numpy as np
 
 from sweep.kernels.layout import Floats, Gram, Ints, Layout, Moments
 
-__all__ = ["Factor", "Flag", "Regression", "Solver", "StackFit", "factorise", "fit_stack", "forward", "inverse_lower"]
+__all__ = ["Factor", "Flag", "Regression", "Solver", "StackFit", "factorise", "fit_stack", "forward"]
 
 EPSILON = float(np.finfo(np.float64).eps)
 QR_TRIGGER = 1e-11
@@ -131,7 +131,7 @@ class StackFit:
             Standardised units; b = L_cc⁻ᵀ l_yc and se_j² = s1/(T−k) · (L_cc⁻ᵀ L_cc⁻¹)_jj.
         """
         k, q = self.regressors, self.restrictions
-        inverse = inverse_lower(self.lower[:, k - q : k, k - q : k])
+        inverse = _inverse(self.lower[:, k - q : k, k - q : k], self.flag == Flag.FINE)
         values = np.einsum("wij,wi->wj", inverse, self.lower[:, k + effect, k - q : k])
         freedom = np.maximum(self.observations - k, 1)
         variance = self.residual[:, effect] / freedom
@@ -356,11 +356,9 @@ def forward(lower: Floats, right: Floats) -> Floats:
     return solution
 
 
-def inverse_lower(lower: Floats) -> Floats:
-    """Invert a stack of small lower triangles, shape (w, q, q)."""
-    inverse = np.zeros_like(lower)
-    for column in range(lower.shape[1]):
-        right = np.zeros(lower.shape[:2])
-        right[:, column] = 1.0
-        inverse[:, :, column] = forward(lower, right)
+
+def _inverse(lower: Floats, fine: np.ndarray) -> Floats:
+    """Invert the lower triangles of the windows that have one, NaN elsewhere."""
+    inverse = np.full_like(lower, np.nan)
+    inverse[fine] = np.linalg.inv(lower[fine])
     return inverse

@@ -1,0 +1,1 @@
+"""The report: tables, notes and one self-contained page."""

@@ -36,11 +36,11 @@ class TableModule(Protocol):
     """What every table's module provides."""
 
     @property
-    def NAME(self) -> str:
+    def NAME(self) -> str:  # noqa: N802 - a constant of the module
         """Name in the family."""
 
     @property
-    def NEEDS(self) -> tuple[str, ...]:
+    def NEEDS(self) -> tuple[str, ...]:  # noqa: N802 - a constant of the module
         """Frames that it reads."""
 
     def build(self, frames: Mapping[str, pd.DataFrame], context: Context) -> Table:

@@ -5,6 +5,7 @@ from __future__ import annotations
 from collections.abc import Mapping
 from typing import TYPE_CHECKING, Any
 
+from sweep.charts.context import baseline_record
 from sweep.verdicts.words import fixed, missing, number, p_text, period_text, reason_text
 
 from .model import Column, Table
@@ -20,7 +21,7 @@ NAME = "baseline"
 NEEDS = ("baseline",)
 
 
-def _law(row: Mapping[Any, Any]) -> str:
+def _law(row: Mapping[str, Any]) -> str:
     """Write the reference law, e.g. ``F(4, 342)`` or ``χ²(4)``."""
     if missing(row["df_num"]):
         return ""
@@ -29,14 +30,14 @@ def _law(row: Mapping[Any, Any]) -> str:
     return f"F({int(row['df_num'])}, {int(row['df_den'])})"
 
 
-def _window(row: Mapping[Any, Any]) -> str:
+def _window(row: Mapping[str, Any]) -> str:
     dates = f"{period_text(row['window_start'])} to {period_text(row['window_end'])}"
     return f"{row['window_name']} ({dates})"
 
 
 def build(frames: Mapping[str, pd.DataFrame], context: Context) -> Table:
     """Return the baseline's choices and numbers, one a line."""
-    row = frames["baseline"].iloc[0].to_dict()
+    row = baseline_record(frames["baseline"])
     order = "" if missing(row["lags"]) else f" (order used: {int(row['lags'])})"
     ok = row["status"] == "ok"
     holds = "not admissible" if missing(row["survives"]) else "yes" if row["survives"] else "no"
@@ -68,8 +69,6 @@ def build(frames: Mapping[str, pd.DataFrame], context: Context) -> Table:
         NAME,
         f"The baseline specification: {context.statement}.",
         (Column("Item"), Column("Value")),
-        tuple((label, str(value)) for label, value in lines),
-        (
-            f"{context.lead} The statistic is on its own sample unless the lag choice says otherwise.",
-        ),
+        tuple((label, "" if missing(value) else str(value)) for label, value in lines),
+        (f"{context.lead} Rows, statistic and order are those of this specification alone.",),
     )

@@ -34,7 +34,9 @@ def build(frames: Mapping[str, pd.DataFrame], context: Context) -> Table:
     """Return the ranges of one finding, one line a scale."""
     rows = []
     for record in frames["effects"].to_dict("records"):
-        scale = f"{record['scale']} (baseline's scale)" if record["baseline"] else record["scale"]
+        scale = (
+            f"{record['scale']} (baseline's scale)" if record["is_baseline"] else record["scale"]
+        )
         rows.append((scale, *(record[column.field] for column in _COLUMNS[1:])))
     notes = (
         "Sum of the tested lag coefficients in units of the effect per unit of the cause on that "

@@ -5,6 +5,7 @@ from __future__ import annotations
 from collections.abc import Mapping
 from typing import TYPE_CHECKING
 
+from sweep.charts.context import baseline_record
 from sweep.verdicts.words import p_text, reason_text
 
 from .model import Column, Table
@@ -29,6 +30,7 @@ _COLUMNS = (
     Column("p after", "p", "p_value"),
     Column("lowest p", "p", "p_low"),
     Column("highest p", "p", "p_high"),
+    Column("Reverse p", "p", "reverse_p_value"),
     Column("Change in z", "number", "z_change"),
     Column("Sum of coefficients", "number", "coefficient_sum"),
     Column("Status"),
@@ -42,7 +44,7 @@ def build(frames: Mapping[str, pd.DataFrame], context: Context) -> Table:
         fields = (column.field for column in _COLUMNS[:-1])
         status = reason_text(record["status"], record["reason"])
         rows.append((*(record[field] for field in fields), status))
-    baseline = frames["baseline"].iloc[0]
+    baseline = baseline_record(frames["baseline"])
     notes = (
         f"{context.lead} Baseline: p {p_text(baseline['p_value'])}. Turned: rows in which the "
         "finding holds where it does not at the baseline, or the other way round. For moving "

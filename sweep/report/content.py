@@ -1,0 +1,226 @@
+"""What a report is made from: frames, words and records, never a connection."""
+
+from __future__ import annotations
+
+import json
+from collections.abc import Mapping, Sequence
+from dataclasses import dataclass, field
+from typing import TYPE_CHECKING, Any
+
+from sweep.charts.context import Context, baseline_record, context_of
+from sweep.verdicts import directions, effects, flips, reproduction, survival
+from sweep.verdicts.words import missing, percent
+
+from .notes import CAUTIONS, METHOD_NOTES, Note
+
+if TYPE_CHECKING:
+    import pandas as pd
+
+__all__ = ["FRAMES", "FindingContent", "ReportContent", "content_of", "sizes", "summary"]
+
+# Every frame that a report reads, named as the functions of ``store.read``.
+FRAMES = (
+    "survival",
+    "baseline",
+    "attrition",
+    "single_changes",
+    "shortest_flips",
+    "flip_distances",
+    "windows",
+    "directions",
+    "effects",
+    "effects_overall",
+)
+
+
+@dataclass(frozen=True, slots=True)
+class FindingContent:
+    """One finding of a report.
+
+    Attributes
+    ----------
+    record : mapping
+        The finding as the store keeps it.
+    context : Context
+        Its claim, level and counts.
+    frames : dict of str to DataFrame
+        One frame for each name in ``FRAMES``.
+    redundancies : tuple of str
+        Sentences on choices that give the same numbers by construction.
+    """
+
+    record: Mapping[str, Any]
+    context: Context
+    frames: dict[str, pd.DataFrame]
+    redundancies: tuple[str, ...] = ()
+
+    @property
+    def reproduction(self) -> reproduction.Reproduction:
+        """The baseline beside the printed numbers."""
+        return reproduction.compare(baseline_record(self.frames["baseline"]), self.record)
+
+
+@dataclass(frozen=True, slots=True)
+class ReportContent:
+    """Everything that the page shows.
+
+    Attributes
+    ----------
+    title : str
+        The plan's title.
+    significance : float
+        The plan's level.
+    findings : tuple of FindingContent
+        In plan order.
+    redundancies, ruled_out : tuple of str
+        Sentences that hold for all findings: redundant choices; combinations that the plan
+        rules out, with reasons and counts.
+    data, run, versions, hashes : mapping of str to str
+        Facts shown as two columns.
+    plan_toml : str
+        The plan's text.
+    notes, cautions
+        How the numbers are made, and what they do not say.
+    """
+
+    title: str
+    significance: float
+    findings: tuple[FindingContent, ...]
+    redundancies: tuple[str, ...] = ()
+    ruled_out: tuple[str, ...] = ()
+    data: Mapping[str, str] = field(default_factory=dict)
+    run: Mapping[str, str] = field(default_factory=dict)
+    versions: Mapping[str, str] = field(default_factory=dict)
+    hashes: Mapping[str, str] = field(default_factory=dict)
+    plan_toml: str = ""
+    notes: tuple[Note, ...] = METHOD_NOTES
+    cautions: tuple[str, ...] = CAUTIONS
+
+
+def summary(finding: FindingContent) -> list[str]:
+    """Return the sentences that sum up a finding, in the order in which they are read."""
+    context, frames = finding.context, finding.frames
+    counts = context.counts
+    holds = baseline_record(frames["baseline"])["survives"]
+    sentences = [f"The finding survives in {survival.headline(counts, context.design)}."]
+    if not counts.admissible:
+        sentences = [f"Nothing can be said: {survival.headline(counts, context.design)}."]
+    elif context.design.startswith("sample"):
+        interval = survival.sampling_interval(frames["survival"])
+        if interval:
+            low, high = (percent(end) for end in interval)
+            sentences.append(
+                f"These rows are a sample of the plan; the 95% sampling interval of the weighted "
+                f"share is {low} to {high}."
+            )
+    if context.design.endswith(("change", "changes")):
+        sentences.append(
+            "The sweep changes few choices at a time, so there is no pooled share; the changes "
+            "beside the baseline are what it shows."
+        )
+    else:
+        sentences.append(survival.levels_sentence(counts, context.significance))
+    sentences.append(survival.losses_sentence(counts))
+    if counts.other_sign:
+        sentences.append(
+            f"In {counts.other_sign:,} rows the test rejects but the sum of the coefficients has "
+            "the other sign; they do not count as survived."
+        )
+    sentences += [
+        flips.single_sentence(frames["single_changes"], holds),
+        flips.path_sentence(frames["shortest_flips"], holds),
+        directions.sentence(frames["directions"]),
+    ]
+    return [sentence for sentence in sentences if sentence]
+
+
+def sizes(finding: FindingContent) -> list[str]:
+    """Return the sentences on sign and size of the effect."""
+    return effects.sentences(finding.frames["effects_overall"], finding.frames["effects"])
+
+
+def _digest(finding: Mapping[str, Any], name: str) -> str:
+    return f"{int(finding[f'{name}_high']):016x}{int(finding[f'{name}_low']):016x}"
+
+
+def _facts(text: Any) -> dict[str, str]:
+    """Return a stored JSON object as words by name."""
+    if missing(text) or not text:
+        return {}
+    loaded = json.loads(text) if isinstance(text, str) else dict(text)
+    return {
+        str(name): value if isinstance(value, str) else json.dumps(value, ensure_ascii=False)
+        for name, value in loaded.items()
+        if not missing(value)
+    }
+
+
+def content_of(
+    info: Mapping[str, Any],
+    findings: Sequence[Mapping[str, Any]],
+    frames: Mapping[int, dict[str, pd.DataFrame]],
+    *,
+    redundancies: Mapping[int, Sequence[str]] | None = None,
+    ruled_out: Sequence[str] = (),
+) -> ReportContent:
+    """Gather a report's content from what the store's readers return.
+
+    Parameters
+    ----------
+    info : mapping
+        ``store.read.sweep_info``: the sweep's record and its run.
+    findings : sequence of mapping
+        The records of the findings, in plan order.
+    frames : mapping of int to dict of DataFrame
+        For each finding's number, one frame for each name in ``FRAMES``.
+    redundancies : mapping of int to sequence of str, optional
+        Sentences by finding on choices that give the same numbers by construction.
+    ruled_out : sequence of str
+        Sentences on combinations that the plan rules out.
+
+    Raises
+    ------
+    KeyError
+        If a frame is missing.
+    """
+    data = _facts(info["data_note"])
+    note = "; ".join(f"{name}: {value}" for name, value in data.items())
+    found = []
+    for record in findings:
+        number = int(record["finding"])
+        own = {name: frames[number][name] for name in FRAMES}
+        context = context_of(
+            record,
+            own["survival"],
+            significance=float(info["significance"]),
+            title=str(info["title"]),
+            design=str(info["design"]),
+            data_note=note,
+        )
+        said = tuple((redundancies or {}).get(number, ()))
+        found.append(FindingContent(record, context, own, said))
+    run = {
+        "started": info.get("started"),
+        "finished": info.get("finished"),
+        "seconds": info.get("wall_seconds"),
+        "rows stored": info.get("rows"),
+        "design": info.get("design"),
+        "seed": info.get("seed"),
+        "numerics": info.get("numerics"),
+    }
+    hashes = {"plan": str(info["plan_digest"])}
+    for record in findings:
+        hashes[f"data of “{record['name']}”"] = _digest(record, "data")
+        hashes[f"baseline of “{record['name']}”"] = _digest(record, "baseline")
+    return ReportContent(
+        title=str(info["title"]),
+        significance=float(info["significance"]),
+        findings=tuple(found),
+        redundancies=(),
+        ruled_out=tuple(ruled_out),
+        data=data,
+        run={name: str(value) for name, value in run.items() if not missing(value)},
+        versions=_facts(info["versions"]),
+        hashes=hashes,
+        plan_toml=str(info["plan_toml"]),
+    )

@@ -1,0 +1,165 @@
+"""One self-contained HTML page: it opens offline, loads nothing and prints."""
+
+from __future__ import annotations
+
+import functools
+import json
+import re
+from dataclasses import dataclass
+from importlib.resources import files
+from typing import Any
+
+import jinja2
+from markupsafe import Markup
+
+from sweep.charts import CHARTS, chart
+from sweep.charts.render import language_version, specification, svg
+from sweep.verdicts.survival import axis_sentences
+from sweep.verdicts.words import level_text
+
+from .content import FindingContent, ReportContent, sizes, summary
+from .tables import TABLES
+from .tables.writers import as_html
+
+__all__ = ["Figure", "page", "script_json", "still"]
+
+
+@dataclass(frozen=True, slots=True)
+class Figure:
+    """A figure of the page.
+
+    Attributes
+    ----------
+    number : int
+        Counted through the page, from 1.
+    name, question : str
+        The chart's name and the question it answers.
+    still : Markup
+        The drawing itself, complete without scripts.
+    json : Markup
+        The chart's specification, safe inside a script element.
+    words : str
+        The text alternative.
+    """
+
+    number: int
+    name: str
+    question: str
+    still: Markup
+    json: Markup
+    words: str
+
+
+def script_json(value: Any) -> Markup:
+    r"""Write JSON that cannot leave a script element, whatever its strings hold.
+
+    Parameters
+    ----------
+    value : object
+        Plain JSON values.
+
+    Examples
+    --------
+    >>> print(script_json({"name": "</script><b>"}))
+    {"name":"\u003c/script\u003e\u003cb\u003e"}
+    """
+    text = json.dumps(value, ensure_ascii=False, separators=(",", ":"), allow_nan=False)
+    for character in "<>&\u2028\u2029":
+        text = text.replace(character, f"\\u{ord(character):04x}")
+    return Markup(text)
+
+
+def still(drawing: str, number: int) -> Markup:
+    """Prepare SVG text for a page with several drawings: its ids become the figure's own."""
+    own = re.sub(r'\bid="([^"<>]*)"', rf'id="figure-{number}-\1"', drawing)
+    own = re.sub(r"url\(#([^)<>]*)\)", rf"url(#figure-{number}-\1)", own)
+    return Markup(own[own.index("<svg") :])
+
+
+@functools.cache
+def _bundle() -> Markup:
+    """Return the drawing library as one script, read once."""
+    import vl_convert
+
+    code = vl_convert.javascript_bundle(
+        "window.drawFigure = vegaEmbed;", vl_version=language_version()
+    )
+    # A closing tag inside the code, if a version ever holds one, would end the element.
+    return Markup(code.replace("</script", "<\\/script"))
+
+
+def _figures(finding: FindingContent, first: int) -> list[Figure]:
+    found = []
+    for number, name in enumerate(CHARTS, start=first):
+        module = chart(name)
+        drawn = module.build(finding.frames, finding.context, "wide")
+        found.append(
+            Figure(
+                number,
+                name,
+                module.QUESTION,
+                still(svg(drawn), number),
+                script_json(specification(drawn)),
+                module.describe(finding.frames, finding.context),
+            )
+        )
+    return found
+
+
+def _sections(report: ReportContent) -> list[dict[str, Any]]:
+    sections, drawn = [], 0
+    for number, finding in enumerate(report.findings, start=1):
+        figures = _figures(finding, drawn + 1)
+        drawn += len(figures)
+        tables = {
+            name: Markup(as_html(module.build(finding.frames, finding.context)))
+            for name, module in TABLES.items()
+        }
+        sections.append(
+            {
+                "anchor": f"finding-{number}",
+                "name": finding.context.finding,
+                "statement": finding.context.statement,
+                "reproduction": finding.reproduction,
+                "summary": summary(finding),
+                "by_axis": axis_sentences(finding.frames["survival"]),
+                "sizes": sizes(finding),
+                "figures": figures,
+                "tables": tables,
+                "redundancies": finding.redundancies,
+            }
+        )
+    return sections
+
+
+def page(report: ReportContent) -> str:
+    """Write the whole report as one HTML document.
+
+    Parameters
+    ----------
+    report : ReportContent
+        What to show; every string in it may come from a user's files and is escaped.
+
+    Returns
+    -------
+    str
+        A document that needs no other file and no network.
+    """
+    folder = files(__package__)
+    environment = jinja2.Environment(
+        autoescape=True,
+        undefined=jinja2.StrictUndefined,
+        trim_blocks=True,
+        lstrip_blocks=True,
+        loader=jinja2.FunctionLoader(lambda name: (folder / name).read_text(encoding="utf-8")),
+    )
+    style = Markup((folder / "page.css").read_text(encoding="utf-8"))
+    script = Markup((folder / "page.js").read_text(encoding="utf-8"))
+    return environment.get_template("template.html.j2").render(
+        report=report,
+        level=level_text(report.significance),
+        sections=_sections(report),
+        style=style,
+        script=script,
+        bundle=_bundle(),
+    )
