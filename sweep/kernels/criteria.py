@@ -60,7 +60,8 @@ def log_determinants(lower: Floats, fixed: int, equations: int, maximum: int) ->
 
 
 def _log_determinant(products: Floats) -> Floats:
-    sign, value = np.linalg.slogdet(products)
+    with np.errstate(invalid="ignore"):  # windows without a factor are NaN throughout
+        sign, value = np.linalg.slogdet(products)
     return np.where(sign > 0, value, np.nan)
 
 

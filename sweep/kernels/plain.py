@@ -155,6 +155,9 @@ def plain_orders(
     terms: Floats,
     bounds: tuple[int, int],
     maximum: int,
+    *,
+    effect: int | None = None,
+    start: int = 0,
 ) -> tuple[Floats, int]:
     """Return ln|Σ_p| (T divisor, common sample) of p = 0…maximum and the rows T.
 
@@ -169,14 +172,18 @@ def plain_orders(
         Rows between which all series exist.
     maximum : int
         Largest order.
+    effect : int or None
+        The one equation that counts; None for all of them.
+    start : int
+        Smallest number of rows left out at the start.
     """
-    start = max([maximum, *(lags for _, lags in exogenous)])
+    start = max([start, maximum, *(lags for _, lags in exogenous)])
     extra = [(column, 0, lags) for column, lags in exogenous]
     lags = [(values[:, j], 0, maximum) for j in range(values.shape[1])]
     rows, _ = plain_design([*extra, *lags], terms, bounds[0], bounds[1], start)
     fixed = terms.shape[1] + sum(lags + 1 for _, lags in exogenous)
     lagged = rows[:, fixed:].reshape(rows.shape[0], values.shape[1], maximum + 1)
-    current = lagged[:, :, 0]
+    current = lagged[:, :, 0] if effect is None else lagged[:, [effect], 0]
     result = np.empty(maximum + 1)
     for order in range(maximum + 1):
         design = np.column_stack(
@@ -190,25 +197,45 @@ def plain_orders(
 
 
 def plain_order(
-    log_determinant: Floats, rows: int, fixed: int, series: int, criterion: str, level: float
+    log_determinant: Floats,
+    rows: int,
+    fixed: int,
+    width: int,
+    equations: int,
+    criterion: str,
+    level: float,
 ) -> int:
-    """Choose an order among 1…m of a system of ``series`` equations, one by one."""
+    """Choose an order among 1…m, one by one.
+
+    Parameters
+    ----------
+    log_determinant : ndarray, shape (m + 1,)
+    rows : int
+        Rows T of the common sample.
+    fixed, width : int
+        Regressors of an equation beside the lags, and those that each lag adds.
+    equations : int
+        Equations that the determinant is of.
+    criterion : str
+    level : float
+        Of the sequential test.
+    """
     maximum = len(log_determinant) - 1
     if criterion == "sequential LR":
         for order in range(maximum, 1, -1):
             statistic = rows * (log_determinant[order - 1] - log_determinant[order])
-            if special.chdtrc(series**2, statistic) <= level:
+            if special.chdtrc(width * equations, statistic) <= level:
                 return order
         return 1
     best, chosen = np.inf, 0
     for order in range(1, maximum + 1):
-        per_equation = series * order + fixed
+        each = width * order + fixed
+        coefficients = equations * each
         value = {
-            "AIC": log_determinant[order] + 2 * series * per_equation / rows,
-            "BIC": log_determinant[order] + np.log(rows) * series * per_equation / rows,
-            "HQ": log_determinant[order] + 2 * np.log(np.log(rows)) * series * per_equation / rows,
-            "FPE": log_determinant[order]
-            + series * np.log((rows + per_equation) / (rows - per_equation)),
+            "AIC": log_determinant[order] + 2 * coefficients / rows,
+            "BIC": log_determinant[order] + np.log(rows) * coefficients / rows,
+            "HQ": log_determinant[order] + 2 * np.log(np.log(rows)) * coefficients / rows,
+            "FPE": log_determinant[order] + equations * np.log((rows + each) / (rows - each)),
         }[criterion]
         if value < best:
             best, chosen = value, order

@@ -132,8 +132,9 @@ def _words(difference: Difference) -> str:
     reported, quantity = given_number(difference.reported), difference.quantity
     if missing(difference.computed):
         return f"{quantity} {reported} reported, none computed"
-    digits = 7 if quantity == "observations" else 6
-    computed = number(difference.computed, digits)
+    computed = number(difference.computed, 6)
+    if quantity == "observations":
+        computed = f"{difference.computed:.0f}"
     if quantity == "p-value" and difference.computed < 1e-4:
         computed = f"{difference.computed:.2e}".replace("-", "−")
     if difference.agrees:
@@ -142,5 +143,5 @@ def _words(difference: Difference) -> str:
     sign = "+" if gap > 0 else "−"
     return (
         f"{quantity} {reported} reported, {computed} computed "
-        f"(off by {sign}{number(abs(gap), 3)}, allowed {number(difference.allowed, 3)})"
+        f"(off by {sign}{number(abs(gap), 3)}, allowed {given_number(difference.allowed)})"
     )

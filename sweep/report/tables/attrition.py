@@ -50,5 +50,5 @@ def build(frames: Mapping[str, pd.DataFrame], context: Context) -> Table:
         columns,
         tuple(rows),
         (notes,),
-        group=1,
+        grouped=True,
     )

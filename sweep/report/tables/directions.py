@@ -6,6 +6,7 @@ from collections.abc import Mapping
 from typing import TYPE_CHECKING, Any
 
 from sweep.verdicts.directions import VERDICTS
+from sweep.verdicts.survival import OVERALL
 
 from .model import Column, Table
 
@@ -24,7 +25,10 @@ def build(frames: Mapping[str, pd.DataFrame], context: Context) -> Table:
     """Return rows by verdict, one line a choice, in a fixed order of verdicts."""
     counts: dict[tuple[str, str], dict[str, int]] = {}
     for record in frames["directions"].to_dict("records"):
-        own = counts.setdefault((str(record["axis"]), str(record["choice"])), {})
+        place = (str(record["axis"]), str(record["choice"]))
+        if record["axis"] == OVERALL:
+            place = ("overall", "all choices")
+        own = counts.setdefault(place, {})
         own[str(record["verdict"])] = int(record["rows"])
     rows: list[tuple[Any, ...]] = []
     for (axis, choice), own in counts.items():
@@ -50,5 +54,5 @@ def build(frames: Mapping[str, pd.DataFrame], context: Context) -> Table:
         columns,
         tuple(rows),
         (notes,),
-        group=1,
+        grouped=True,
     )

@@ -9,7 +9,7 @@ from sweep.verdicts.words import MISSING, missing, number, p_text, percent, peri
 
 __all__ = ["Column", "Table", "cell_text"]
 
-Kind = Literal["text", "count", "share", "p", "number", "date"]
+Kind = Literal["text", "count", "share", "p", "number", "date", "mark"]
 
 
 @dataclass(frozen=True, slots=True)
@@ -22,7 +22,7 @@ class Column:
         Words above it.
     kind : str
         How its values are written: text, count, share (0–1, written in per cent), p,
-        number (three significant digits) or date.
+        number (three significant digits), date, or mark (a diamond where true).
     name : str
         Its name in data files, lower case with underscores.
     """
@@ -39,7 +39,7 @@ class Column:
     @property
     def right(self) -> bool:
         """Whether values are set flush right."""
-        return self.kind not in ("text", "date")
+        return self.kind not in ("text", "date", "mark")
 
 
 @dataclass(frozen=True, slots=True)
@@ -58,8 +58,8 @@ class Table:
         Plain values, one for each column; None where there is none.
     notes : tuple of str
         Sentences below the table: what is counted, what was left out.
-    group : int
-        Columns at the left whose repeated values begin a new group; 0 for none.
+    grouped : bool
+        Whether rows with the same value in the first column stand under one heading.
     """
 
     name: str
@@ -67,7 +67,7 @@ class Table:
     columns: tuple[Column, ...]
     rows: tuple[tuple[Any, ...], ...]
     notes: tuple[str, ...] = ()
-    group: int = 0
+    grouped: bool = False
 
     def __post_init__(self) -> None:
         for row in self.rows:
@@ -80,6 +80,8 @@ class Table:
 
 def cell_text(value: Any, kind: Kind) -> str:
     """Write one value the way people read it."""
+    if kind == "mark":
+        return "◆" if not missing(value) and value else ""
     if missing(value) or value == "":
         return MISSING
     if kind == "count":

@@ -58,5 +58,5 @@ def build(frames: Mapping[str, pd.DataFrame], context: Context) -> Table:
         _COLUMNS,
         tuple(rows),
         (notes,),
-        group=1,
+        grouped=True,
     )

@@ -5,6 +5,8 @@ from __future__ import annotations
 from collections.abc import Mapping
 from typing import TYPE_CHECKING
 
+from sweep.verdicts.survival import OVERALL
+
 from .model import Column, Table
 
 if TYPE_CHECKING:
@@ -20,7 +22,7 @@ NEEDS = ("survival",)
 _COLUMNS = (
     ("axis", Column("Axis")),
     ("choice", Column("Choice")),
-    ("is_baseline", Column("Baseline", name="is_baseline")),
+    ("is_baseline", Column("Baseline", "mark", "is_baseline")),
     ("planned", Column("Planned", "count")),
     ("not_applicable", Column("Not applicable", "count")),
     ("infeasible", Column("Infeasible", "count")),
@@ -29,7 +31,7 @@ _COLUMNS = (
     ("admissible", Column("Admissible", "count")),
     ("survived", Column("Survived", "count")),
     ("other_sign", Column("Other sign", "count")),
-    ("distinct", Column("Distinct computations", "count", "distinct")),
+    ("distinct", Column("Distinct", "count")),
     ("raw_share", Column("Share of rows", "share", "raw_share")),
     ("headline_share", Column("Weighted share", "share", "headline_share")),
     ("share_at_1", Column("at 1%", "share", "share_at_1")),
@@ -44,12 +46,12 @@ def build(frames: Mapping[str, pd.DataFrame], context: Context) -> Table:
     frame = frames["survival"]
     rows = []
     for record in frame.to_dict("records"):
-        values = [record[name] for name, _ in _COLUMNS]
-        values[2] = bool(record["is_baseline"]) or None
-        rows.append(tuple(values))
+        if record["axis"] == OVERALL:
+            record |= {"axis": "overall", "choice": "all choices"}
+        rows.append(tuple(record[name] for name, _ in _COLUMNS))
     notes = (
         f"{context.lead} Planned = not applicable + infeasible + failed + screened out + "
-        "admissible. Weighted share: each row weighs 1 / (positions of its window entry) / "
+        "admissible. Distinct: distinct computations among the admissible rows. Weighted share: each row weighs 1 / (positions of its window entry) / "
         "(size of its test group). Other sign: significant, but not with the claimed sign. The "
         "columns at 1, 5 and 10% are the weighted share were that the level."
     )
@@ -59,5 +61,5 @@ def build(frames: Mapping[str, pd.DataFrame], context: Context) -> Table:
         tuple(column for _, column in _COLUMNS),
         tuple(rows),
         (notes,),
-        group=1,
+        grouped=True,
     )

@@ -4,13 +4,14 @@ from __future__ import annotations
 
 import csv
 import io
+import itertools
 from collections.abc import Callable
 from html import escape
 from typing import Any
 
 from sweep.verdicts.words import missing, period_text
 
-from .model import Table, cell_text
+from .model import Column, Table, cell_text
 
 __all__ = ["WRITERS", "as_csv", "as_html", "as_markdown"]
 
@@ -20,31 +21,43 @@ _FORMULA = ("=", "+", "-", "@", "\t", "\r")
 
 def as_html(table: Table) -> str:
     """Write a table as an HTML ``table`` with caption, scopes and notes; all text escaped."""
-    numeric = ' class="n"'
+    columns = table.columns[1:] if table.grouped else table.columns
     parts = [f"<table><caption>{escape(table.title)}</caption>", "<thead><tr>"]
-    parts += [
-        f'<th scope="col"{numeric if column.right else ""}>{escape(column.heading)}</th>'
-        for column in table.columns
-    ]
-    parts.append("</tr></thead><tbody>")
-    before: tuple[Any, ...] | None = None
-    for row in table.rows:
-        group = row[: table.group]
-        first = bool(table.group) and group != before
-        before = group
-        parts.append('<tr class="first">' if first else "<tr>")
-        for number, (value, column) in enumerate(zip(row, table.columns, strict=True)):
-            text = escape(cell_text(value, column.kind))
-            attributes = numeric if column.right else ""
-            if number == table.group:
-                parts.append(f'<th scope="row"{attributes}>{text}</th>')
-            else:
-                parts.append(f"<td{attributes}>{text}</td>")
-        parts.append("</tr>")
-    parts.append("</tbody></table>")
+    parts += [f'<th scope="col"{_side(one)}>{escape(one.heading)}</th>' for one in columns]
+    parts.append("</tr></thead>")
+    if table.grouped:
+        for name, rows in itertools.groupby(table.rows, key=lambda row: row[0]):
+            heading = escape(cell_text(name, table.columns[0].kind))
+            parts.append(
+                f'<tbody><tr class="group"><th scope="rowgroup" colspan="{len(columns)}">'
+                f"{heading}</th></tr>"
+            )
+            parts += [_html_row(row[1:], columns) for row in rows]
+            parts.append("</tbody>")
+    else:
+        parts += ["<tbody>", *(_html_row(row, columns) for row in table.rows), "</tbody>"]
+    if not table.rows:
+        parts.append(f'<tbody><tr><td colspan="{len(columns)}">none</td></tr></tbody>')
+    parts.append("</table>")
     if table.notes:
         parts.append(f'<p class="note">{escape(" ".join(table.notes))}</p>')
     return "".join(parts)
+
+
+def _side(column: Column) -> str:
+    return ' class="n"' if column.right else ""
+
+
+def _html_row(row: tuple[Any, ...], columns: tuple[Column, ...]) -> str:
+    """Write one row; its first cell heads it."""
+    cells = []
+    for number, (value, column) in enumerate(zip(row, columns, strict=True)):
+        text = escape(cell_text(value, column.kind))
+        if number:
+            cells.append(f"<td{_side(column)}>{text}</td>")
+        else:
+            cells.append(f'<th scope="row"{_side(column)}>{text}</th>')
+    return f"<tr>{''.join(cells)}</tr>"
 
 
 def as_markdown(table: Table) -> str:
@@ -93,6 +106,8 @@ def _raw(value: Any, kind: str) -> str:
         return ""
     if kind == "date":
         return period_text(value)
+    if kind == "mark":
+        return "true" if value else "false"
     if kind == "count":
         return str(int(value))
     if kind in ("share", "p", "number"):

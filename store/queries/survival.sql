@@ -1,0 +1,195 @@
+-- For each sweep, finding, axis and choice: what was counted and what survived.
+-- Only planned rows count (request 0).  The row of axis 'all' and choice 'all' is the overall one.
+--
+-- Rows are grouped once, on codes and on how they count; every axis then sums the groups.
+-- headline_share = sum(weight * survived) / sum(weight * admissible); the weight is the same for
+-- all rows of a group, because only the window entry and the test choose it.
+-- Distinct computations do not add up over groups: each computation is given the set of codes it
+-- serves, as bits, and computations with equal sets are counted together.  Codes from 63 on,
+-- which have no bit, are counted one by one.
+CREATE VIEW survival AS
+WITH planned_rows AS (
+    SELECT
+        sweep, finding,
+        lags, deterministics, "window", transformation, test, conditioning, measures,
+        weight, computation, p_value, admissible,
+        counted_status
+            + CASE WHEN screened_out THEN 4 ELSE 0 END
+            + CASE WHEN admissible THEN
+                8 + CASE WHEN survives THEN 16 ELSE 0 END
+                  + CASE WHEN other_sign THEN 32 ELSE 0 END
+                  + CASE WHEN sign_holds THEN
+                      CASE WHEN holds_from <= 0.01 AND 0.01 < holds_below THEN 64 ELSE 0 END
+                      + CASE WHEN holds_from <= 0.05 AND 0.05 < holds_below THEN 128 ELSE 0 END
+                      + CASE WHEN holds_from <= 0.10 AND 0.10 < holds_below THEN 256 ELSE 0 END
+                    ELSE 0 END
+              ELSE 0 END AS kind
+    FROM judged
+    WHERE request = 0
+),
+grouped AS (
+    SELECT
+        sweep, finding,
+        lags, deterministics, "window", transformation, test, conditioning, measures,
+        kind, any_value(weight) AS weight, count(*) AS planned
+    FROM planned_rows
+    GROUP BY sweep, finding,
+        lags, deterministics, "window", transformation, test, conditioning, measures, kind
+),
+sums AS (
+    SELECT
+        sweep, finding,
+        CASE WHEN grouping(lags) = 0 THEN 'lags'
+             WHEN grouping(deterministics) = 0 THEN 'deterministics'
+             WHEN grouping("window") = 0 THEN 'window'
+             WHEN grouping(transformation) = 0 THEN 'transformation'
+             WHEN grouping(test) = 0 THEN 'test'
+             WHEN grouping(conditioning) = 0 THEN 'conditioning'
+             WHEN grouping(measures) = 0 THEN 'measures'
+             ELSE 'all' END AS axis,
+        coalesce(lags, deterministics, "window", transformation, test, conditioning, measures, 0)
+            AS code,
+        sum(planned) AS planned,
+        sum(planned) FILTER (kind & 3 = 1) AS not_applicable,
+        sum(planned) FILTER (kind & 3 = 2) AS infeasible,
+        sum(planned) FILTER (kind & 3 = 3) AS failed,
+        sum(planned) FILTER (kind & 4 <> 0) AS screened_out,
+        sum(planned) FILTER (kind & 8 <> 0) AS admissible,
+        sum(planned) FILTER (kind & 16 <> 0) AS survived,
+        sum(planned) FILTER (kind & 32 <> 0) AS other_sign,
+        sum(weight * planned) FILTER (kind & 8 <> 0) AS weighted,
+        sum(weight * planned) FILTER (kind & 16 <> 0) AS weighted_survived,
+        sum(weight * planned) FILTER (kind & 64 <> 0) AS weighted_1,
+        sum(weight * planned) FILTER (kind & 128 <> 0) AS weighted_5,
+        sum(weight * planned) FILTER (kind & 256 <> 0) AS weighted_10
+    FROM grouped
+    GROUP BY GROUPING SETS (
+        (sweep, finding),
+        (sweep, finding, lags),
+        (sweep, finding, deterministics),
+        (sweep, finding, "window"),
+        (sweep, finding, transformation),
+        (sweep, finding, test),
+        (sweep, finding, conditioning),
+        (sweep, finding, measures)
+    )
+),
+medians AS (
+    SELECT
+        sweep, finding,
+        CASE WHEN grouping(lags) = 0 THEN 'lags'
+             WHEN grouping(deterministics) = 0 THEN 'deterministics'
+             WHEN grouping("window") = 0 THEN 'window'
+             WHEN grouping(transformation) = 0 THEN 'transformation'
+             WHEN grouping(test) = 0 THEN 'test'
+             WHEN grouping(conditioning) = 0 THEN 'conditioning'
+             WHEN grouping(measures) = 0 THEN 'measures'
+             ELSE 'all' END AS axis,
+        coalesce(lags, deterministics, "window", transformation, test, conditioning, measures, 0)
+            AS code,
+        median(p_value) AS median_p_value
+    FROM planned_rows
+    WHERE admissible
+    GROUP BY GROUPING SETS (
+        (sweep, finding),
+        (sweep, finding, lags),
+        (sweep, finding, deterministics),
+        (sweep, finding, "window"),
+        (sweep, finding, transformation),
+        (sweep, finding, test),
+        (sweep, finding, conditioning),
+        (sweep, finding, measures)
+    )
+),
+computations AS (
+    SELECT
+        sweep, finding, computation,
+        bit_or(CASE WHEN lags < 63 THEN 1::BIGINT << lags ELSE 0 END) AS lags,
+        bit_or(CASE WHEN deterministics < 63 THEN 1::BIGINT << deterministics ELSE 0 END)
+            AS deterministics,
+        bit_or(CASE WHEN "window" < 63 THEN 1::BIGINT << "window" ELSE 0 END) AS "window",
+        bit_or(CASE WHEN transformation < 63 THEN 1::BIGINT << transformation ELSE 0 END)
+            AS transformation,
+        bit_or(CASE WHEN test < 63 THEN 1::BIGINT << test ELSE 0 END) AS test,
+        bit_or(CASE WHEN conditioning < 63 THEN 1::BIGINT << conditioning ELSE 0 END)
+            AS conditioning,
+        bit_or(CASE WHEN measures < 63 THEN 1::BIGINT << measures ELSE 0 END) AS measures
+    FROM planned_rows
+    WHERE admissible
+    GROUP BY sweep, finding, computation
+),
+patterns AS (
+    SELECT
+        sweep, finding,
+        lags, deterministics, "window", transformation, test, conditioning, measures,
+        count(*) AS computations
+    FROM computations
+    GROUP BY sweep, finding,
+        lags, deterministics, "window", transformation, test, conditioning, measures
+),
+distincts AS (
+    SELECT sweep, finding, 'all' AS axis, 0 AS code, sum(computations) AS "distinct"
+    FROM patterns
+    GROUP BY sweep, finding
+    UNION ALL
+    SELECT c.sweep, c.finding, c.axis, c.code, sum(p.computations)
+    FROM sweep_choice AS c
+    JOIN patterns AS p
+        ON p.sweep = c.sweep AND p.finding = c.finding
+        AND (CASE c.axis
+                WHEN 'lags' THEN p.lags
+                WHEN 'deterministics' THEN p.deterministics
+                WHEN 'window' THEN p."window"
+                WHEN 'transformation' THEN p.transformation
+                WHEN 'test' THEN p.test
+                WHEN 'conditioning' THEN p.conditioning
+                ELSE p.measures END & (1::BIGINT << c.code)) <> 0
+    WHERE c.code < 63
+    GROUP BY c.sweep, c.finding, c.axis, c.code
+    UNION ALL
+    SELECT c.sweep, c.finding, c.axis, c.code, count(DISTINCT r.computation)
+    FROM (SELECT sweep, finding, axis, code FROM sweep_choice WHERE code >= 63) AS c
+    JOIN planned_rows AS r
+        ON r.sweep = c.sweep AND r.finding = c.finding
+        AND CASE c.axis
+                WHEN 'lags' THEN r.lags
+                WHEN 'deterministics' THEN r.deterministics
+                WHEN 'window' THEN r."window"
+                WHEN 'transformation' THEN r.transformation
+                WHEN 'test' THEN r.test
+                WHEN 'conditioning' THEN r.conditioning
+                ELSE r.measures END = c.code
+    WHERE r.admissible
+    GROUP BY c.sweep, c.finding, c.axis, c.code
+)
+SELECT
+    s.sweep,
+    s.finding,
+    s.axis,
+    CASE WHEN s.axis = 'all' THEN 'all' ELSE c.label END AS choice,
+    s.code,
+    coalesce(c.position, 0) AS choice_position,
+    coalesce(c.is_baseline, FALSE) AS is_baseline,
+    s.planned::BIGINT AS planned,
+    coalesce(s.not_applicable, 0)::BIGINT AS not_applicable,
+    coalesce(s.infeasible, 0)::BIGINT AS infeasible,
+    coalesce(s.failed, 0)::BIGINT AS failed,
+    coalesce(s.screened_out, 0)::BIGINT AS screened_out,
+    coalesce(s.admissible, 0)::BIGINT AS admissible,
+    coalesce(s.survived, 0)::BIGINT AS survived,
+    coalesce(s.other_sign, 0)::BIGINT AS other_sign,
+    coalesce(d."distinct", 0)::BIGINT AS "distinct",
+    CASE WHEN s.admissible > 0 THEN coalesce(s.survived, 0) / s.admissible END AS raw_share,
+    CASE WHEN s.weighted > 0 THEN coalesce(s.weighted_survived, 0) / s.weighted END
+        AS headline_share,
+    CASE WHEN s.weighted > 0 THEN coalesce(s.weighted_1, 0) / s.weighted END AS share_at_1,
+    CASE WHEN s.weighted > 0 THEN coalesce(s.weighted_5, 0) / s.weighted END AS share_at_5,
+    CASE WHEN s.weighted > 0 THEN coalesce(s.weighted_10, 0) / s.weighted END AS share_at_10,
+    m.median_p_value
+FROM sums AS s
+LEFT JOIN sweep_choice AS c
+    ON c.sweep = s.sweep AND c.finding = s.finding AND c.axis = s.axis AND c.code = s.code
+LEFT JOIN medians AS m
+    ON m.sweep = s.sweep AND m.finding = s.finding AND m.axis = s.axis AND m.code = s.code
+LEFT JOIN distincts AS d
+    ON d.sweep = s.sweep AND d.finding = s.finding AND d.axis = s.axis AND d.code = s.code;

@@ -1,0 +1,39 @@
+"""Reading a store: every function returns a small frame that charts, tables and verdicts take.
+
+The functions live in modules by subject; this one is the place to import them from.
+"""
+
+from __future__ import annotations
+
+from store.read_changes import flip_distances, shortest_flips, single_changes
+from store.read_outcomes import baseline, details, outcomes, specification
+from store.read_shares import (
+    attrition,
+    directions,
+    effects,
+    effects_overall,
+    survival,
+    windows,
+)
+from store.read_sweeps import choices, findings, latest_sweep, sweep_info, sweeps
+
+__all__ = [
+    "attrition",
+    "baseline",
+    "choices",
+    "details",
+    "directions",
+    "effects",
+    "effects_overall",
+    "findings",
+    "flip_distances",
+    "latest_sweep",
+    "outcomes",
+    "shortest_flips",
+    "single_changes",
+    "specification",
+    "survival",
+    "sweep_info",
+    "sweeps",
+    "windows",
+]

@@ -1,0 +1,104 @@
+"""What a store holds: its sweeps, their findings and choices."""
+
+from __future__ import annotations
+
+import json
+from typing import Any
+
+import pandas as pd
+
+from store.database import Database
+from store.errors import NotFound
+from store.schema import query
+
+__all__ = ["choices", "findings", "latest_sweep", "sweep_info", "sweeps"]
+
+
+def sweeps(db: Database) -> pd.DataFrame:
+    """Return one row for each sweep, oldest first.
+
+    Returns
+    -------
+    pandas.DataFrame
+        ``sweep, plan_digest, title, started, finished, significance, rows, findings``;
+        ``finished`` (universal time, like ``started``) is NaT where a run has not ended.
+    """
+    return db.frame(query("sweeps"))
+
+
+def latest_sweep(db: Database) -> int:
+    """Return the number of the sweep begun last.
+
+    Raises
+    ------
+    NotFound
+        The store holds no sweep.
+    """
+    number = db.scalar("SELECT max(sweep) FROM sweep")
+    if number is None:
+        raise NotFound(f"{db.path}: the store holds no sweep yet. Run a plan into it first.")
+    return int(number)
+
+
+def findings(db: Database, sweep: int) -> pd.DataFrame:
+    """Return the findings of a sweep in plan order.
+
+    Returns
+    -------
+    pandas.DataFrame
+        ``sweep`` and every field of :class:`store.records.FindingRecord`.
+    """
+    return db.frame("SELECT * FROM finding WHERE sweep = ? ORDER BY finding", [sweep])
+
+
+def choices(db: Database, sweep: int, finding: int | None = None) -> pd.DataFrame:
+    """Return the choices of a sweep's findings in plan order.
+
+    Returns
+    -------
+    pandas.DataFrame
+        Every field of :class:`store.records.SweepChoiceRecord`, and ``meaning`` (JSON).
+    """
+    return db.frame(
+        "SELECT s.* EXCLUDE (sweep), c.meaning FROM sweep_choice AS s "
+        "JOIN choice AS c ON c.axis = s.axis AND c.code = s.code "
+        "WHERE s.sweep = $sweep AND ($finding IS NULL OR s.finding = $finding) "
+        "ORDER BY s.finding, list_position(['lags', 'deterministics', 'window', "
+        "'transformation', 'test', 'conditioning', 'measures'], s.axis), s.position",
+        {"sweep": sweep, "finding": finding},
+    )
+
+
+def sweep_info(db: Database, sweep: int) -> dict[str, Any]:
+    """Return what is recorded about a sweep.
+
+    Returns
+    -------
+    dict
+        Every column of the table ``sweep`` (``data_note`` and ``versions`` as stored JSON
+        text), ``finished`` (datetime or None), ``wall_seconds`` and ``counts`` of the last
+        run that ended (None and ``{}`` before), and ``rows`` stored.
+
+    Raises
+    ------
+    NotFound
+        There is no such sweep.
+    """
+    frame = db.frame("SELECT * FROM sweep WHERE sweep = ?", [sweep])
+    if frame.empty:
+        raise NotFound(f"{db.path}: there is no sweep {sweep}. `crosswind show` lists the sweeps.")
+    names = list(frame.columns)
+    info = dict(
+        zip(names, db.execute("SELECT * FROM sweep WHERE sweep = ?", [sweep])[0], strict=True)
+    )
+    ended = db.execute(
+        "SELECT happened, text FROM event WHERE sweep = ? AND kind = 'finished' "
+        "ORDER BY happened DESC LIMIT 1",
+        [sweep],
+    )
+    last = json.loads(ended[0][1]) if ended else {}
+    info["finished"] = ended[0][0] if ended else None
+    info["wall_seconds"] = last.get("wall_seconds")
+    info["counts"] = last.get("counts", {})
+    info["rows"] = db.scalar("SELECT count(*) FROM outcome WHERE sweep = ?", [sweep])
+    return info

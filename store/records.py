@@ -1,0 +1,154 @@
+"""Frozen records that callers hand to the writer; one for each kind of dictionary row."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+__all__ = ["ChoiceRecord", "FindingRecord", "SweepChoiceRecord", "SweepRecord"]
+
+
+@dataclass(frozen=True, slots=True)
+class ChoiceRecord:
+    """One choice of an axis, as the store's dictionary knows it.
+
+    Attributes
+    ----------
+    token_high, token_low : int
+        128-bit digest of the meaning as two unsigned 64-bit halves.
+    label : str
+        Words for people.
+    meaning : str
+        Canonical JSON that the token digests.
+    """
+
+    token_high: int
+    token_low: int
+    label: str
+    meaning: str
+
+
+@dataclass(frozen=True, slots=True)
+class FindingRecord:
+    """One finding of a sweep.
+
+    Attributes
+    ----------
+    finding : int
+        Number in the sweep, plan order.
+    name, cause, effect, given, exogenous : str
+        Words of the plan; several series are joined by ``", "``.
+    claim : str
+        ``leads``, ``leads one way``, ``leads both ways`` or ``does not lead``.
+    sign, reverse_sign : int
+        1, -1, or 0 where no sign is claimed.
+    data_high, data_low : int
+        128-bit digest of the values of its series, as unsigned halves.
+    required_mask : int
+        Bits of the screens that an admissible row must pass.
+    baseline_high, baseline_low : int
+        Specification of the baseline, as unsigned halves.
+    reported_statistic, reported_p_value, reported_observations, reported_tolerance : float or None
+        Numbers printed in the paper, where the plan gives them.
+    """
+
+    finding: int
+    name: str
+    cause: str
+    effect: str
+    given: str
+    exogenous: str
+    claim: str
+    sign: int
+    reverse_sign: int
+    data_high: int
+    data_low: int
+    required_mask: int
+    baseline_high: int
+    baseline_low: int
+    reported_statistic: float | None = None
+    reported_p_value: float | None = None
+    reported_observations: float | None = None
+    reported_tolerance: float | None = None
+
+
+@dataclass(frozen=True, slots=True)
+class SweepRecord:
+    """One run of a plan.
+
+    Attributes
+    ----------
+    plan_digest : str
+        Digest of the plan in canonical form.
+    plan_toml : str
+        The plan file as it was read.
+    title : str
+        Title of the plan.
+    seed : int
+        Seed of everything random; fits a signed 64-bit integer.
+    significance : float
+        Stated level in (0, 1).
+    numerics : str
+        Versions of the numerical rules, including which screens were computed: rows are
+        shared between sweeps only where it is equal.
+    design : str
+        ``full``, ``one change``, ``two changes`` or a sample and its size.
+    data_note, versions : str
+        JSON.
+    """
+
+    plan_digest: str
+    plan_toml: str
+    title: str
+    seed: int
+    significance: float
+    numerics: str
+    design: str
+    data_note: str
+    versions: str
+
+
+@dataclass(frozen=True, slots=True)
+class SweepChoiceRecord:
+    """One choice as a finding of a sweep uses it.
+
+    Attributes
+    ----------
+    finding : int
+        Number of the finding.
+    axis : str
+        Axis name.
+    code : int
+        Code from :meth:`store.write.SweepWriter.register_choices`.
+    label, because : str
+        Words of the plan.
+    is_baseline : bool
+        True for the choice that the baseline makes; one on each axis.
+    position : int
+        Place on the axis in plan order.
+    weight : float
+        Part of the headline weight, in (0, 1].
+    orientation : int
+        1, or -1 where an inverted measure turns the sign of the effect.
+    entry_kind : str
+        ``rolling``, ``expanding``, ``shrinking``, or ``""`` for everything else.
+    positions : int
+        Planned positions of a moving window; 1 otherwise.
+    scale_group : str
+        Choices whose coefficients are on one scale share it.
+    length : int
+        Periods in a moving window (the shortest one where it grows); 0 otherwise.
+    """
+
+    finding: int
+    axis: str
+    code: int
+    label: str
+    because: str
+    is_baseline: bool
+    position: int
+    weight: float
+    orientation: int
+    entry_kind: str
+    positions: int
+    scale_group: str
+    length: int = 0

@@ -1,0 +1,198 @@
+"""One specification by the slow path: its rows, least squares, the textbook formulas.
+
+Shares the transformations and window rules with the fast path, none of its sums, factors,
+criteria or statistics.
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+import numpy as np
+from numpy.typing import NDArray
+
+from sweep.engine.group import make_tasks
+from sweep.engine.orders import FREEDOM_FOR_CRITERION
+from sweep.engine.panel import window_values
+from sweep.engine.prepare import Prepared
+from sweep.engine.task import System, Task
+from sweep.kernels.plain import (
+    PlainFit,
+    plain_design,
+    plain_fit,
+    plain_order,
+    plain_orders,
+    plain_robust,
+)
+from sweep.panel.deterministics import TermContext, term_columns
+from sweep.plan.choices import LagChoice, ProcedureChoice
+
+__all__ = ["SlowDirection", "SlowResult", "recheck"]
+
+Floats = NDArray[np.float64]
+
+
+@dataclass(frozen=True, slots=True)
+class SlowDirection:
+    """One direction of a specification.
+
+    Attributes
+    ----------
+    fit : PlainFit
+    orders : (int, int, int)
+        Lags of the effect, of the cause, of the given series.
+    statistic, p_value : float
+    df_num : int
+    df_den : int or None
+    coefficient_sum, coefficient_sum_error : float
+        Raw units, as transformed; error by the specification's covariance.
+    lag_errors : ndarray, shape (q,)
+    partial_r2 : float
+        (s0 − s1)/s0, unsigned.
+    criterion_table : ndarray or None
+        ln|Σ_p| of orders 0…m where a criterion chose.
+    """
+
+    fit: PlainFit
+    orders: tuple[int, int, int]
+    statistic: float
+    p_value: float
+    df_num: int
+    df_den: int | None
+    coefficient_sum: float
+    coefficient_sum_error: float
+    lag_errors: Floats
+    partial_r2: float
+    criterion_table: Floats | None
+
+
+@dataclass(frozen=True, slots=True)
+class SlowResult:
+    """Both directions, and the rows they were run on.
+
+    Attributes
+    ----------
+    forward, reverse : SlowDirection
+    rows : ndarray of int, shape (t,)
+        Calendar rows of the regression.
+    """
+
+    forward: SlowDirection
+    reverse: SlowDirection
+    rows: NDArray[np.int64]
+
+
+def recheck(prepared: Prepared, row: int) -> SlowResult:
+    """Recompute one row of a plan the slow way.
+
+    Parameters
+    ----------
+    prepared : Prepared
+    row : int
+        Row of ``prepared.rows``.
+
+    Raises
+    ------
+    ValueError
+        If the regression cannot be run on these rows.
+    """
+    nothing = np.zeros(prepared.rows.count, bool)
+    (task,) = make_tasks(prepared, np.array([row], dtype=np.int64), nothing)
+    values, exists = window_values(task, 0)
+    terms = _terms(task)
+    system = task.systems[0]
+    used = sorted({*system.modelled, *(column for column, _ in system.exogenous)})
+    whole = np.flatnonzero(exists[:, used].all(axis=1))
+    if not whole.size:
+        raise ValueError("no date has a value of every series in this window")
+    bounds = int(whole[0]), int(whole[-1])
+    forward, rows = _direction(task, system, values, terms, bounds)
+    reverse, _ = _direction(task, system.turned(), values, terms, bounds)
+    return SlowResult(forward, reverse, rows + int(task.first[0]))
+
+
+def _terms(task: Task) -> Floats:
+    rows = np.arange(task.first[0], task.last[0] + 1)
+    context = TermContext(
+        rows, task.season[rows], task.seasons, float(rows.mean()),
+        max((rows.size - 1) / 2, 1.0), float(rows.size),
+    )  # fmt: skip
+    return term_columns(task.terms[0], context)
+
+
+def _direction(
+    task: Task, system: System, values: Floats, terms: Floats, bounds: tuple[int, int]
+) -> tuple[SlowDirection, NDArray[np.int64]]:
+    choice, procedure = task.lags[0], task.procedures[0]
+    orders, table = _orders(choice, system, values, terms, bounds)
+    own, cause, given = orders
+    unmodelled = max((lags for _, lags in system.exogenous), default=0)
+    start = max(own, cause, given, unmodelled, choice.common)
+    series = [(values[:, c], 0, lags) for c, lags in system.exogenous]
+    series.append((values[:, system.effect], 1, own))
+    series += [(values[:, c], 1, given) for c in system.given]
+    series.append((values[:, system.cause], 1, cause))
+    series += [(values[:, c], 0, 0) for c in (system.effect, system.cause, *system.given)]
+    rows, which = plain_design(series, terms, *bounds, start)
+    current = 2 + len(system.given)
+    regressors = rows[:, :-current]
+    effect = rows[:, regressors.shape[1]]
+    fit = plain_fit(effect, regressors[:, :-cause], regressors[:, -cause:])
+    statistic, p_value, df_den = _statistic(fit, procedure)
+    covariance = fit.covariance
+    if procedure.covariance != "classical":
+        covariance = plain_robust(fit, procedure.covariance)
+    block = covariance[-cause:, -cause:]
+    s0, s1 = fit.restricted_squares, fit.unrestricted_squares
+    return (
+        SlowDirection(
+            fit, orders, statistic, p_value, cause, df_den, fit.coefficient_sum,
+            float(np.sqrt(block.sum())), np.sqrt(np.diag(block)), (s0 - s1) / s0, table,
+        ),
+        which,
+    )  # fmt: skip
+
+
+def _orders(
+    choice: LagChoice, system: System, values: Floats, terms: Floats, bounds: tuple[int, int]
+) -> tuple[tuple[int, int, int], Floats | None]:
+    if not choice.criterion:
+        return (choice.own, choice.cause, choice.given), None
+    modelled = list(system.modelled)
+    width = len(modelled)
+    exogenous = [(values[:, c], lags) for c, lags in system.exogenous]
+    fixed = terms.shape[1] + sum(lags + 1 for _, lags in system.exogenous)
+    effect = modelled.index(system.effect) if choice.scope == "equation" else None
+    for maximum in range(choice.maximum, 0, -1):
+        table, rows = plain_orders(
+            values[:, modelled], exogenous, terms, bounds, maximum, effect=effect,
+            start=choice.common,
+        )  # fmt: skip
+        if rows - (fixed + width * maximum) >= FREEDOM_FOR_CRITERION:
+            order = plain_order(
+                table, rows, fixed, width, width if effect is None else 1, choice.criterion,
+                choice.level,
+            )  # fmt: skip
+            return (order, order, order), table
+    raise ValueError("no order leaves 20 degrees of freedom in this window")
+
+
+def _statistic(fit: PlainFit, procedure: ProcedureChoice) -> tuple[float, float, int | None]:
+    """Return statistic, p-value and denominator degrees of freedom, from scipy.stats' laws."""
+    from scipy import stats
+
+    s0, s1, q = fit.restricted_squares, fit.unrestricted_squares, fit.restrictions
+    t, freedom = fit.observations, fit.observations - fit.regressors
+    if procedure.covariance != "classical":
+        block = plain_robust(fit, procedure.covariance)[-q:, -q:]
+        b = fit.lag_coefficients
+        wald = float(b @ np.linalg.solve(block, b))
+    else:
+        wald = (t if procedure.divisor == "T" else freedom) * (s0 - s1) / s1
+    if procedure.statistic == "F":
+        value = wald / q
+        return value, float(stats.f.sf(value, q, freedom)), freedom
+    value = {"Wald": wald, "LR": t * float(np.log(s0 / s1)), "LM": t * (s0 - s1) / s0}[
+        procedure.statistic
+    ]
+    return value, float(stats.chi2.sf(value, q)), None

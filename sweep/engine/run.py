@@ -1,0 +1,171 @@
+"""Running a plan into its store: what is missing, in waves, one writer."""
+
+from __future__ import annotations
+
+import os
+import time
+from collections.abc import Callable
+from dataclasses import dataclass
+from pathlib import Path
+
+import numpy as np
+from numpy.typing import NDArray
+
+from store.database import open_writing
+from sweep.engine.group import make_tasks
+from sweep.engine.prepare import Prepared
+from sweep.engine.sink import StoreSink
+from sweep.engine.task import Outcome
+from sweep.engine.waves import Broken, compute_in_waves
+from sweep.errors import Interrupted
+
+__all__ = ["Progress", "RunReport", "run_prepared"]
+
+
+@dataclass(frozen=True, slots=True)
+class Progress:
+    """How far a run is.
+
+    Attributes
+    ----------
+    done, total : int
+        Specifications computed in this run, and to compute.
+    seconds : float
+        Since computing began.
+    """
+
+    done: int
+    total: int
+    seconds: float
+
+    @property
+    def rate(self) -> float:
+        """Specifications a second."""
+        return self.done / self.seconds if self.seconds > 0 else 0.0
+
+    @property
+    def remaining(self) -> float | None:
+        """Seconds left at the present rate; None before there is one."""
+        return (self.total - self.done) / self.rate if self.rate > 0 else None
+
+
+@dataclass(frozen=True, slots=True)
+class RunReport:
+    """What a run did.
+
+    Attributes
+    ----------
+    store : Path
+    sweep : int
+        Number of the sweep in its store.
+    planned, stored, reused, ruled, computed, failed : int
+        Specifications: planned in all; there before; taken over from another sweep; ruled
+        out by the plan; computed now; of these, failed.
+    seconds : float
+    """
+
+    store: Path
+    sweep: int
+    planned: int
+    stored: int
+    reused: int
+    ruled: int
+    computed: int
+    failed: int
+    seconds: float
+
+
+def run_prepared(
+    prepared: Prepared,
+    store: Path,
+    *,
+    jobs: int | None = None,
+    progress: Callable[[Progress], None] | None = None,
+) -> RunReport:
+    """Compute what the store does not have yet.
+
+    Parameters
+    ----------
+    prepared : Prepared
+    store : Path
+        DuckDB file; made if there is none.
+    jobs : int or None
+        Worker processes; None for one a core.
+    progress : callable or None
+        Called after every wave.
+
+    Returns
+    -------
+    RunReport
+
+    Raises
+    ------
+    Interrupted
+        On Ctrl-C; what was written stays.
+    store.errors.StoreError
+        If the store is locked, damaged or of another version.
+    """
+    began = time.monotonic()
+    jobs = jobs or len(os.sched_getaffinity(0)) if hasattr(os, "sched_getaffinity") else jobs or 1
+    with open_writing(store) as database:
+        try:
+            sink = StoreSink(database, prepared)
+            missing, stored, reused = sink.missing()
+            tasks = make_tasks(prepared, missing, _wants_lags(prepared))
+            failed = _compute(sink, tasks, jobs, int(missing.size), progress)
+        except KeyboardInterrupt:
+            raise Interrupted(
+                f"Stopped. What was computed is in {store.name}; run the same command to go on."
+            ) from None
+        seconds = time.monotonic() - began
+        ruled = int((prepared.rows.rule >= 0).sum())
+        report = RunReport(
+            store, sink.sweep, prepared.rows.count, stored, reused, ruled, int(missing.size),
+            failed, seconds,
+        )  # fmt: skip
+        sink.finish(
+            seconds, {"computed": report.computed, "reused": reused, "stored": stored, "ruled": ruled}
+        )
+    return report
+
+
+def _compute(
+    sink: StoreSink,
+    tasks: list,  # type: ignore[type-arg]
+    jobs: int,
+    total: int,
+    progress: Callable[[Progress], None] | None,
+) -> int:
+    """Compute and write the tasks; return how many rows failed."""
+    began = time.monotonic()
+    done = failed = 0
+    for wave in compute_in_waves(tasks, jobs):
+        good = [item for item in wave if isinstance(item, Outcome)]
+        if good:
+            sink.write(good)
+        for item in wave:
+            if isinstance(item, Broken):
+                sink.failed(item.task.row, item.text)
+                failed += item.task.row.size
+                done += item.task.row.size
+        done += sum(item.row.size for item in good)
+        failed += sum(int((item.status == 3).sum()) for item in good)
+        if progress is not None:
+            progress(Progress(done, total, time.monotonic() - began))
+    return failed
+
+
+def _wants_lags(prepared: Prepared) -> NDArray[np.bool_]:
+    """Say for which rows every lag's coefficient is kept."""
+    rows, plan = prepared.rows, prepared.plan
+    option = plan.document.sweep.coefficients
+    if option in ("all", "none"):
+        return np.full(rows.count, option == "all")
+    if option == "fixed windows":
+        moving = np.array([bool(getattr(c, "moving", "")) for c in plan.axes["window"]])
+        return np.asarray(~moving[rows.codes["window"]])
+    wanted = np.zeros(rows.count, bool)
+    for finding in plan.findings:
+        high, low = plan.baseline_id(finding)
+        wanted |= (rows.high == np.uint64(high)) & (rows.low == np.uint64(low))
+    return wanted

@@ -1,0 +1,312 @@
+"""The one writer: puts outcomes into the store under its own codes."""
+
+from __future__ import annotations
+
+import json
+from collections.abc import Sequence
+from importlib.metadata import PackageNotFoundError, version
+from platform import platform, python_version
+from typing import Any
+
+import numpy as np
+from numpy.typing import NDArray
+
+from store.database import Database
+from store.records import ChoiceRecord, FindingRecord, SweepChoiceRecord, SweepRecord
+from store.write import SweepWriter
+from sweep.engine.prepare import Prepared
+from sweep.engine.reasons import REASONS, RULED, Reason, Status
+from sweep.engine.task import ROW_FIELDS, LagCoefficients, Outcome
+from sweep.plan.canonical import canonical_json, token
+from sweep.plan.choices import AXES, Choice, MeasureChoice, ProcedureChoice, WindowChoice
+from sweep.plan.model import Finding
+from sweep.plan.tables import Table
+from sweep.procedures import numerics
+from sweep.screens import SCREENS, mask_of
+
+__all__ = ["StoreSink", "package_versions"]
+
+Ints = NDArray[np.int64]
+NOT_REPORTED = (None, None, None, None)
+
+
+class StoreSink:
+    """Writes one sweep.
+
+    Parameters
+    ----------
+    database : Database
+        Open for writing.
+    prepared : Prepared
+    """
+
+    def __init__(self, database: Database, prepared: Prepared) -> None:
+        self.prepared = prepared
+        self._writer = SweepWriter(database)
+        self._codes = {axis: self._register(axis) for axis in AXES}
+        for screen in SCREENS.values():
+            self._writer.register_screen(screen.BIT, screen.NAME)
+        self._reasons = self._register_reasons()
+        self.sweep = self._begin()
+
+    def missing(self) -> tuple[Ints, int, int]:
+        """Return the rows to compute, and how many were stored before or taken over.
+
+        Rows that the plan's rules exclude are written here, as ``not applicable``.
+        """
+        rows = self.prepared.rows
+        have = self._writer.stored(self.sweep, self._planned(np.arange(rows.count)))
+        ruled = np.flatnonzero(~have & (rows.rule >= 0))
+        self._write_ruled(ruled)
+        open_ = np.flatnonzero(~have & (rows.rule < 0))
+        taken = self._writer.reuse(self.sweep, self._planned(open_)) if open_.size else open_ > 0
+        return open_[~taken], int(have.sum()), int(taken.sum())
+
+    def write(self, outcomes: Sequence[Outcome]) -> None:
+        """Append outcomes in one transaction, in the order of the plan's rows."""
+        row = np.concatenate([outcome.row for outcome in outcomes])
+        order = np.argsort(row, kind="stable")
+        fields: dict[str, NDArray[Any]] = {
+            name: np.concatenate([getattr(outcome, name) for outcome in outcomes])[order]
+            for name in ROW_FIELDS
+        }
+        fields["reason"] = self._reasons[fields["reason"]]
+        details = [outcome.details for outcome in outcomes if outcome.details is not None]
+        self._writer.write(self.sweep, self._batch(row[order], fields), self._details(details))
+
+    def failed(self, rows: Ints, text: str) -> None:
+        """Append rows whose computation broke, and log why."""
+        self._writer.log("failed", text, self.sweep)
+        reason = self._writer.register_reason(
+            Status.FAILED, "the computation broke; the store's log says how"
+        )
+        fields = _empty(rows.size, Status.FAILED)
+        fields["reason"] = np.full(rows.size, reason)
+        self._writer.write(self.sweep, self._batch(rows, fields))
+
+    def finish(self, seconds: float, counts: dict[str, int]) -> None:
+        """Note the end of the run and close the log."""
+        self._writer.finish(self.sweep, seconds, counts)
+
+    def _register(self, axis: str) -> NDArray[np.int16]:
+        records = []
+        for choice in self.prepared.plan.axes[axis]:
+            high, low = token(axis, choice.meaning)
+            records.append(ChoiceRecord(high, low, choice.label, canonical_json(choice.meaning)))
+        return np.array(self._writer.register_choices(axis, records), dtype=np.int16)
+
+    def _register_reasons(self) -> NDArray[np.int16]:
+        codes = np.zeros(max(Reason) + 1, np.int16)
+        for reason, (status, text) in REASONS.items():
+            codes[reason] = self._writer.register_reason(status, text)
+        return codes
+
+    def _begin(self) -> int:
+        plan = self.prepared.plan
+        design = plan.document.sweep.design
+        record = SweepRecord(
+            plan.digest,
+            plan.text,
+            plan.title,
+            plan.document.seed,
+            plan.significance,
+            numerics(),
+            design if isinstance(design, str) else f"sample of {design.sample}",
+            json.dumps(_data_note(self.prepared), ensure_ascii=False),
+            json.dumps(package_versions()),
+        )
+        findings = [self._finding(finding) for finding in plan.findings]
+        choices = [c for finding in plan.findings for c in self._choices(finding)]
+        return self._writer.begin(record, findings, choices, self._positions())
+
+    def _finding(self, finding: Finding) -> FindingRecord:
+        plan = self.prepared.plan
+        data = self.prepared.data_keys[finding.number]
+        baseline = plan.baseline_id(finding)
+        reported: tuple[float | None, ...] = NOT_REPORTED
+        table = plan.document.baseline.reported
+        if table is not None and (table.finding or plan.findings[0].name) == finding.name:
+            reported = (table.statistic, table.p_value, table.observations, table.tolerance)
+        return FindingRecord(
+            finding.number,
+            finding.name,
+            finding.cause,
+            finding.effect,
+            ", ".join(finding.given),
+            ", ".join(f"{item.series} ({item.lags} lags)" for item in finding.exogenous),
+            finding.claim,
+            finding.sign,
+            finding.reverse_sign,
+            *data,
+            mask_of(plan.document.screens.require),
+            *baseline,
+            *reported,
+        )
+
+    def _choices(self, finding: Finding) -> list[SweepChoiceRecord]:
+        plan = self.prepared.plan
+        records = []
+        for axis in AXES:
+            held = plan.finding_axes[finding.number][axis]
+            for place, code in enumerate(held.codes):
+                choice = plan.axes[axis][code]
+                moving = choice.moving if isinstance(choice, WindowChoice) else ""
+                positions = 1
+                if moving:
+                    positions = self.prepared.windows[finding.number][code].count
+                records.append(
+                    SweepChoiceRecord(
+                        finding.number,
+                        axis,
+                        int(self._codes[axis][code]),
+                        choice.label,
+                        choice.because,
+                        code == held.baseline,
+                        place,
+                        self._weight(finding, axis, code, choice),
+                        _orientation(finding, choice),
+                        moving,
+                        positions,
+                        _scale_group(axis, choice),
+                        choice.length if isinstance(choice, WindowChoice) else 0,
+                    )
+                )
+        return records
+
+    def _weight(self, finding: Finding, axis: str, code: int, choice: Choice) -> float:
+        """Return a choice's part of the headline weight (fixed by the plan)."""
+        plan, rows = self.prepared.plan, self.prepared.rows
+        if isinstance(choice, ProcedureChoice):
+            held = plan.finding_axes[finding.number]["test"].codes
+            group = [getattr(plan.axes["test"][c], "covariance", "") for c in held]
+            return 1.0 / group.count(choice.covariance)
+        if isinstance(choice, WindowChoice):
+            if isinstance(plan.document.sweep.design, Table):
+                mine = rows.finding == finding.number
+                return 1.0 / max(int((rows.codes["window"][mine] == code).sum()), 1)
+            return 1.0 / self.prepared.windows[finding.number][code].count
+        return 1.0
+
+    def _positions(self) -> dict[str, NDArray[Any]]:
+        parts: dict[str, list[NDArray[Any]]] = {
+            name: [] for name in ("finding", "window", "position", "window_start", "window_end")
+        }
+        dates = np.array(self.prepared.dataset.calendar.dates, dtype="datetime64[D]")
+        for number, found in enumerate(self.prepared.windows):
+            for code, positions in found.items():
+                count = positions.count
+                parts["finding"].append(np.full(count, number))
+                parts["window"].append(np.full(count, self._codes["window"][code]))
+                parts["position"].append(np.arange(count))
+                parts["window_start"].append(dates[positions.first])
+                parts["window_end"].append(dates[positions.last])
+        return {name: np.concatenate(arrays) for name, arrays in parts.items()}
+
+    def _planned(self, rows: Ints) -> dict[str, NDArray[Any]]:
+        planned = self.prepared.rows
+        return {
+            "finding": planned.finding[rows],
+            "spec_high": planned.high[rows],
+            "spec_low": planned.low[rows],
+            "position": planned.position[rows],
+        }
+
+    def _batch(self, rows: Ints, fields: dict[str, NDArray[Any]]) -> dict[str, NDArray[Any]]:
+        planned = self.prepared.rows
+        codes = {axis: self._codes[axis][planned.codes[axis][rows]] for axis in AXES}
+        blank = {"request": np.zeros(rows.size, np.int16)}
+        return {**self._planned(rows), **codes, **blank, **fields}
+
+    def _write_ruled(self, rows: Ints) -> None:
+        if not rows.size:
+            return
+        plan = self.prepared.plan
+        codes = np.array(
+            [
+                self._writer.register_reason(Status.NOT_APPLICABLE, rule.because, ruled=True)
+                for rule in plan.rules
+            ]
+        )
+        fields = _empty(rows.size, Status.NOT_APPLICABLE)
+        fields["reason"] = codes[self.prepared.rows.rule[rows]]
+        self._writer.write(self.sweep, self._batch(rows, fields))
+
+    def _details(self, parts: list[LagCoefficients]) -> dict[str, NDArray[Any]] | None:
+        if not parts:
+            return None
+        row = np.concatenate([part.row for part in parts])
+        planned = self.prepared.rows
+        reverse = np.concatenate([part.reverse for part in parts])
+        return {
+            "finding": planned.finding[row],
+            "spec_high": planned.high[row],
+            "spec_low": planned.low[row],
+            "kind": np.where(reverse, "reverse lag coefficient", "lag coefficient"),
+            "position": np.concatenate([part.lag for part in parts]),
+            "date": np.full(row.size, np.datetime64("NaT", "D")),
+            "value": np.concatenate([part.value for part in parts]),
+            "standard_error": np.concatenate([part.error for part in parts]),
+            "p_value": np.concatenate([part.p_value for part in parts]),
+            "critical_value": np.full(row.size, np.nan),
+        }
+
+
+def _orientation(finding: Finding, choice: Choice) -> int:
+    """Return -1 where an inverted measure of the cause or the effect turns the sign."""
+    if not isinstance(choice, MeasureChoice):
+        return 1
+    turned = sum(role in choice.inverted for role in (finding.cause, finding.effect))
+    return -1 if turned % 2 else 1
+
+
+def _scale_group(axis: str, choice: Choice) -> str:
+    if axis in ("transformation", "measures"):
+        return choice.label
+    return "lag coefficients" if axis == "test" else ""
+
+
+def _empty(count: int, status: Status) -> dict[str, NDArray[Any]]:
+    """Return the fields of rows without numbers."""
+    numbers = (
+        "statistic", "df_den", "p_value", "coefficient_sum", "coefficient_sum_se",
+        "signed_partial_r2", "standardised_sum", "reverse_statistic", "reverse_p_value",
+        "reverse_coefficient_sum", "order_used", "observations", "df_num",
+    )  # fmt: skip
+    fields: dict[str, NDArray[Any]] = {name: np.full(count, np.nan) for name in numbers}
+    fields["computation"] = np.zeros(count, np.uint64)
+    for name in ("solver", "failed_mask", "reverse_failed_mask"):
+        fields[name] = np.zeros(count, np.int32)
+    for name in ("status", "reverse_status"):
+        fields[name] = np.full(count, int(status), np.int8)
+    return fields
+
+
+def _data_note(prepared: Prepared) -> dict[str, Any]:
+    data, dataset = prepared.plan.document.data, prepared.dataset
+    calendar = dataset.calendar
+    return {
+        "file": data.file,
+        "sha256": dataset.file_digest,
+        "source": data.source,
+        "licence": data.licence,
+        "frequency": data.frequency,
+        "rows": len(calendar),
+        "first": calendar.label(0),
+        "last": calendar.label(len(calendar) - 1),
+        "series": list(dataset.names),
+        "notes": list(prepared.notes),
+    }
+
+
+def package_versions() -> dict[str, str]:
+    """Return the versions that numbers may depend on."""
+    found = {"python": python_version(), "platform": platform()}
+    for name in ("crosswind", "numpy", "scipy", "duckdb", "pandas", "altair"):
+        try:
+            found[name] = version(name)
+        except PackageNotFoundError:
+            found[name] = "not installed"
+    return found
+
+
+assert RULED > max(Reason)

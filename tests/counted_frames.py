@@ -1,0 +1,350 @@
+"""Synthetic sweeps, counted into the frames that the store hands to charts and reports.
+
+A sweep is made one specification at a time and counted with plain pandas, so that the
+frames agree with each other the way real ones do.
+"""
+
+from __future__ import annotations
+
+import itertools
+from dataclasses import dataclass, field
+from statistics import NormalDist
+
+import numpy as np
+import pandas as pd
+
+AXES = ("lags", "deterministics", "window", "transformation", "test", "conditioning", "measures")
+STATUS = {"na": "not applicable", "infeasible": "infeasible", "failed": "failed"}
+
+
+@dataclass
+class Sweep:
+    """Axes (first choice of each is the baseline's) and how p-values come about."""
+
+    lags: list[str] = field(default_factory=lambda: ["4", "1", "2", "3", "6", "8", "AIC", "BIC"])
+    deterministics: list[str] = field(
+        default_factory=lambda: ["constant", "linear trend", "constant and seasonal dummies"]
+    )
+    window: list[str] = field(
+        default_factory=lambda: ["full sample", "before 2009", "without 2020-03 to 2021-06", "rolling 120"]
+    )
+    transformation: list[str] = field(default_factory=lambda: ["log difference", "log", "yearly growth"])
+    test: list[str] = field(default_factory=lambda: ["F", "F, HC3 covariance", "Wald"])
+    conditioning: list[str] = field(default_factory=lambda: ["given", "pairwise"])
+    measures: list[str] = field(default_factory=lambda: ["as named"])
+    moving: dict[str, tuple[str, int, int]] = field(
+        default_factory=lambda: {"rolling 120": ("rolling", 120, 40)}
+    )
+    cause: str = "freight"
+    effect: str = "rents"
+    given: str = "diesel"
+    claim: str = "leads"
+    significance: float = 0.05
+    centre: float = 2.9
+    spread: float = 0.9
+    seed: int = 7
+    weak: tuple[str, ...] = ("F, HC3 covariance", "pairwise")
+    not_applicable: tuple[str, ...] = ()
+    reported: tuple[float | None, float | None, int | None] = (None, None, None)
+
+    @property
+    def axes(self) -> dict[str, list[str]]:
+        return {axis: getattr(self, axis) for axis in AXES}
+
+
+def rows_of(sweep: Sweep) -> pd.DataFrame:
+    """One row a specification, all axes crossed and moving windows laid out by position."""
+    rng = np.random.default_rng(sweep.seed)
+    normal = NormalDist()
+    shift = {c: rng.normal(0, 0.35) for choices in sweep.axes.values() for c in choices}
+    start, end = pd.Timestamp("1995-01-01"), pd.Timestamp("2024-12-01")
+    found = []
+    for number, combination in enumerate(itertools.product(*sweep.axes.values())):
+        choices = dict(zip(AXES, combination, strict=True))
+        kind, length, positions = sweep.moving.get(choices["window"], ("fixed", 0, 1))
+        for position in range(positions):
+            z = sweep.centre + sum(shift[c] for c in combination) + rng.normal(0, sweep.spread * 0.3)
+            z -= sum(0.9 for c in combination if c in sweep.weak)
+            first, last = start, end
+            if kind != "fixed":
+                z += sweep.spread * np.sin(position / max(positions, 1) * 6)
+                last = start + pd.DateOffset(months=length + 5 * position)
+                first = last - pd.DateOffset(months=length)
+            p = float(np.clip(2 * (1 - normal.cdf(max(z, 0.001))), 1e-12, 1))
+            status = "ok"
+            if any(c in sweep.not_applicable for c in combination):
+                status = "not applicable"
+            elif choices["lags"] in ("8", "12") and kind == "rolling" and position < 3:
+                status = "infeasible"
+            elif number % 211 == 17:
+                status = "failed"
+            ok = status == "ok"
+            found.append(
+                choices
+                | {
+                    "specification": f"{number * 1000 + position:032x}",
+                    "entry_kind": kind,
+                    "length": length or None,
+                    "positions": positions,
+                    "position": position,
+                    "window_start": first,
+                    "window_end": last,
+                    "status": status,
+                    "reason": None if ok else f"{status} for an invented reason",
+                    "p_value": p if ok else None,
+                    "reverse_p_value": float(rng.uniform(0, 1)) if ok else None,
+                    "coefficient_sum": float(rng.normal(0.2, 0.1)) if ok else None,
+                    "weight": 1.0 / positions,
+                    "computation": number * 1000 + position,
+                    "order_used": 4,
+                }
+            )
+    rows = pd.DataFrame(found)
+    a = sweep.significance
+    rows["admissible"] = (rows["status"] == "ok") & ~((rows["specification"].str[-1] == "7"))
+    rows["screened_out"] = (rows["status"] == "ok") & ~rows["admissible"]
+    rows["survives"] = (rows["p_value"] <= a) & rows["admissible"]
+    forward, backward = rows["p_value"] <= a, rows["reverse_p_value"] <= a
+    rows["verdict"] = np.select(
+        [rows["status"] != "ok", forward & backward, forward, backward],
+        ["undetermined", "both ways", "one way", "reverse"],
+        "neither rejected",
+    )
+    rows["is_baseline"] = np.logical_and.reduce(
+        [rows[axis] == sweep.axes[axis][0] for axis in AXES]
+    ) & (rows["position"] == 0)
+    return rows
+
+
+def _counts(rows: pd.DataFrame) -> dict[str, object]:
+    good = rows[rows["admissible"]]
+    weight = good["weight"].sum()
+
+    def share(level: float) -> float | None:
+        return float((good["weight"] * (good["p_value"] <= level)).sum() / weight) if weight else None
+
+    return {
+        "planned": len(rows),
+        "not_applicable": int((rows["status"] == "not applicable").sum()),
+        "infeasible": int((rows["status"] == "infeasible").sum()),
+        "failed": int((rows["status"] == "failed").sum()),
+        "screened_out": int(rows["screened_out"].sum()),
+        "admissible": len(good),
+        "survived": int(good["survives"].sum()),
+        "other_sign": 0,
+        "distinct": int(good["computation"].nunique()),
+        "raw_share": float(good["survives"].mean()) if len(good) else None,
+        "headline_share": float((good["weight"] * good["survives"]).sum() / weight) if weight else None,
+        "share_at_1": share(0.01),
+        "share_at_5": share(0.05),
+        "share_at_10": share(0.10),
+        "median_p_value": float(good["p_value"].median()) if len(good) else None,
+    }
+
+
+def survival_frame(sweep: Sweep, rows: pd.DataFrame) -> pd.DataFrame:
+    head = {"sweep": 1, "finding": 1}
+    found = [head | {"axis": "all", "choice": "all", "code": 0, "choice_position": 0, "is_baseline": False} | _counts(rows)]
+    for axis, choices in sweep.axes.items():
+        for place, choice in enumerate(choices):
+            own = {"axis": axis, "choice": choice, "code": place, "choice_position": place, "is_baseline": place == 0}
+            found.append(head | own | _counts(rows[rows[axis] == choice]))
+    return pd.DataFrame(found)
+
+
+def baseline_frame(sweep: Sweep, rows: pd.DataFrame) -> pd.DataFrame:
+    row = rows[rows["is_baseline"]].iloc[0]
+    ok = row["status"] == "ok"
+    return pd.DataFrame(
+        [
+            {
+                "sweep": 1, "finding": 1, "cause": sweep.cause, "effect": sweep.effect, "given": sweep.given,
+                "claim": sweep.claim, "specification": row["specification"], "origin": "planned",
+                "lags_choice": row["lags"], "deterministics": row["deterministics"], "window_name": row["window"],
+                "window_entry": row["entry_kind"], "window_start": row["window_start"], "window_end": row["window_end"],
+                "transformation": row["transformation"], "test": row["test"], "conditioning": row["conditioning"],
+                "measures": row["measures"], "lags": 4, "observations": 355, "statistic": 3.4217 if ok else None,
+                "df_num": 4, "df_den": 342, "p_value": row["p_value"], "coefficient_sum": row["coefficient_sum"],
+                "coefficient_sum_se": 0.08, "signed_partial_r2": 0.038, "standardised_sum": 0.21,
+                "reverse_statistic": 1.02, "reverse_p_value": row["reverse_p_value"], "request": None,
+                "computation": row["computation"], "solver": "cholesky", "reverse_status": "ok",
+                "status": row["status"], "reason": row["reason"], "admissible": bool(row["admissible"]),
+                "failed_screens": "", "survives": bool(row["survives"]) if ok else None, "verdict": row["verdict"],
+                "is_baseline": True,
+            }
+        ]
+    )  # fmt: skip
+
+
+def _z(p: object) -> float | None:
+    return None if p is None or p != p else min(37.0, NormalDist().inv_cdf(1 - min(max(float(p), 1e-15), 0.99999)))
+
+
+def single_changes_frame(sweep: Sweep, rows: pd.DataFrame) -> pd.DataFrame:
+    base = rows[rows["is_baseline"]].iloc[0]
+    found = []
+    for place, (axis, choices) in enumerate(sweep.axes.items()):
+        for position, choice in enumerate(choices[1:], start=1):
+            same = np.logical_and.reduce(
+                [rows[other] == (choice if other == axis else base[other]) for other in AXES]
+            )
+            own = rows[same]
+            good = own[own["admissible"]]
+            ok = own[own["status"] == "ok"]
+            differs = good["survives"] != base["survives"] if base["admissible"] else good["survives"] & False
+            z = [_z(p) for p in ok["p_value"]]
+            z_base = _z(base["p_value"])
+            found.append(
+                {
+                    "axis": axis, "choice": choice, "entry_kind": own["entry_kind"].iloc[0] if axis == "window" else "fixed",
+                    "positions": len(own), "rows_ok": len(ok), "admissible": len(good),
+                    "survived": int(good["survives"].sum()), "flips": int(differs.sum()),
+                    "p_value": ok["p_value"].median() if len(ok) else None,
+                    "p_low": ok["p_value"].min() if len(ok) else None,
+                    "p_high": ok["p_value"].max() if len(ok) else None,
+                    "reverse_p_value": ok["reverse_p_value"].median() if len(ok) else None,
+                    "z_change": float(np.median(z)) - z_base if z and z_base is not None else None,
+                    "coefficient_sum": ok["coefficient_sum"].median() if len(ok) else None,
+                    "status": "ok" if len(ok) else own["status"].iloc[0],
+                    "reason": None if len(ok) else own["reason"].iloc[0],
+                    "specification": own["specification"].iloc[0],
+                    "baseline_p_value": base["p_value"],
+                    "baseline_survives": bool(base["survives"]) if base["admissible"] else None,
+                    "axis_position": place, "choice_position": position,
+                }
+            )  # fmt: skip
+    columns = list(found[0]) if found else [
+        "axis", "choice", "entry_kind", "positions", "rows_ok", "admissible", "survived", "flips", "p_value",
+        "p_low", "p_high", "reverse_p_value", "z_change", "coefficient_sum", "status", "reason", "specification",
+        "baseline_p_value", "baseline_survives", "axis_position", "choice_position",
+    ]  # fmt: skip
+    return pd.DataFrame(found, columns=columns)
+
+
+def shortest_flips_frame(sweep: Sweep, rows: pd.DataFrame, limit: int = 20) -> pd.DataFrame:
+    base = rows[rows["is_baseline"]].iloc[0]
+    good = rows[rows["admissible"] & (rows["survives"] != base["survives"])].copy()
+    good["changes"] = sum((good[axis] != base[axis]).astype(int) for axis in AXES)
+    good["changed"] = [
+        "; ".join(f"{axis}: {base[axis]} → {row[axis]}" for axis in AXES if row[axis] != base[axis])
+        for _, row in good.iterrows()
+    ]
+    columns = ["changes", "specification", "changed", "p_value", "window_start", "window_end"]
+    return good.sort_values(["changes", "p_value"])[columns].head(limit).reset_index(drop=True)
+
+
+def flip_distances_frame(sweep: Sweep, rows: pd.DataFrame) -> pd.DataFrame:
+    base = rows[rows["is_baseline"]].iloc[0]
+    good = rows[rows["admissible"]].copy()
+    good["changes"] = sum((good[axis] != base[axis]).astype(int) for axis in AXES)
+    good["flip"] = good["survives"] != base["survives"]
+    grouped = good.groupby("changes", as_index=False).agg(rows=("flip", "size"), flips=("flip", "sum"))
+    return grouped
+
+
+def windows_frame(sweep: Sweep, rows: pd.DataFrame) -> pd.DataFrame:
+    found = []
+    for name in sweep.window:
+        for position, own in rows[rows["window"] == name].groupby("position"):
+            good = own[own["admissible"]]
+            found.append(
+                {
+                    "window_name": name, "entry_kind": own["entry_kind"].iloc[0], "length": own["length"].iloc[0],
+                    "window_start": own["window_start"].iloc[0], "window_end": own["window_end"].iloc[0],
+                    "position": position, "planned": len(own), "admissible": len(good),
+                    "survived": int(good["survives"].sum()),
+                    "share": float(good["survives"].mean()) if len(good) else None,
+                    "median_p": good["p_value"].median() if len(good) else None,
+                    "p_low": good["p_value"].quantile(0.25) if len(good) else None,
+                    "p_high": good["p_value"].quantile(0.75) if len(good) else None,
+                    "pooled": 1,
+                }
+            )  # fmt: skip
+    return pd.DataFrame(found)
+
+
+def directions_frame(sweep: Sweep, rows: pd.DataFrame) -> pd.DataFrame:
+    found = []
+    rows = rows[rows["admissible"]].assign(all="all")
+    for axis, choices in {"all": ["all"], **sweep.axes}.items():
+        for choice in choices:
+            own = rows[rows[axis] == choice]
+            for verdict, count in own["verdict"].value_counts().items():
+                found.append({"axis": axis, "choice": choice, "verdict": verdict, "rows": int(count), "share": count / len(own)})
+    return pd.DataFrame(found)
+
+
+def _spread(values: pd.Series) -> dict[str, float]:
+    return {
+        "minimum": values.min(), "lower_quartile": values.quantile(0.25), "median": values.median(),
+        "upper_quartile": values.quantile(0.75), "maximum": values.max(),
+    }  # fmt: skip
+
+
+def effects_frame(sweep: Sweep, rows: pd.DataFrame) -> pd.DataFrame:
+    good = rows[rows["admissible"]]
+    found = []
+    for (transformation, measures, form), own in good.groupby(["transformation", "measures", "test"]):
+        values = own["coefficient_sum"]
+        found.append(
+            {
+                "scale": f"{transformation}; {measures}; {form}", "transformation": transformation, "measures": measures,
+                "rows": len(own), "positive": int((values > 0).sum()), "negative": int((values < 0).sum()),
+                **_spread(values), "is_baseline": bool(own["is_baseline"].any()),
+            }
+        )  # fmt: skip
+    return pd.DataFrame(found)
+
+
+def effects_overall_frame(sweep: Sweep, rows: pd.DataFrame) -> pd.DataFrame:
+    values = rows.loc[rows["admissible"], "coefficient_sum"] / 4
+    found = [
+        {"quantity": name, "rows": len(values), "positive": int((values > 0).sum()), **_spread(values * factor)}
+        for name, factor in (("signed partial R²", 0.5), ("standardised sum", 1.0))
+    ]
+    return pd.DataFrame(found)
+
+
+def attrition_frame(sweep: Sweep, rows: pd.DataFrame) -> pd.DataFrame:
+    found = []
+    for status in ("not applicable", "infeasible", "failed"):
+        own = rows[rows["status"] == status]
+        for reason, count in own["reason"].value_counts().items():
+            found.append({"status": status, "reason": reason, "rows": int(count), "ruled": False})
+    screened = int(rows["screened_out"].sum())
+    if screened:
+        found.append({"status": "screened out", "reason": "enough observations", "rows": screened, "ruled": False})
+    return pd.DataFrame(found, columns=["status", "reason", "rows", "ruled"])
+
+
+def frames_of(sweep: Sweep) -> dict[str, pd.DataFrame]:
+    """All frames of one finding, named as the functions that read them."""
+    rows = rows_of(sweep)
+    makers = {
+        "survival": survival_frame, "baseline": baseline_frame, "single_changes": single_changes_frame,
+        "shortest_flips": shortest_flips_frame, "flip_distances": flip_distances_frame, "windows": windows_frame,
+        "directions": directions_frame, "effects": effects_frame, "effects_overall": effects_overall_frame,
+        "attrition": attrition_frame,
+    }  # fmt: skip
+    return {name: make(sweep, rows) for name, make in makers.items()}
+
+
+def finding_of(sweep: Sweep) -> dict[str, object]:
+    """The finding's record as the store keeps it."""
+    statistic, p_value, observations = sweep.reported
+    return {
+        "finding": 1, "name": f"{sweep.cause} leads {sweep.effect}", "cause": sweep.cause, "effect": sweep.effect,
+        "given": sweep.given, "exogenous": "", "claim": sweep.claim, "sign": 0, "reverse_sign": 0,
+        "data_high": 0x0123456789ABCDEF, "data_low": 0xFEDCBA9876543210, "required_mask": 1, "baseline_high": 1,
+        "baseline_low": 2, "reported_statistic": statistic, "reported_p_value": p_value,
+        "reported_observations": observations, "reported_tolerance": None,
+    }  # fmt: skip
+
+
+def crowded(count: int, **changes: object) -> Sweep:
+    """A sweep whose lag axis has ``count`` choices and whose other axes are short."""
+    return Sweep(
+        lags=[str(order) for order in range(1, count + 1)], window=["full sample", "before 2009"],
+        transformation=["log difference"], test=["F", "F, HC3 covariance"], conditioning=["given"],
+        moving={}, **changes,
+    )  # fmt: skip

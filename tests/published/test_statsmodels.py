@@ -1,0 +1,327 @@
+"""Results against statsmodels on drawn data: its Granger test, its OLS and its VAR.
+
+The data are drawn with a fixed seed, so that nothing here can have been tuned to a data set
+that everyone knows.  Tolerances: statistics 1e-8 relative (what the store promises),
+p-values 1e-6 relative (tails magnify), chosen orders exactly.
+"""
+
+from __future__ import annotations
+
+import warnings
+from pathlib import Path
+from typing import Any
+
+import numpy as np
+import pandas as pd
+import published_plans as plans
+import pytest
+from numpy.typing import NDArray
+
+Array = NDArray[np.float64]
+ROWS = 180
+FIRST = "1990-01"
+PERIODS = plans.months(FIRST, ROWS)
+
+
+def drawn(seed: int = 20261201) -> dict[str, Array]:
+    """Draw four linked series; w follows its own past only and serves as exogenous."""
+    rng = np.random.default_rng(seed)
+    shocks = rng.standard_normal((ROWS + 50, 4)) * (1.0, 0.7, 1.3, 1.0)
+    shocks *= np.where(np.arange(ROWS + 50) % 40 < 10, 2.0, 1.0)[:, None]  # uneven variance
+    first = np.array(
+        [
+            [0.5, 0.2, 0.0, 0.1],
+            [0.1, 0.4, 0.2, 0.3],
+            [0.0, -0.2, 0.3, 0.0],
+            [0.0, 0.0, 0.0, 0.6],
+        ]
+    )
+    second = np.array(
+        [
+            [0.1, 0.15, 0.0, 0.0],
+            [0.0, 0.1, -0.1, 0.0],
+            [0.2, 0.0, 0.1, 0.0],
+            [0.0, 0.0, 0.0, 0.0],
+        ]
+    )
+    values = np.zeros((ROWS + 50, 4))
+    for t in range(2, ROWS + 50):
+        values[t] = first @ values[t - 1] + second @ values[t - 2] + shocks[t]
+    return dict(zip("xyzw", values[50:].T + 10.0, strict=True))
+
+
+@pytest.fixture(scope="module")
+def series() -> dict[str, Array]:
+    return drawn()
+
+
+def sweep_drawn(
+    folder: Path,
+    series: dict[str, Array],
+    axes: dict[str, Any],
+    finding: dict[str, Any] | None = None,
+    baseline: dict[str, Any] | None = None,
+) -> pd.DataFrame:
+    """Run x → y, given nothing unless the finding says so."""
+    plans.write_data(folder / "drawn.csv", PERIODS, series)
+    findings = [{"name": "x leads y", "cause": "x", "effect": "y", **(finding or {})}]
+    text = plans.plan_text("drawn.csv", findings, axes, baseline, frequency="monthly")
+    return plans.run_plan(folder, text)
+
+
+def lagged(values: Array, lags: int, rows: Array) -> list[Array]:
+    """Return lags 1..lags of a series at the given rows."""
+    return [values[rows - lag] for lag in range(1, lags + 1)]
+
+
+def by_ols(
+    effect: Array,
+    columns: dict[str, list[Array]],
+    deterministic: list[Array],
+    rows: Array,
+    covariance: str = "nonrobust",
+) -> tuple[float, float]:
+    """Test that all columns under "cause" are zero; F and its p-value from statsmodels."""
+    import statsmodels.api as sm
+
+    cause = columns["cause"]
+    rest = [column for name, group in columns.items() if name != "cause" for column in group]
+    design = np.column_stack([*cause, *rest, *deterministic])
+    fitted = sm.OLS(effect[rows], design).fit(cov_type=covariance, use_t=True)
+    tested = fitted.f_test(np.eye(len(cause), design.shape[1]))
+    return float(tested.fvalue), float(tested.pvalue)
+
+
+def agree(row: pd.Series[Any], statistic: float, p_value: float) -> None:
+    assert row["status"] == "ok"
+    assert float(row["statistic"]) == pytest.approx(statistic, rel=1e-8)
+    assert float(row["p_value"]) == pytest.approx(p_value, rel=1e-6)
+
+
+def test_granger_test_of_two_series(series: dict[str, Array], tmp_path: Path) -> None:
+    """Its four statistics: F on F, T-divisor Wald and LR on chi-square; both directions."""
+    from statsmodels.tsa.stattools import grangercausalitytests
+
+    procedures = [
+        plans.procedure("F"),
+        plans.procedure("Wald", divisor="T"),
+        plans.procedure("LR"),
+    ]
+    keys = ["ssr_ftest", "ssr_chi2test", "lrtest"]
+    axes = {"lags": [1, 2, 3, 4, 6], "tests": procedures}
+    outcomes = sweep_drawn(tmp_path, series, axes).set_index(["test", "lags"])
+    for prefix, columns in (("", ("y", "x")), ("reverse_", ("x", "y"))):
+        data = np.column_stack([series[name] for name in columns])
+        with warnings.catch_warnings():
+            warnings.simplefilter("ignore", FutureWarning)
+            theirs = grangercausalitytests(data, maxlag=6)
+        for lag in axes["lags"]:
+            for procedure, key in zip(procedures, keys, strict=True):
+                row = outcomes.loc[(procedure["name"], lag)]
+                statistic, p_value = theirs[lag][0][key][:2]
+                assert row[f"{prefix}statistic"] == pytest.approx(statistic, rel=1e-8)
+                assert row[f"{prefix}p_value"] == pytest.approx(p_value, rel=1e-6)
+
+
+@pytest.mark.parametrize("covariance", ["classical", "HC0", "HC1", "HC2", "HC3"])
+def test_given_and_exogenous(series: dict[str, Array], tmp_path: Path, covariance: str) -> None:
+    """OLS with a modelled third series and an exogenous one."""
+    entry = plans.procedure("F", covariance)
+    finding = {"given": ["z"], "exogenous": [{"series": "w", "lags": 2}]}
+    outcomes = sweep_drawn(
+        tmp_path, series, {"lags": [3], "tests": [entry]}, finding, {"test": entry}
+    )
+    row = outcomes[outcomes["lags"] == 3].iloc[0]
+    rows = np.arange(3, ROWS)
+    columns = {
+        "cause": lagged(series["x"], 3, rows),
+        "own": lagged(series["y"], 3, rows),
+        "given": lagged(series["z"], 3, rows),
+        "exogenous": plans.exogenous_columns(series["w"], 2, rows),
+    }
+    kind = "nonrobust" if covariance == "classical" else covariance
+    agree(row, *by_ols(series["y"], columns, [np.ones(len(rows))], rows, kind))
+
+
+@pytest.mark.parametrize(("own", "cause"), [(4, 2), (1, 3), (6, 1)])
+def test_own_and_cause_orders(
+    series: dict[str, Array], tmp_path: Path, own: int, cause: int
+) -> None:
+    axes = {
+        "lags": [{"own": own, "cause": cause}],
+        "tests": ["F", {"test": "F", "covariance": "HC3"}],
+    }
+    outcomes = sweep_drawn(tmp_path, series, axes)
+    longest = max(own, cause)
+    rows = np.arange(longest, ROWS)
+    columns = {"cause": lagged(series["x"], cause, rows), "own": lagged(series["y"], own, rows)}
+    unequal = outcomes[outcomes["lags_choice"] == "unequal"]
+    assert len(unequal) == 2
+    for _, row in unequal.iterrows():
+        kind = "HC3" if "HC3" in row["test"] else "nonrobust"
+        assert int(row["observations"]) == len(rows)
+        agree(row, *by_ols(series["y"], columns, [np.ones(len(rows))], rows, kind))
+
+
+def deterministic_terms(rows: Array) -> dict[str, tuple[Any, list[Array]]]:
+    """Return choices of deterministic terms and the columns that they mean."""
+    one, time = np.ones(len(rows)), rows / ROWS
+    month = rows % 12  # the first row is a January
+    dummies = [(month == number).astype(float) for number in range(1, 12)]
+    step = (rows >= PERIODS.index("1998-05")).astype(float)
+    pulse = (rows == PERIODS.index("2001-09")).astype(float)
+    waves = [
+        turn(2 * np.pi * frequency * rows / ROWS)
+        for frequency in (1, 2)
+        for turn in (np.sin, np.cos)
+    ]
+    return {
+        "none": ("none", []),
+        "quadratic": ("quadratic trend", [one, time, time**2]),
+        "seasonal": ({"trend": "linear trend", "seasonal": True}, [one, time, *dummies]),
+        "step": ({"trend": "constant", "steps": ["1998-05"]}, [one, step]),
+        "pulse": ({"trend": "constant", "pulses": ["2001-09"]}, [one, pulse]),
+        "waves": ({"trend": "constant", "fourier": 2}, [one, *waves]),
+    }
+
+
+@pytest.mark.parametrize("name", ["none", "quadratic", "seasonal", "step", "pulse", "waves"])
+def test_deterministic_terms(series: dict[str, Array], tmp_path: Path, name: str) -> None:
+    rows = np.arange(2, ROWS)
+    choice, terms = deterministic_terms(rows)[name]
+    outcomes = sweep_drawn(
+        tmp_path, series, {"lags": [2]}, {"given": ["z"]}, {"deterministics": choice, "lags": 2}
+    )
+    assert len(outcomes) == 1
+    columns = {
+        "cause": lagged(series["x"], 2, rows),
+        "own": lagged(series["y"], 2, rows),
+        "given": lagged(series["z"], 2, rows),
+    }
+    agree(outcomes.iloc[0], *by_ols(series["y"], columns, terms, rows))
+
+
+def test_without_an_episode(series: dict[str, Array], tmp_path: Path) -> None:
+    """No row reaches into the episode, through its own date, a lag or a difference."""
+    without = ["1996-01", "1997-06"]
+    outcomes = sweep_drawn(
+        tmp_path,
+        series,
+        {"windows": [{"without": without}]},
+        baseline={"lags": 3, "transformation": "difference", "window": {"without": without}},
+    )
+    difference = {name: np.diff(values, prepend=np.nan) for name, values in series.items()}
+    first, last = (PERIODS.index(period) for period in without)
+    rows = np.array(
+        [t for t in range(4, ROWS) if not any(first <= raw <= last for raw in range(t - 4, t + 1))]
+    )
+    columns = {
+        "cause": lagged(difference["x"], 3, rows),
+        "own": lagged(difference["y"], 3, rows),
+    }
+    row = outcomes.iloc[0]
+    assert int(row["observations"]) == len(rows)
+    agree(row, *by_ols(difference["y"], columns, [np.ones(len(rows))], rows))
+
+
+def logarithm(values: Array) -> Array:
+    return np.log(values)
+
+
+def growth(values: Array, periods: int) -> Array:
+    result = np.full(len(values), np.nan)
+    result[periods:] = np.log(values[periods:]) - np.log(values[:-periods])
+    return result
+
+
+def seasonal_difference(values: Array) -> Array:
+    result = np.full(len(values), np.nan)
+    result[12:] = values[12:] - values[:-12]
+    return result
+
+
+TRANSFORMATIONS: dict[str, tuple[Any, Any]] = {
+    "log": (logarithm, 0),
+    "log difference": (lambda values: growth(values, 1), 1),
+    "yearly growth": (lambda values: growth(values, 12), 12),
+    "seasonal difference": (seasonal_difference, 12),
+    "inverse hyperbolic sine": (np.arcsinh, 0),
+}
+
+
+@pytest.mark.parametrize("name", TRANSFORMATIONS)
+def test_transformations(series: dict[str, Array], tmp_path: Path, name: str) -> None:
+    transform, lost = TRANSFORMATIONS[name]
+    positive = {key: np.exp(values / 10) for key, values in series.items()}
+    outcomes = sweep_drawn(tmp_path, positive, {}, baseline={"lags": 2, "transformation": name})
+    changed = {key: transform(values) for key, values in positive.items()}
+    rows = np.arange(lost + 2, ROWS)
+    columns = {"cause": lagged(changed["x"], 2, rows), "own": lagged(changed["y"], 2, rows)}
+    agree(outcomes.iloc[0], *by_ols(changed["y"], columns, [np.ones(len(rows))], rows))
+
+
+@pytest.mark.parametrize("trend", ["c", "ct", "ctt"])
+def test_var_criteria(series: dict[str, Array], tmp_path: Path, trend: str) -> None:
+    """The order that minimises each criterion of VAR.select_order from order 1 upwards."""
+    from statsmodels.tsa.api import VAR
+
+    words = {"c": "constant", "ct": "linear trend", "ctt": "quadratic trend"}
+    keys = {"AIC": "aic", "BIC": "bic", "HQ": "hqic", "FPE": "fpe"}
+    for seed in range(8):
+        data = drawn(seed)
+        folder = tmp_path / str(seed)
+        folder.mkdir()
+        outcomes = sweep_drawn(
+            folder,
+            data,
+            {"lags": [1, *(plans.criterion(name, 10) for name in keys)]},
+            {"given": ["z"]},
+            {"deterministics": words[trend]},
+        ).set_index("lags_choice")
+        model = VAR(np.column_stack([data[name] for name in ("y", "x", "z")]))
+        values = model.select_order(10, trend=trend).ics
+        for name, key in keys.items():
+            theirs = 1 + int(np.argmin(values[key][1:]))
+            assert int(outcomes.loc[name, "lags"]) == theirs, name
+
+
+def test_var_causality_statistic(series: dict[str, Array], tmp_path: Path) -> None:
+    """The same F statistic as in a VAR; its reference law has other degrees of freedom."""
+    from scipy.stats import f
+    from statsmodels.tsa.api import VAR
+
+    outcomes = sweep_drawn(tmp_path, series, {"lags": [1, 2, 5]}, {"given": ["z"]})
+    frame = pd.DataFrame({name: series[name] for name in ("y", "x", "z")})
+    for _, row in outcomes.iterrows():
+        order = int(row["lags"])
+        fitted = VAR(frame).fit(order, trend="c")
+        forward = fitted.test_causality("y", causing="x", kind="f")
+        reverse = fitted.test_causality("x", causing="y", kind="f")
+        assert float(row["statistic"]) == pytest.approx(forward.test_statistic, rel=1e-8)
+        assert float(row["reverse_statistic"]) == pytest.approx(reverse.test_statistic, rel=1e-8)
+        freedom = ROWS - order - (3 * order + 1)
+        assert int(row["df_den"]) == freedom
+        assert float(row["p_value"]) == pytest.approx(
+            f.sf(forward.test_statistic, order, freedom), rel=1e-6
+        )
+        assert forward.df == (order, 3 * freedom)
+
+
+def test_coefficient_sum(series: dict[str, Array], tmp_path: Path) -> None:
+    """The sum of the tested coefficients and its standard error, classical and HC3."""
+    import statsmodels.api as sm
+
+    entries = [plans.procedure("F"), plans.procedure("F", "HC3")]
+    outcomes = sweep_drawn(tmp_path, series, {"tests": entries}, {"given": ["z"]}, {"lags": 4})
+    rows = np.arange(4, ROWS)
+    design = np.column_stack(
+        [column for name in "xyz" for column in lagged(series[name], 4, rows)]
+        + [np.ones(len(rows))]
+    )
+    ones = np.r_[np.ones(4), np.zeros(design.shape[1] - 4)]
+    for entry, kind in zip(entries, ("nonrobust", "HC3"), strict=True):
+        fitted = sm.OLS(series["y"][rows], design).fit(cov_type=kind, use_t=True)
+        row = outcomes[outcomes["test"] == entry["name"]].iloc[0]
+        error = float(np.sqrt(ones @ fitted.cov_params() @ ones))
+        assert float(row["coefficient_sum"]) == pytest.approx(float(ones @ fitted.params), rel=1e-8)
+        assert float(row["coefficient_sum_se"]) == pytest.approx(error, rel=1e-8)
