@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import json
 from collections.abc import Mapping, Sequence
+from contextlib import ExitStack
 from dataclasses import astuple
 from typing import Any, TypeAlias
 
@@ -149,7 +150,7 @@ class SweepWriter:
             return earlier
         frame = pd.DataFrame({name: np.asarray(values) for name, values in positions.items()})
         number: int = database.scalar("SELECT coalesce(max(sweep), 0) + 1 FROM sweep")
-        with database.transaction(), database.registered("new_positions", frame):
+        with database.registered("new_positions", frame), database.transaction():
             self._insert("sweep", [[number, *astuple(sweep), now()]])
             self._insert("finding", [[number, *astuple(finding)] for finding in findings])
             self._insert("sweep_choice", [[number, *astuple(choice)] for choice in choices])
@@ -234,19 +235,21 @@ class SweepWriter:
             where the status is ok or present where it is not, p-values outside [0, 1],
             a specification twice, a code that the sweep did not register.
         """
-        frame = outcome_frame(batch)
-        self._check_codes(sweep, frame)
-        detail_frame = details_frame(details) if details is not None else None
+        frames = {"outcome": outcome_frame(batch)}
+        self._check_codes(sweep, frames["outcome"])
+        if details is not None:
+            frames["details"] = details_frame(details)
         database = self._database
-        columns = ", ".join(f'"{name}"' for name in frame.columns)
-        with database.registered("batch", frame), database.transaction():
-            database.execute(f"INSERT INTO outcome SELECT ?, {columns} FROM batch", [sweep])
-            if detail_frame is not None:
-                columns = ", ".join(f'"{name}"' for name in detail_frame.columns)
-                with database.registered("batch_details", detail_frame):
-                    database.execute(
-                        f"INSERT INTO details SELECT ?, {columns} FROM batch_details", [sweep]
-                    )
+        with ExitStack() as stack:
+            # Frames are let go after the transaction: DuckDB refuses it inside a failed one.
+            for table, frame in frames.items():
+                stack.enter_context(database.registered(f"new_{table}", frame))
+            stack.enter_context(database.transaction())
+            for table, frame in frames.items():
+                columns = ", ".join(f'"{name}"' for name in frame.columns)
+                database.execute(
+                    f"INSERT INTO {table} SELECT ?, {columns} FROM new_{table}", [sweep]
+                )
 
     def finish(self, sweep: int, wall_seconds: float, counts: Mapping[str, int]) -> None:
         """Record that a sweep ran to its end and write the log into the file.

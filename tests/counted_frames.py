@@ -21,14 +21,21 @@ STATUS = {"na": "not applicable", "infeasible": "infeasible", "failed": "failed"
 class Sweep:
     """Axes (first choice of each is the baseline's) and how p-values come about."""
 
-    lags: list[str] = field(default_factory=lambda: ["4", "1", "2", "3", "6", "8", "AIC", "BIC"])
+    lags: list[str] = field(default_factory=lambda: ["4", "1", "2", "8", "AIC"])
     deterministics: list[str] = field(
         default_factory=lambda: ["constant", "linear trend", "constant and seasonal dummies"]
     )
     window: list[str] = field(
-        default_factory=lambda: ["full sample", "before 2009", "without 2020-03 to 2021-06", "rolling 120"]
+        default_factory=lambda: [
+            "full sample",
+            "before 2009",
+            "without 2020-03 to 2021-06",
+            "rolling 120",
+        ]
     )
-    transformation: list[str] = field(default_factory=lambda: ["log difference", "log", "yearly growth"])
+    transformation: list[str] = field(
+        default_factory=lambda: ["log difference", "log", "yearly growth"]
+    )
     test: list[str] = field(default_factory=lambda: ["F", "F, HC3 covariance", "Wald"])
     conditioning: list[str] = field(default_factory=lambda: ["given", "pairwise"])
     measures: list[str] = field(default_factory=lambda: ["as named"])
@@ -63,7 +70,11 @@ def rows_of(sweep: Sweep) -> pd.DataFrame:
         choices = dict(zip(AXES, combination, strict=True))
         kind, length, positions = sweep.moving.get(choices["window"], ("fixed", 0, 1))
         for position in range(positions):
-            z = sweep.centre + sum(shift[c] for c in combination) + rng.normal(0, sweep.spread * 0.3)
+            z = (
+                sweep.centre
+                + sum(shift[c] for c in combination)
+                + rng.normal(0, sweep.spread * 0.3)
+            )
             z -= sum(0.9 for c in combination if c in sweep.weak)
             first, last = start, end
             if kind != "fixed":
@@ -101,7 +112,7 @@ def rows_of(sweep: Sweep) -> pd.DataFrame:
             )
     rows = pd.DataFrame(found)
     a = sweep.significance
-    rows["admissible"] = (rows["status"] == "ok") & ~((rows["specification"].str[-1] == "7"))
+    rows["admissible"] = (rows["status"] == "ok") & ~(rows["specification"].str[-1] == "7")
     rows["screened_out"] = (rows["status"] == "ok") & ~rows["admissible"]
     rows["survives"] = (rows["p_value"] <= a) & rows["admissible"]
     forward, backward = rows["p_value"] <= a, rows["reverse_p_value"] <= a
@@ -121,7 +132,9 @@ def _counts(rows: pd.DataFrame) -> dict[str, object]:
     weight = good["weight"].sum()
 
     def share(level: float) -> float | None:
-        return float((good["weight"] * (good["p_value"] <= level)).sum() / weight) if weight else None
+        return (
+            float((good["weight"] * (good["p_value"] <= level)).sum() / weight) if weight else None
+        )
 
     return {
         "planned": len(rows),
@@ -134,7 +147,9 @@ def _counts(rows: pd.DataFrame) -> dict[str, object]:
         "other_sign": 0,
         "distinct": int(good["computation"].nunique()),
         "raw_share": float(good["survives"].mean()) if len(good) else None,
-        "headline_share": float((good["weight"] * good["survives"]).sum() / weight) if weight else None,
+        "headline_share": float((good["weight"] * good["survives"]).sum() / weight)
+        if weight
+        else None,
         "share_at_1": share(0.01),
         "share_at_5": share(0.05),
         "share_at_10": share(0.10),
@@ -144,10 +159,20 @@ def _counts(rows: pd.DataFrame) -> dict[str, object]:
 
 def survival_frame(sweep: Sweep, rows: pd.DataFrame) -> pd.DataFrame:
     head = {"sweep": 1, "finding": 1}
-    found = [head | {"axis": "all", "choice": "all", "code": 0, "choice_position": 0, "is_baseline": False} | _counts(rows)]
+    found = [
+        head
+        | {"axis": "all", "choice": "all", "code": 0, "choice_position": 0, "is_baseline": False}
+        | _counts(rows)
+    ]
     for axis, choices in sweep.axes.items():
         for place, choice in enumerate(choices):
-            own = {"axis": axis, "choice": choice, "code": place, "choice_position": place, "is_baseline": place == 0}
+            own = {
+                "axis": axis,
+                "choice": choice,
+                "code": place,
+                "choice_position": place,
+                "is_baseline": place == 0,
+            }
             found.append(head | own | _counts(rows[rows[axis] == choice]))
     return pd.DataFrame(found)
 
@@ -158,26 +183,58 @@ def baseline_frame(sweep: Sweep, rows: pd.DataFrame) -> pd.DataFrame:
     return pd.DataFrame(
         [
             {
-                "sweep": 1, "finding": 1, "cause": sweep.cause, "effect": sweep.effect, "given": sweep.given,
-                "claim": sweep.claim, "specification": row["specification"], "origin": "planned",
-                "lags_choice": row["lags"], "deterministics": row["deterministics"], "window_name": row["window"],
-                "window_entry": row["entry_kind"], "window_start": row["window_start"], "window_end": row["window_end"],
-                "transformation": row["transformation"], "test": row["test"], "conditioning": row["conditioning"],
-                "measures": row["measures"], "lags": 4, "observations": 355, "statistic": 3.4217 if ok else None,
-                "df_num": 4, "df_den": 342, "p_value": row["p_value"], "coefficient_sum": row["coefficient_sum"],
-                "coefficient_sum_se": 0.08, "signed_partial_r2": 0.038, "standardised_sum": 0.21,
-                "reverse_statistic": 1.02, "reverse_p_value": row["reverse_p_value"], "request": None,
-                "computation": row["computation"], "solver": "cholesky", "reverse_status": "ok",
-                "status": row["status"], "reason": row["reason"], "admissible": bool(row["admissible"]),
-                "failed_screens": "", "survives": bool(row["survives"]) if ok else None, "verdict": row["verdict"],
+                "sweep": 1,
+                "finding": 1,
+                "cause": sweep.cause,
+                "effect": sweep.effect,
+                "given": sweep.given,
+                "claim": sweep.claim,
+                "specification": row["specification"],
+                "origin": "planned",
+                "lags_choice": row["lags"],
+                "deterministics": row["deterministics"],
+                "window_name": row["window"],
+                "window_entry": row["entry_kind"],
+                "window_start": row["window_start"],
+                "window_end": row["window_end"],
+                "transformation": row["transformation"],
+                "test": row["test"],
+                "conditioning": row["conditioning"],
+                "measures": row["measures"],
+                "lags": 4,
+                "observations": 355,
+                "statistic": 3.4217 if ok else None,
+                "df_num": 4,
+                "df_den": 342,
+                "p_value": row["p_value"],
+                "coefficient_sum": row["coefficient_sum"],
+                "coefficient_sum_se": 0.08,
+                "signed_partial_r2": 0.038,
+                "standardised_sum": 0.21,
+                "reverse_statistic": 1.02,
+                "reverse_p_value": row["reverse_p_value"],
+                "request": None,
+                "computation": row["computation"],
+                "solver": "cholesky",
+                "reverse_status": "ok",
+                "status": row["status"],
+                "reason": row["reason"],
+                "admissible": bool(row["admissible"]),
+                "failed_screens": "",
+                "survives": bool(row["survives"]) if ok else None,
+                "verdict": row["verdict"],
                 "is_baseline": True,
             }
         ]
-    )  # fmt: skip
+    )
 
 
 def _z(p: object) -> float | None:
-    return None if p is None or p != p else min(37.0, NormalDist().inv_cdf(1 - min(max(float(p), 1e-15), 0.99999)))
+    return (
+        None
+        if p is None or p != p
+        else min(37.0, NormalDist().inv_cdf(1 - min(max(float(p), 1e-15), 0.99999)))
+    )
 
 
 def single_changes_frame(sweep: Sweep, rows: pd.DataFrame) -> pd.DataFrame:
@@ -191,14 +248,23 @@ def single_changes_frame(sweep: Sweep, rows: pd.DataFrame) -> pd.DataFrame:
             own = rows[same]
             good = own[own["admissible"]]
             ok = own[own["status"] == "ok"]
-            differs = good["survives"] != base["survives"] if base["admissible"] else good["survives"] & False
+            differs = (
+                good["survives"] != base["survives"]
+                if base["admissible"]
+                else good["survives"] & False
+            )
             z = [_z(p) for p in ok["p_value"]]
             z_base = _z(base["p_value"])
             found.append(
                 {
-                    "axis": axis, "choice": choice, "entry_kind": own["entry_kind"].iloc[0] if axis == "window" else "fixed",
-                    "positions": len(own), "rows_ok": len(ok), "admissible": len(good),
-                    "survived": int(good["survives"].sum()), "flips": int(differs.sum()),
+                    "axis": axis,
+                    "choice": choice,
+                    "entry_kind": own["entry_kind"].iloc[0] if axis == "window" else "fixed",
+                    "positions": len(own),
+                    "rows_ok": len(ok),
+                    "admissible": len(good),
+                    "survived": int(good["survives"].sum()),
+                    "flips": int(differs.sum()),
                     "p_value": ok["p_value"].median() if len(ok) else None,
                     "p_low": ok["p_value"].min() if len(ok) else None,
                     "p_high": ok["p_value"].max() if len(ok) else None,
@@ -210,14 +276,37 @@ def single_changes_frame(sweep: Sweep, rows: pd.DataFrame) -> pd.DataFrame:
                     "specification": own["specification"].iloc[0],
                     "baseline_p_value": base["p_value"],
                     "baseline_survives": bool(base["survives"]) if base["admissible"] else None,
-                    "axis_position": place, "choice_position": position,
+                    "axis_position": place,
+                    "choice_position": position,
                 }
-            )  # fmt: skip
-    columns = list(found[0]) if found else [
-        "axis", "choice", "entry_kind", "positions", "rows_ok", "admissible", "survived", "flips", "p_value",
-        "p_low", "p_high", "reverse_p_value", "z_change", "coefficient_sum", "status", "reason", "specification",
-        "baseline_p_value", "baseline_survives", "axis_position", "choice_position",
-    ]  # fmt: skip
+            )
+    columns = (
+        list(found[0])
+        if found
+        else [
+            "axis",
+            "choice",
+            "entry_kind",
+            "positions",
+            "rows_ok",
+            "admissible",
+            "survived",
+            "flips",
+            "p_value",
+            "p_low",
+            "p_high",
+            "reverse_p_value",
+            "z_change",
+            "coefficient_sum",
+            "status",
+            "reason",
+            "specification",
+            "baseline_p_value",
+            "baseline_survives",
+            "axis_position",
+            "choice_position",
+        ]
+    )
     return pd.DataFrame(found, columns=columns)
 
 
@@ -238,8 +327,7 @@ def flip_distances_frame(sweep: Sweep, rows: pd.DataFrame) -> pd.DataFrame:
     good = rows[rows["admissible"]].copy()
     good["changes"] = sum((good[axis] != base[axis]).astype(int) for axis in AXES)
     good["flip"] = good["survives"] != base["survives"]
-    grouped = good.groupby("changes", as_index=False).agg(rows=("flip", "size"), flips=("flip", "sum"))
-    return grouped
+    return good.groupby("changes", as_index=False).agg(rows=("flip", "size"), flips=("flip", "sum"))
 
 
 def windows_frame(sweep: Sweep, rows: pd.DataFrame) -> pd.DataFrame:
@@ -249,9 +337,14 @@ def windows_frame(sweep: Sweep, rows: pd.DataFrame) -> pd.DataFrame:
             good = own[own["admissible"]]
             found.append(
                 {
-                    "window_name": name, "entry_kind": own["entry_kind"].iloc[0], "length": own["length"].iloc[0],
-                    "window_start": own["window_start"].iloc[0], "window_end": own["window_end"].iloc[0],
-                    "position": position, "planned": len(own), "admissible": len(good),
+                    "window_name": name,
+                    "entry_kind": own["entry_kind"].iloc[0],
+                    "length": own["length"].iloc[0],
+                    "window_start": own["window_start"].iloc[0],
+                    "window_end": own["window_end"].iloc[0],
+                    "position": position,
+                    "planned": len(own),
+                    "admissible": len(good),
                     "survived": int(good["survives"].sum()),
                     "share": float(good["survives"].mean()) if len(good) else None,
                     "median_p": good["p_value"].median() if len(good) else None,
@@ -259,7 +352,7 @@ def windows_frame(sweep: Sweep, rows: pd.DataFrame) -> pd.DataFrame:
                     "p_high": good["p_value"].quantile(0.75) if len(good) else None,
                     "pooled": 1,
                 }
-            )  # fmt: skip
+            )
     return pd.DataFrame(found)
 
 
@@ -270,36 +363,59 @@ def directions_frame(sweep: Sweep, rows: pd.DataFrame) -> pd.DataFrame:
         for choice in choices:
             own = rows[rows[axis] == choice]
             for verdict, count in own["verdict"].value_counts().items():
-                found.append({"axis": axis, "choice": choice, "verdict": verdict, "rows": int(count), "share": count / len(own)})
+                found.append(
+                    {
+                        "axis": axis,
+                        "choice": choice,
+                        "verdict": verdict,
+                        "rows": int(count),
+                        "share": count / len(own),
+                    }
+                )
     return pd.DataFrame(found)
 
 
 def _spread(values: pd.Series) -> dict[str, float]:
     return {
-        "minimum": values.min(), "lower_quartile": values.quantile(0.25), "median": values.median(),
-        "upper_quartile": values.quantile(0.75), "maximum": values.max(),
-    }  # fmt: skip
+        "minimum": values.min(),
+        "lower_quartile": values.quantile(0.25),
+        "median": values.median(),
+        "upper_quartile": values.quantile(0.75),
+        "maximum": values.max(),
+    }
 
 
 def effects_frame(sweep: Sweep, rows: pd.DataFrame) -> pd.DataFrame:
     good = rows[rows["admissible"]]
     found = []
-    for (transformation, measures, form), own in good.groupby(["transformation", "measures", "test"]):
+    for (transformation, measures, form), own in good.groupby(
+        ["transformation", "measures", "test"]
+    ):
         values = own["coefficient_sum"]
         found.append(
             {
-                "scale": f"{transformation}; {measures}; {form}", "transformation": transformation, "measures": measures,
-                "rows": len(own), "positive": int((values > 0).sum()), "negative": int((values < 0).sum()),
-                **_spread(values), "is_baseline": bool(own["is_baseline"].any()),
+                "scale": f"{transformation}; {measures}; {form}",
+                "transformation": transformation,
+                "measures": measures,
+                "rows": len(own),
+                "positive": int((values > 0).sum()),
+                "negative": int((values < 0).sum()),
+                **_spread(values),
+                "is_baseline": bool(own["is_baseline"].any()),
             }
-        )  # fmt: skip
+        )
     return pd.DataFrame(found)
 
 
 def effects_overall_frame(sweep: Sweep, rows: pd.DataFrame) -> pd.DataFrame:
     values = rows.loc[rows["admissible"], "coefficient_sum"] / 4
     found = [
-        {"quantity": name, "rows": len(values), "positive": int((values > 0).sum()), **_spread(values * factor)}
+        {
+            "quantity": name,
+            "rows": len(values),
+            "positive": int((values > 0).sum()),
+            **_spread(values * factor),
+        }
         for name, factor in (("signed partial R²", 0.5), ("standardised sum", 1.0))
     ]
     return pd.DataFrame(found)
@@ -313,7 +429,14 @@ def attrition_frame(sweep: Sweep, rows: pd.DataFrame) -> pd.DataFrame:
             found.append({"status": status, "reason": reason, "rows": int(count), "ruled": False})
     screened = int(rows["screened_out"].sum())
     if screened:
-        found.append({"status": "screened out", "reason": "enough observations", "rows": screened, "ruled": False})
+        found.append(
+            {
+                "status": "screened out",
+                "reason": "enough observations",
+                "rows": screened,
+                "ruled": False,
+            }
+        )
     return pd.DataFrame(found, columns=["status", "reason", "rows", "ruled"])
 
 
@@ -321,11 +444,17 @@ def frames_of(sweep: Sweep) -> dict[str, pd.DataFrame]:
     """All frames of one finding, named as the functions that read them."""
     rows = rows_of(sweep)
     makers = {
-        "survival": survival_frame, "baseline": baseline_frame, "single_changes": single_changes_frame,
-        "shortest_flips": shortest_flips_frame, "flip_distances": flip_distances_frame, "windows": windows_frame,
-        "directions": directions_frame, "effects": effects_frame, "effects_overall": effects_overall_frame,
+        "survival": survival_frame,
+        "baseline": baseline_frame,
+        "single_changes": single_changes_frame,
+        "shortest_flips": shortest_flips_frame,
+        "flip_distances": flip_distances_frame,
+        "windows": windows_frame,
+        "directions": directions_frame,
+        "effects": effects_frame,
+        "effects_overall": effects_overall_frame,
         "attrition": attrition_frame,
-    }  # fmt: skip
+    }
     return {name: make(sweep, rows) for name, make in makers.items()}
 
 
@@ -333,18 +462,35 @@ def finding_of(sweep: Sweep) -> dict[str, object]:
     """The finding's record as the store keeps it."""
     statistic, p_value, observations = sweep.reported
     return {
-        "finding": 1, "name": f"{sweep.cause} leads {sweep.effect}", "cause": sweep.cause, "effect": sweep.effect,
-        "given": sweep.given, "exogenous": "", "claim": sweep.claim, "sign": 0, "reverse_sign": 0,
-        "data_high": 0x0123456789ABCDEF, "data_low": 0xFEDCBA9876543210, "required_mask": 1, "baseline_high": 1,
-        "baseline_low": 2, "reported_statistic": statistic, "reported_p_value": p_value,
-        "reported_observations": observations, "reported_tolerance": None,
-    }  # fmt: skip
+        "finding": 1,
+        "name": f"{sweep.cause} leads {sweep.effect}",
+        "cause": sweep.cause,
+        "effect": sweep.effect,
+        "given": sweep.given,
+        "exogenous": "",
+        "claim": sweep.claim,
+        "sign": 0,
+        "reverse_sign": 0,
+        "data_high": 0x0123456789ABCDEF,
+        "data_low": 0xFEDCBA9876543210,
+        "required_mask": 1,
+        "baseline_high": 1,
+        "baseline_low": 2,
+        "reported_statistic": statistic,
+        "reported_p_value": p_value,
+        "reported_observations": observations,
+        "reported_tolerance": None,
+    }
 
 
 def crowded(count: int, **changes: object) -> Sweep:
     """A sweep whose lag axis has ``count`` choices and whose other axes are short."""
     return Sweep(
-        lags=[str(order) for order in range(1, count + 1)], window=["full sample", "before 2009"],
-        transformation=["log difference"], test=["F", "F, HC3 covariance"], conditioning=["given"],
-        moving={}, **changes,
-    )  # fmt: skip
+        lags=[str(order) for order in range(1, count + 1)],
+        window=["full sample", "before 2009"],
+        transformation=["log difference"],
+        test=["F", "F, HC3 covariance"],
+        conditioning=["given"],
+        moving={},
+        **changes,
+    )

@@ -3,7 +3,9 @@
 --
 -- Rows are grouped once, on codes and on how they count; every axis then sums the groups.
 -- headline_share = sum(weight * survived) / sum(weight * admissible); the weight is the same for
--- all rows of a group, because only the window entry and the test choose it.
+-- all rows of a group, because only the window entry and the test choose it.  Weights are summed
+-- last and in order, so that a share has the same digits whatever the number of threads, and is
+-- exactly 1 where every row survives.
 -- Distinct computations do not add up over groups: each computation is given the set of codes it
 -- serves, as bits, and computations with equal sets are counted together.  Codes from 63 on,
 -- which have no bit, are counted one by one.
@@ -36,7 +38,7 @@ grouped AS (
     GROUP BY sweep, finding,
         lags, deterministics, "window", transformation, test, conditioning, measures, kind
 ),
-sums AS (
+by_weight AS (
     SELECT
         sweep, finding,
         CASE WHEN grouping(lags) = 0 THEN 'lags'
@@ -49,6 +51,7 @@ sums AS (
              ELSE 'all' END AS axis,
         coalesce(lags, deterministics, "window", transformation, test, conditioning, measures, 0)
             AS code,
+        weight,
         sum(planned) AS planned,
         sum(planned) FILTER (kind & 3 = 1) AS not_applicable,
         sum(planned) FILTER (kind & 3 = 2) AS infeasible,
@@ -57,22 +60,39 @@ sums AS (
         sum(planned) FILTER (kind & 8 <> 0) AS admissible,
         sum(planned) FILTER (kind & 16 <> 0) AS survived,
         sum(planned) FILTER (kind & 32 <> 0) AS other_sign,
-        sum(weight * planned) FILTER (kind & 8 <> 0) AS weighted,
-        sum(weight * planned) FILTER (kind & 16 <> 0) AS weighted_survived,
-        sum(weight * planned) FILTER (kind & 64 <> 0) AS weighted_1,
-        sum(weight * planned) FILTER (kind & 128 <> 0) AS weighted_5,
-        sum(weight * planned) FILTER (kind & 256 <> 0) AS weighted_10
+        sum(planned) FILTER (kind & 64 <> 0) AS survived_1,
+        sum(planned) FILTER (kind & 128 <> 0) AS survived_5,
+        sum(planned) FILTER (kind & 256 <> 0) AS survived_10
     FROM grouped
     GROUP BY GROUPING SETS (
-        (sweep, finding),
-        (sweep, finding, lags),
-        (sweep, finding, deterministics),
-        (sweep, finding, "window"),
-        (sweep, finding, transformation),
-        (sweep, finding, test),
-        (sweep, finding, conditioning),
-        (sweep, finding, measures)
+        (sweep, finding, weight),
+        (sweep, finding, weight, lags),
+        (sweep, finding, weight, deterministics),
+        (sweep, finding, weight, "window"),
+        (sweep, finding, weight, transformation),
+        (sweep, finding, weight, test),
+        (sweep, finding, weight, conditioning),
+        (sweep, finding, weight, measures)
     )
+),
+sums AS (
+    SELECT
+        sweep, finding, axis, code,
+        sum(planned) AS planned,
+        sum(not_applicable) AS not_applicable,
+        sum(infeasible) AS infeasible,
+        sum(failed) AS failed,
+        sum(screened_out) AS screened_out,
+        sum(admissible) AS admissible,
+        sum(survived) AS survived,
+        sum(other_sign) AS other_sign,
+        sum(weight * admissible ORDER BY weight) AS weighted,
+        sum(weight * survived ORDER BY weight) AS weighted_survived,
+        sum(weight * survived_1 ORDER BY weight) AS weighted_1,
+        sum(weight * survived_5 ORDER BY weight) AS weighted_5,
+        sum(weight * survived_10 ORDER BY weight) AS weighted_10
+    FROM by_weight
+    GROUP BY sweep, finding, axis, code
 ),
 medians AS (
     SELECT

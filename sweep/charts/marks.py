@@ -14,7 +14,7 @@ import altair as alt
 import pandas as pd
 
 from .layout import wrapped
-from .theme import BODY, INK, SMALL, TITLE, WIDTHS, configure
+from .theme import BODY, EDGE, INK, SMALL, TITLE, WIDTHS, configure
 
 __all__ = ["Rows", "areas", "dots", "figure", "hit_rows", "paths", "strokes", "texts"]
 
@@ -186,7 +186,7 @@ def figure(
     chart = alt.layer(*layers).properties(
         width=across,
         height=height,
-        padding=0,
+        padding=EDGE,
         title=alt.TitleParams(
             text=wrapped(title, across, TITLE, bold=True),
             subtitle=wrapped(subtitle, across, BODY),

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import re
 from typing import TYPE_CHECKING, Any
 
 if TYPE_CHECKING:
@@ -18,16 +19,21 @@ def language_version() -> str:
 
 
 def specification(chart: altair.LayerChart) -> dict[str, Any]:
-    """Return a chart as plain JSON values."""
-    plain: dict[str, Any] = chart.to_dict()
+    """Return a chart as plain JSON values.
+
+    The charts of this package are checked against the language's schema in the tests; doing
+    so for every drawing would double its time.
+    """
+    plain: dict[str, Any] = chart.to_dict(validate=False)
     return plain
 
 
-def svg(chart: altair.LayerChart) -> str:
-    """Draw a chart as SVG text."""
+def svg(chart: altair.LayerChart | dict[str, Any]) -> str:
+    """Draw a chart, or its specification, as SVG text."""
     import vl_convert
 
-    return str(vl_convert.vegalite_to_svg(specification(chart), vl_version=language_version()))
+    plain = chart if isinstance(chart, dict) else specification(chart)
+    return str(vl_convert.vegalite_to_svg(plain, vl_version=language_version()))
 
 
 def png(chart: altair.LayerChart, dots_per_inch: float = 300) -> bytes:
@@ -46,14 +52,20 @@ def png(chart: altair.LayerChart, dots_per_inch: float = 300) -> bytes:
         vl_convert.vegalite_to_png(
             specification(chart),
             vl_version=language_version(),
-            scale=dots_per_inch / 96,
+            scale=72 / 96,  # the drawer takes a pixel for a point at this resolution
             ppi=dots_per_inch,
         )
     )
 
 
 def pdf(chart: altair.LayerChart) -> bytes:
-    """Draw a chart as PDF at its print size."""
+    """Draw a chart as PDF at its print size (a pixel is 1/96 of an inch, a point 1/72)."""
     import vl_convert
 
-    return bytes(vl_convert.vegalite_to_pdf(specification(chart), vl_version=language_version()))
+    def points(match: re.Match[str]) -> str:
+        return f'{match[1]}="{float(match[2]) * 72 / 96:.4f}"'
+
+    # The drawing keeps its own units in viewBox; only the size of the page is set in points.
+    head, rest = svg(chart).split(">", 1)
+    head = re.sub(r'\b(width|height)="([\d.]+)"', points, head)
+    return bytes(vl_convert.svg_to_pdf(f"{head}>{rest}"))

@@ -26,6 +26,7 @@ NEEDS = ("single_changes", "baseline")
 _LABEL = {"narrow": 96.0, "wide": 210.0}
 _WORDS = {"narrow": 106.0, "wide": 176.0}
 _TOP = 40.0
+_NONE = "No choice differs from the baseline on one axis only."
 
 # Values below the edge are gathered at one place left of it.
 _EDGE, _GATHERED, _END = 0.001, 0.00062, 0.0004
@@ -130,10 +131,10 @@ def build(
     baseline = baseline_record(frames["baseline"])
     room = label_room(parts, _LABEL[width])
     arranged = arrange(parts, room, lambda record: int(record["flips"]) > 0, _TOP)
-    height = max(arranged.height, _TOP) + 4
+    height = max(arranged.height, _TOP + 18) + 4
     drawn = [_record(row, width) for row in arranged.choices]
     across = WIDTHS[width]
-    words = min(_WORDS[width], max([text_width(one["text"], bold=True) for one in drawn] + [30.0]))
+    words = min(_WORDS[width], max([text_width(one["text"], bold=True) for one in drawn] + [40.0]))
     track = (room + 16.0, across - words - 12)
     pointed = [
         record | {"y": row.top, "y2": row.bottom}
@@ -145,6 +146,7 @@ def build(
             *_labels(arranged, height),
             *_baseline(baseline, height, track),
             *_strokes(drawn, height, track),
+            *_nothing(arranged, height),
             *_ends(drawn, height, track),
             *_outcomes(drawn, arranged, height, across, words),
             *marks.hit_rows(pointed, height, across, _TIPS),
@@ -194,7 +196,7 @@ def _ground(
     heads = [{"y": group.middle, "text": group.text} for group in arranged.groups]
     layers += marks.texts(heads, height, 0, bold=True)
     lines = [{"y": group.bottom - 1} for group in arranged.groups]
-    return layers + marks.strokes(lines, height, 0, across, colour=HAIRLINE, width=0.6)
+    return layers + marks.strokes(lines, height, 1, across - 1, colour=HAIRLINE, width=0.6)
 
 
 def _labels(arranged: Arrangement, height: float) -> list[alt.Chart]:
@@ -265,6 +267,13 @@ def _ends(
             )
     absent = [{"y": one["y"]} for one in drawn if one["place"] is None]
     return layers + marks.dots(absent, height, track[1] + 6, colour=ABSENT, area=7)
+
+
+def _nothing(arranged: Arrangement, height: float) -> list[alt.Chart]:
+    """Say so where no choice differs from the baseline on one axis only."""
+    if arranged.total:
+        return []
+    return marks.texts([{"y": _TOP + 10, "text": _NONE}], height, 4, colour=QUIET)
 
 
 def _outcomes(

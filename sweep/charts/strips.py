@@ -62,6 +62,10 @@ class Strip:
         """Positions, pooled ones counted singly."""
         return sum(int(row.get("pooled", 1) or 1) for row in self.records)
 
+    def day(self, span: tuple[float, float]) -> float:
+        """Return the date of a position: its last day, or its first where windows shrink."""
+        return span[0] if self.kind == "shrinking" else span[1]
+
     def y(self, p_value: float) -> float:
         """Return where a p-value stands in the panel: 1 at its top, below 0.001 at its edge."""
         top, bottom = self.panel
@@ -76,13 +80,20 @@ def day_number(value: Any) -> float:
 
 
 def _spans(kind: str, records: list[dict[Any, Any]]) -> list[tuple[float, float]]:
+    """Return what each position covers across: the bar itself, or the step to its date.
+
+    The step leads up to the last date of a window, so that no cell reaches past the data;
+    shrinking windows, which all end alike, start at their first date.
+    """
     if kind == "fixed":
         return [(day_number(r["window_start"]), day_number(r["window_end"])) for r in records]
     side = "window_start" if kind == "shrinking" else "window_end"
     days = [day_number(record[side]) for record in records]
-    steps = [after - before for before, after in itertools.pairwise(days)]
-    last = sorted(steps)[len(steps) // 2] if steps else 30.0
-    return list(zip(days, [*days[1:], days[-1] + last], strict=True))
+    steps = sorted(after - before for before, after in itertools.pairwise(days))
+    step = steps[len(steps) // 2] if steps else 30.0
+    if kind == "shrinking":
+        return list(zip(days, [*days[1:], days[-1] + step], strict=True))
+    return list(zip([days[0] - step, *days[:-1]], days, strict=True))
 
 
 def place_strips(frame: pd.DataFrame, top: float) -> tuple[list[Strip], float]:

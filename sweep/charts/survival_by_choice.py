@@ -28,6 +28,7 @@ _INDENT = 12.0
 _LABEL = {"narrow": 112.0, "wide": 210.0}
 _BETWEEN = 14.0
 _TOP = 44.0
+_NEAR = 0.06
 
 _TIPS = {
     "axis": "axis",
@@ -174,18 +175,22 @@ def _ground(
 ) -> list[alt.Chart]:
     """Draw what stands behind the rows: group names, the share's ticks, the overall line."""
     x = _scale("share", track)
-    ticks = [
+    ticks: list[dict[str, Any]] = [
         {"y": _TOP - 8, "y2": arranged.height, "share": share, "text": f"{round(100 * share)}%"}
         for share in (0.0, 0.5, 1.0)
     ]
     layers = marks.strokes(ticks, height, x, colour="#E3E6E6", tall=True)
-    layers += marks.texts(
-        [tick | {"y": _TOP - 15} for tick in ticks], height, x, align="center", colour=QUIET
-    )
+    named = [
+        tick | {"y": _TOP - 15}
+        for tick in ticks
+        # A tick under the overall line would be struck through; the line has its own label.
+        if counts.headline is None or abs(tick["share"] - counts.headline) > _NEAR
+    ]
+    layers += marks.texts(named, height, x, align="center", colour=QUIET)
     heads = [{"y": group.middle, "text": group.text} for group in arranged.groups]
     layers += marks.texts(heads, height, 0, bold=True)
     lines = [{"y": group.bottom - 1} for group in arranged.groups]
-    layers += marks.strokes(lines, height, 0, across, colour=HAIRLINE, width=0.6)
+    layers += marks.strokes(lines, height, 1, across - 1, colour=HAIRLINE, width=0.6)
     if counts.headline is not None:
         line = [{"y": _TOP - 23, "y2": arranged.height, "share": counts.headline}]
         layers += marks.strokes(line, height, x, colour=INK, width=0.9, tall=True)

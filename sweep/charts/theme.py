@@ -13,6 +13,7 @@ __all__ = [
     "ABSENT",
     "BASELINE",
     "BODY",
+    "EDGE",
     "FAILS",
     "FONT",
     "HAIRLINE",
@@ -48,7 +49,13 @@ TINTS = ("#F6E7C6", "#C9D3B2", "#86B0A2", "#41858A", "#0B5A5E")
 FONT = "Liberation Sans, Arial, Helvetica, sans-serif"
 
 _MILLIMETRE = 96 / 25.4
-WIDTHS = {"narrow": round(85 * _MILLIMETRE), "wide": round(175 * _MILLIMETRE)}
+
+# Blank edge of a figure, so that no glyph is cut; the widths are those inside it.
+EDGE = 2
+WIDTHS = {
+    "narrow": round(85 * _MILLIMETRE) - 2 * EDGE,
+    "wide": round(175 * _MILLIMETRE) - 2 * EDGE,
+}
 
 
 def points(size: float) -> float:
@@ -59,7 +66,7 @@ def points(size: float) -> float:
     >>> points(9)
     12.0
     """
-    return round(size * 96 / 72, 2)
+    return size * 96 / 72
 
 
 TITLE = points(9)

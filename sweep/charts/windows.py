@@ -83,9 +83,9 @@ def _subtitle(context: Context, strips: list[Strip], total: int) -> str:
     ]
     if moving:
         words.append(
-            "Moving windows: a cell starts at the window's last date (shrinking windows: first "
-            "date); below, the median p-value across specifications with its quartiles, on a log "
-            "scale, dashed line at the level. Neighbouring windows share most of their data."
+            "Moving windows: a cell ends at the window's last date (shrinking windows: starts at "
+            "the first); below, the median p-value across specifications with its quartiles, on a "
+            "log scale, dashed line at the level. Neighbouring windows share most of their data."
         )
     if any(not strip.moving for strip in strips):
         words.append("Fixed windows: a bar from the first to the last date.")
@@ -235,11 +235,11 @@ def _values(
     ticks: list[dict[str, Any]] = []
     for number, strip in enumerate(panels):
         run = 0
-        for row, (start, end) in zip(strip.records, strip.spans, strict=True):
+        for row, span in zip(strip.records, strip.spans, strict=True):
             if missing(row["median_p"]):
                 run += 1
                 continue
-            path, day = f"{number}.{run}", start if len(strip.spans) > 1 else (start + end) / 2
+            path, day = f"{number}.{run}", strip.day(span)
             bands.append(
                 {"path": path, "day": day, "y": strip.y(row["p_low"]), "y2": strip.y(row["p_high"])}
             )

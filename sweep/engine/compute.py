@@ -226,8 +226,11 @@ class _Sheet:
             p_value = student_tail(value / error, freedom[:, None])
         self.coefficients.append(
             LagCoefficients(
-                np.repeat(self.task.row[rows], q), np.full(count * q, turned),
-                np.tile(np.arange(1, q + 1), count), value.reshape(-1), error.reshape(-1),
+                np.repeat(self.task.row[rows], q),
+                np.full(count * q, turned),
+                np.tile(np.arange(1, q + 1), count),
+                value.reshape(-1),
+                error.reshape(-1),
                 p_value.reshape(-1),
             )  # fmt: skip
         )

@@ -72,7 +72,9 @@ def _lost_rows(plan: Plan, calendar: Calendar) -> int:
     for choice in plan.axes["transformation"]:
         assert isinstance(choice, TransformationChoice)
         names = {choice.default, *(name for _, name in choice.series)}
-        lost.append(max(TRANSFORMS[n].offsets(calendar.frequency, choice.horizon)[-1] for n in names))
+        lost.append(
+            max(TRANSFORMS[n].offsets(calendar.frequency, choice.horizon)[-1] for n in names)
+        )
     return min(lost)
 
 

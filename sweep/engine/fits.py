@@ -68,7 +68,15 @@ class Equation:
         """What equations with the same regressors have in common."""
         own, _, given = self.orders
         shared = () if own == given else (self.effect,)
-        return (self.cause, self.modelled, self.exogenous, self.orders, self.start, self.term, shared)
+        return (
+            self.cause,
+            self.modelled,
+            self.exogenous,
+            self.orders,
+            self.start,
+            self.term,
+            shared,
+        )
 
     def reach(self) -> dict[int, int]:
         """Return the largest lag of every series."""
@@ -199,9 +207,7 @@ class FitBook:
         robust: dict[str, RobustFit] = {}
         names = sorted(request.covariances - {"classical"})
         if names:
-            robust = robust_stack(
-                moments, windows, layout, equation.start, regression, fit, names
-            )
+            robust = robust_stack(moments, windows, layout, equation.start, regression, fit, names)
         for position, effect in enumerate(effects):
             key = Equation(
                 effect, equation.cause, equation.modelled, equation.exogenous, equation.orders,
@@ -267,9 +273,7 @@ class FitBook:
             coefficient_sum=wide(fit.coefficient_sum[:, position] * unit),
             errors=errors,
             robust_wald={name: wide(result.wald[:, position]) for name, result in robust.items()},
-            standardised_sum=wide(
-                fit.coefficient_sum[:, position] * fit.spread_ratio[:, position]
-            ),
+            standardised_sum=wide(fit.coefficient_sum[:, position] * fit.spread_ratio[:, position]),
             solver=wide(fit.solver, 0).astype(np.int64),
             reason=wide(reason, Reason.TOO_FEW_ROWS).astype(np.int64),
             exact_row=exact,

@@ -88,9 +88,7 @@ def _columns(prepared: Prepared, finding: Finding, code: int) -> tuple[str, ...]
     return prepared.plan.columns(finding, measure)
 
 
-def _panel_tasks(
-    prepared: Prepared, members: Ints, details: NDArray[np.bool_]
-) -> Iterator[Task]:
+def _panel_tasks(prepared: Prepared, members: Ints, details: NDArray[np.bool_]) -> Iterator[Task]:
     """Cut the windows of a panel, in order of entry and position, into tasks of even cost."""
     rows = prepared.rows
     longest = int(rows.position[members].max()) + 1
@@ -151,9 +149,9 @@ def _task(
         row=members,
         system=system,
         lag=np.searchsorted(used["lags"], rows.codes["lags"][members]).astype(np.int16),
-        term=np.searchsorted(
-            used["deterministics"], rows.codes["deterministics"][members]
-        ).astype(np.int16),
+        term=np.searchsorted(used["deterministics"], rows.codes["deterministics"][members]).astype(
+            np.int16
+        ),
         procedure=np.searchsorted(used["test"], rows.codes["test"][members]).astype(np.int16),
         window=windows.window,
         coefficients=details[members],
@@ -216,9 +214,7 @@ def _window_rows(
             block[here] = entry * 2**32 + number
             for b in np.unique(number).tolist():
                 spans[entry * 2**32 + b] = _block_span(positions, b, _block_limit(choice))
-    return _Windows(
-        first, last, tuple(episodes), block, spans, window.reshape(-1).astype(np.int32)
-    )
+    return _Windows(first, last, tuple(episodes), block, spans, window.reshape(-1).astype(np.int32))
 
 
 def _block_span(positions: Positions, block: int, limit: int) -> tuple[int, int]:

@@ -54,7 +54,9 @@ class OrderBook:
 
     def __init__(self, panel: TaskPanel) -> None:
         self._panel = panel
-        self._tables: dict[object, tuple[Ints, dict[int, tuple[Ints, NDArray[np.float64], Ints]]]] = {}
+        self._tables: dict[
+            object, tuple[Ints, dict[int, tuple[Ints, NDArray[np.float64], Ints]]]
+        ] = {}
 
     def resolve(self, system: System, choice: LagChoice, term: int, windows: Ints) -> Orders:
         """Return the orders of a choice for the equation of ``system.effect``.
@@ -171,9 +173,7 @@ class OrderBook:
         start = max(start, common)
         gram = moments.gram(windows, layout, start)
         exogenous = [layout.at(c, lag) for c, lags in system.exogenous for lag in range(lags + 1)]
-        lagged = [
-            layout.at(c, lag) for lag in range(1, maximum + 1) for c in system.modelled
-        ]
+        lagged = [layout.at(c, lag) for lag in range(1, maximum + 1) for c in system.modelled]
         equations = system.modelled if effect < 0 else (effect,)
         current = [layout.at(c, 0) for c in equations]
         order = np.concatenate([columns, np.array([*exogenous, *lagged, *current], np.int64)])

@@ -87,9 +87,7 @@ class TaskPanel:
         return WindowRows(values, term_columns(terms, context), exists)
 
 
-def _block_terms(
-    task: Task, terms: Sequence[Term], span: tuple[int, int], period: float
-) -> Floats:
+def _block_terms(task: Task, terms: Sequence[Term], span: tuple[int, int], period: float) -> Floats:
     low, high = span
     context = TermContext(
         np.arange(task.values.shape[0]), task.season, task.seasons, (low + high) / 2,
@@ -143,9 +141,7 @@ def window_values(task: Task, w: int) -> tuple[Floats, NDArray[np.bool_]]:
             if inside[first : last + 1].any() and transform.name == "Hodrick-Prescott cycle":
                 values[:, j] = np.nan  # the whole window is not applicable
             else:
-                values[:, j] = transform.apply(
-                    cut, task.frequency, scale.smoothing, scale.horizon
-                )
+                values[:, j] = transform.apply(cut, task.frequency, scale.smoothing, scale.horizon)
             exists[:, j] = np.isfinite(values[:, j])
     return values, exists
 

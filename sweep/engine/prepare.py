@@ -3,7 +3,8 @@
 from __future__ import annotations
 
 from collections.abc import Iterator, Mapping
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
+from pathlib import Path
 
 import numpy as np
 from numpy.typing import NDArray
@@ -33,7 +34,7 @@ from sweep.plan.choices import (
 from sweep.plan.expand import FindingPositions, PlanRows, expand_plan
 from sweep.plan.model import Finding, Plan, scale_of
 
-__all__ = ["Prepared", "prepare", "terms_of"]
+__all__ = ["Prepared", "prepare", "terms_of", "with_data"]
 
 MAXIMUM_ROWS = 20_000_000
 
@@ -98,6 +99,12 @@ def prepare(plan: Plan) -> Prepared:
     keys = tuple(data_digest(dataset, sorted(_columns(plan, f))) for f in plan.findings)
     notes = (*plan.notes, *_window_notes(plan, windows), *_measure_notes(dataset))
     return Prepared(plan, dataset, windows, rows, keys, terms, notes)
+
+
+def with_data(plan: Plan, path: Path) -> Plan:
+    """Return the plan with its data file at another path."""
+    data = plan.document.data.model_copy(update={"file": str(path.resolve())})
+    return replace(plan, document=plan.document.model_copy(update={"data": data}))
 
 
 def _unique(faults: list[Fault]) -> list[Fault]:
@@ -187,9 +194,7 @@ def _windows(
     return tuple(result)
 
 
-def _terms(
-    plan: Plan, calendar: Calendar, faults: list[Fault]
-) -> dict[int, tuple[Term, ...]]:
+def _terms(plan: Plan, calendar: Calendar, faults: list[Fault]) -> dict[int, tuple[Term, ...]]:
     found = {}
     for code, choice in enumerate(plan.axes["deterministics"]):
         assert isinstance(choice, DeterministicChoice)
@@ -219,9 +224,7 @@ def terms_of(choice: DeterministicChoice, calendar: Calendar) -> tuple[Term, ...
     return tuple(terms)
 
 
-def _covered(
-    windows: tuple[Mapping[int, Positions], ...], count: int
-) -> list[tuple[int, int]]:
+def _covered(windows: tuple[Mapping[int, Positions], ...], count: int) -> list[tuple[int, int]]:
     """Return the runs of rows that no window of any finding uses."""
     used = np.zeros(count, bool)
     for found in windows:
@@ -237,9 +240,7 @@ def _covered(
     return [(int(run[0]), int(run[-1])) for run in runs]
 
 
-def _tokens(
-    plan: Plan, windows: Mapping[int, Positions], calendar: Calendar
-) -> FindingPositions:
+def _tokens(plan: Plan, windows: Mapping[int, Positions], calendar: Calendar) -> FindingPositions:
     counts, tokens = {}, {}
     for code, positions in windows.items():
         choice = plan.axes["window"][code]
@@ -270,9 +271,7 @@ def _check_size(plan: Plan, positions: list[FindingPositions]) -> None:
         )  # fmt: skip
 
 
-def _window_notes(
-    plan: Plan, windows: tuple[Mapping[int, Positions], ...]
-) -> list[str]:
+def _window_notes(plan: Plan, windows: tuple[Mapping[int, Positions], ...]) -> list[str]:
     """Name window choices that come down to the same rows."""
     notes: dict[str, None] = {}
     for found in windows:

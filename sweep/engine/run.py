@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-import os
+
 import time
 from collections.abc import Callable
 from dataclasses import dataclass
@@ -12,6 +12,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from store.database import open_writing
+from sweep.engine.check import default_jobs
 from sweep.engine.group import make_tasks
 from sweep.engine.prepare import Prepared
 from sweep.engine.sink import StoreSink
@@ -106,7 +107,7 @@ def run_prepared(
         If the store is locked, damaged or of another version.
     """
     began = time.monotonic()
-    jobs = jobs or len(os.sched_getaffinity(0)) if hasattr(os, "sched_getaffinity") else jobs or 1
+    jobs = jobs or default_jobs()
     with open_writing(store) as database:
         try:
             sink = StoreSink(database, prepared)
@@ -124,7 +125,8 @@ def run_prepared(
             failed, seconds,
         )  # fmt: skip
         sink.finish(
-            seconds, {"computed": report.computed, "reused": reused, "stored": stored, "ruled": ruled}
+            seconds,
+            {"computed": report.computed, "reused": reused, "stored": stored, "ruled": ruled},
         )
     return report
 

@@ -174,7 +174,12 @@ class StoreSink:
         return records
 
     def _weight(self, finding: Finding, axis: str, code: int, choice: Choice) -> float:
-        """Return a choice's part of the headline weight (fixed by the plan)."""
+        """Return a choice's part of the headline weight, fixed by the plan.
+
+        Designs that change few choices at a time have no pooled share: their weights are 0.
+        """
+        if self.prepared.plan.document.sweep.design in ("one change", "two changes"):
+            return 0.0
         plan, rows = self.prepared.plan, self.prepared.rows
         if isinstance(choice, ProcedureChoice):
             held = plan.finding_axes[finding.number]["test"].codes
@@ -282,6 +287,7 @@ def _empty(count: int, status: Status) -> dict[str, NDArray[Any]]:
 
 
 def _data_note(prepared: Prepared) -> dict[str, Any]:
+    """Return what a reader must know of the data; no path beyond what the plan says."""
     data, dataset = prepared.plan.document.data, prepared.dataset
     calendar = dataset.calendar
     return {
@@ -293,8 +299,8 @@ def _data_note(prepared: Prepared) -> dict[str, Any]:
         "rows": len(calendar),
         "first": calendar.label(0),
         "last": calendar.label(len(calendar) - 1),
-        "series": list(dataset.names),
-        "notes": list(prepared.notes),
+        "series": ", ".join(dataset.names),
+        "same numbers": list(prepared.notes),
     }
 
 

@@ -131,9 +131,9 @@ def choose_order(
     if criterion == "sequential LR":
         chosen = _general_to_specific(log_determinant, observations, width * equations, level)
     else:
-        table = criterion_table(
-            log_determinant, observations, fixed, width, equations, criterion
-        )[:, 1:]
+        table = criterion_table(log_determinant, observations, fixed, width, equations, criterion)[
+            :, 1:
+        ]
         table = np.where(np.isfinite(table), table, np.inf)
         chosen = table.argmin(axis=1) + 1
     return np.where(np.isfinite(log_determinant).all(axis=1), chosen, 0).astype(np.int64)

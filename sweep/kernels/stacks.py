@@ -20,7 +20,16 @@ import numpy as np
 
 from sweep.kernels.layout import Floats, Gram, Ints, Layout, Moments
 
-__all__ = ["Factor", "Flag", "Regression", "Solver", "StackFit", "factorise", "fit_stack", "forward"]
+__all__ = [
+    "Factor",
+    "Flag",
+    "Regression",
+    "Solver",
+    "StackFit",
+    "factorise",
+    "fit_stack",
+    "forward",
+]
 
 EPSILON = float(np.finfo(np.float64).eps)
 QR_TRIGGER = 1e-11
@@ -290,9 +299,9 @@ def _redo_by_qr(
         upper = np.linalg.qr(matrix, mode="r")
         diagonal = np.einsum("wcc->wc", upper)
         norms = np.sqrt((matrix**2).sum(axis=1))
-        lower[members[inside]] = (
-            upper * np.where(diagonal < 0, -1.0, 1.0)[:, :, None]
-        ).transpose(0, 2, 1)
+        lower[members[inside]] = (upper * np.where(diagonal < 0, -1.0, 1.0)[:, :, None]).transpose(
+            0, 2, 1
+        )
         pivots[members[inside]] = np.abs(diagonal) / np.where(norms > 0, norms, 1.0)
 
 
@@ -354,7 +363,6 @@ def forward(lower: Floats, right: Floats) -> Floats:
         known = np.einsum("wi,wi->w", lower[:, j, :j], solution[:, :j])
         solution[:, j] = (right[:, j] - known) / lower[:, j, j]
     return solution
-
 
 
 def _inverse(lower: Floats, fine: np.ndarray) -> Floats:

@@ -93,7 +93,9 @@ class _Builder:
         """Build an axis that is the same for every finding."""
         plural, singular = AXIS_KEYS[axis]
         table = self.axes[axis]
-        found = self.choices(axis, getattr(self.document.baseline, singular), f"baseline.{singular}")
+        found = self.choices(
+            axis, getattr(self.document.baseline, singular), f"baseline.{singular}"
+        )
         if len(found) > 1:
             self.fault(f"baseline.{singular}", "a split names two windows; the baseline is one")
         baseline = found[0] if found else None
@@ -192,9 +194,15 @@ class _Builder:
             names.add(table.name)
             result.append(
                 Finding(
-                    number, table.name, table.cause, table.effect, tuple(table.given),
+                    number,
+                    table.name,
+                    table.cause,
+                    table.effect,
+                    tuple(table.given),
                     tuple(Exogenous(item.series, item.lags) for item in table.exogenous),
-                    table.claim, SIGNS[table.sign], SIGNS[table.reverse_sign],
+                    table.claim,
+                    SIGNS[table.sign],
+                    SIGNS[table.reverse_sign],
                 )  # fmt: skip
             )
         return tuple(result)
@@ -355,16 +363,22 @@ def _check_baseline(plan: Plan) -> None:
     window = plan.axes["window"][plan.finding_axes[0]["window"].baseline]
     if getattr(window, "moving", ""):
         raise InputFault(
-            Fault("baseline.window", "the baseline is one specification, and a moving window is many",
-                  "Choose a fixed window.")  # fmt: skip
+            Fault(
+                "baseline.window",
+                "the baseline is one specification, and a moving window is many",
+                "Choose a fixed window.",
+            )  # fmt: skip
         )
     for finding, axes in zip(plan.findings, plan.finding_axes, strict=True):
         for number, rule in enumerate(plan.rules, start=1):
             applies = rule.finding in (None, finding.number)
             if applies and all(axes[axis].baseline in codes for axis, codes in rule.codes.items()):
                 raise InputFault(
-                    Fault(f"rule_out[{number}]", f'rules out the baseline of "{finding.name}"',
-                          "Narrow the rule or change the baseline.")  # fmt: skip
+                    Fault(
+                        f"rule_out[{number}]",
+                        f'rules out the baseline of "{finding.name}"',
+                        "Narrow the rule or change the baseline.",
+                    )  # fmt: skip
                 )
 
 

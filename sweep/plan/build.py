@@ -76,7 +76,7 @@ def _criterion_choice(entry: LagTable, common: int, frequency: Frequency) -> Lag
     maximum = entry.maximum or frequency.criterion_maximum
     if common and common < maximum:
         raise ValueError(
-            f'the common order {common} is smaller than the criterion\'s maximum {maximum}'
+            f"the common order {common} is smaller than the criterion's maximum {maximum}"
         )
     meaning: dict[str, Any] = {"criterion": criterion}
     label = criterion

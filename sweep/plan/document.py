@@ -188,7 +188,8 @@ class SweepTable(Table):
 
     design: anything_of(SampleDesign, Literal["full", "one change", "two changes"]) = "full"  # type: ignore[valid-type]
     coefficients: Literal["baseline", "fixed windows", "all", "none"] = Field(
-        default="fixed windows", description="For which specifications each lag's coefficient is kept."
+        default="fixed windows",
+        description="For which specifications each lag's coefficient is kept.",
     )
 
 

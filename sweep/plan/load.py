@@ -137,4 +137,3 @@ def _place(location: tuple[int | str, ...]) -> str:
         elif not str(part).startswith("~"):
             text += f".{part}" if text else str(part)
     return text or "the plan"
-

@@ -121,7 +121,9 @@ class Table(BaseModel):
         context.pop("error", None)
         inner = context.pop("kind", kind)
         return InitErrorDetails(
-            type=PydanticCustomError("crosswind", "{text}", {"text": text, "kind": inner, **context}),
+            type=PydanticCustomError(
+                "crosswind", "{text}", {"text": text, "kind": inner, **context}
+            ),
             loc=item["loc"],
             input=item["input"],
         )
@@ -277,7 +279,9 @@ class ProcedureTable(Named):
     @model_validator(mode="after")
     def _fits(self) -> ProcedureTable:
         if self.covariance != "classical" and self.statistic not in ("F", "Wald"):
-            _refuse(f"{self.statistic} has no form with covariance {self.covariance}; use F or Wald")
+            _refuse(
+                f"{self.statistic} has no form with covariance {self.covariance}; use F or Wald"
+            )
         if self.divisor == "T" and (self.statistic != "Wald" or self.covariance != "classical"):
             _refuse('divisor = "T" belongs to the classical Wald statistic')
         return self

@@ -9,14 +9,22 @@ from typing import TYPE_CHECKING, Any
 
 from sweep.charts.context import Context, baseline_record, context_of
 from sweep.verdicts import directions, effects, flips, reproduction, survival
-from sweep.verdicts.words import missing, percent
+from sweep.verdicts.words import joined, missing, percent
 
 from .notes import CAUTIONS, METHOD_NOTES, Note
 
 if TYPE_CHECKING:
     import pandas as pd
 
-__all__ = ["FRAMES", "FindingContent", "ReportContent", "content_of", "sizes", "summary"]
+__all__ = [
+    "FRAMES",
+    "FindingContent",
+    "ReportContent",
+    "content_of",
+    "first_lines",
+    "sizes",
+    "summary",
+]
 
 # Every frame that a report reads, named as the functions of ``store.read``.
 FRAMES = (
@@ -95,6 +103,23 @@ class ReportContent:
     plan_toml: str = ""
     notes: tuple[Note, ...] = METHOD_NOTES
     cautions: tuple[str, ...] = CAUTIONS
+
+
+def first_lines(report: ReportContent) -> list[tuple[str, str]]:
+    """Return the report's first lines, on whether each baseline gives the printed numbers.
+
+    Returns
+    -------
+    list of (names, sentence)
+        One line for each finding that has printed numbers, one for all others together; the
+        names are empty in a report on a single finding.
+    """
+    found = [(one.context.finding, one.reproduction) for one in report.findings]
+    lines = [(name, said.sentence) for name, said in found if said.reproduced is not None]
+    others = [(name, said.sentence) for name, said in found if said.reproduced is None]
+    if others:
+        lines.append((joined(name for name, _ in others), others[0][1]))
+    return lines if len(report.findings) > 1 else [("", sentence) for _, sentence in lines]
 
 
 def summary(finding: FindingContent) -> list[str]:

@@ -17,7 +17,7 @@ from sweep.charts.render import language_version, specification, svg
 from sweep.verdicts.survival import axis_sentences
 from sweep.verdicts.words import level_text
 
-from .content import FindingContent, ReportContent, sizes, summary
+from .content import FindingContent, ReportContent, first_lines, sizes, summary
 from .tables import TABLES
 from .tables.writers import as_html
 
@@ -92,14 +92,14 @@ def _figures(finding: FindingContent, first: int) -> list[Figure]:
     found = []
     for number, name in enumerate(CHARTS, start=first):
         module = chart(name)
-        drawn = module.build(finding.frames, finding.context, "wide")
+        plain = specification(module.build(finding.frames, finding.context, "wide"))
         found.append(
             Figure(
                 number,
                 name,
                 module.QUESTION,
-                still(svg(drawn), number),
-                script_json(specification(drawn)),
+                still(svg(plain), number),
+                script_json(plain),
                 module.describe(finding.frames, finding.context),
             )
         )
@@ -120,7 +120,6 @@ def _sections(report: ReportContent) -> list[dict[str, Any]]:
                 "anchor": f"finding-{number}",
                 "name": finding.context.finding,
                 "statement": finding.context.statement,
-                "reproduction": finding.reproduction,
                 "summary": summary(finding),
                 "by_axis": axis_sentences(finding.frames["survival"]),
                 "sizes": sizes(finding),
@@ -157,6 +156,7 @@ def page(report: ReportContent) -> str:
     script = Markup((folder / "page.js").read_text(encoding="utf-8"))
     return environment.get_template("template.html.j2").render(
         report=report,
+        first_lines=first_lines(report),
         level=level_text(report.significance),
         sections=_sections(report),
         style=style,

@@ -28,7 +28,9 @@ class Screen(Protocol):
         ...
 
 
-SCREENS: dict[str, Screen] = {module.NAME: cast(Screen, module) for module in (enough_observations,)}
+SCREENS: dict[str, Screen] = {
+    module.NAME: cast(Screen, module) for module in (enough_observations,)
+}
 
 
 def mask_of(names: Iterable[str]) -> int:

@@ -15,10 +15,10 @@ __all__ = ["VERDICTS", "sentence", "totals"]
 VERDICTS = ("one way", "reverse", "both ways", "neither rejected", "undetermined")
 
 _WORDS = {
-    "one way": "only cause to effect is rejected",
-    "reverse": "only effect to cause is rejected",
-    "both ways": "both directions are rejected",
-    "neither rejected": "neither direction is rejected",
+    "one way": "only cause to effect is significant",
+    "reverse": "only effect to cause is significant",
+    "both ways": "both directions are significant",
+    "neither rejected": "neither direction is significant",
     "undetermined": "a direction could not be estimated",
 }
 

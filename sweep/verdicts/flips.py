@@ -64,9 +64,10 @@ def single_sentence(single_changes: pd.DataFrame, baseline_survives: Any, limit:
     named = joined(change_words(row) for _, row in rows.head(limit).iterrows())
     more = f", and {len(rows) - limit:,} more" if len(rows) > limit else ""
     verbs = f"{verb}s" if len(rows) == 1 else verb
+    moving = " (moving windows: in at least one position)" if (rows["positions"] > 1).any() else ""
     return (
-        f"{len(rows):,} of {counted(len(tried), 'single change')} {verbs} the finding "
-        f"(moving windows: in at least one position): {named}{more}."
+        f"{len(rows):,} of {counted(len(tried), 'single change')} {verbs} the finding{moving}: "
+        f"{named}{more}."
     )
 
 

@@ -61,13 +61,15 @@ class Reproduction:
 def rounding(reported: float) -> float:
     """Return half a unit of the last decimal in which a number is given.
 
+    At least two decimals are taken as printed, since 4.00 arrives as 4.
+
     Examples
     --------
-    >>> rounding(3.42), rounding(0.1)
-    (0.005, 0.05)
+    >>> rounding(3.42), rounding(0.1), rounding(0.0336)
+    (0.005, 0.005, 5e-05)
     """
     exponent = Decimal(repr(float(reported))).normalize().as_tuple().exponent
-    return 0.5 * 10.0 ** min(int(exponent), 0)
+    return float(Decimal(5).scaleb(min(int(exponent), -2) - 1))
 
 
 def _differences(baseline: Mapping[str, Any], finding: Mapping[str, Any]) -> list[Difference]:
@@ -81,7 +83,9 @@ def _differences(baseline: Mapping[str, Any], finding: Mapping[str, Any]) -> lis
         if missing(reported):
             continue
         given = float(str(reported))
-        allowed = rounding(given) if missing(tolerance) else float(str(tolerance))
+        allowed = rounding(given)
+        if not missing(tolerance):
+            allowed = max(allowed, float(str(tolerance)))
         computed = baseline[computed_name]
         value = math.nan if missing(computed) else float(computed)
         found.append(Difference(quantity, given, value, allowed))
@@ -103,8 +107,8 @@ def compare(baseline: Mapping[str, Any], finding: Mapping[str, Any]) -> Reproduc
     finding : mapping
         The finding with ``reported_statistic``, ``reported_p_value``,
         ``reported_observations`` and ``reported_tolerance``, any of them None.  The tolerance
-        is absolute and holds for statistic and p-value; without one, a number agrees if it
-        rounds to the printed one.  Observations must be equal.
+        is absolute and holds for statistic and p-value; a number that rounds to the printed
+        one agrees in any case.  Observations must be equal.
     """
     differences = _differences(baseline, finding)
     if not differences:

@@ -181,9 +181,12 @@ def losses_sentence(counts: Counts) -> str:
     ]
     parts = [f"{count:,} {name}" for count, name in losses if count]
     if not parts:
+        if counts.planned == 1:
+            return "The 1 planned row is admissible."
         return f"All {counted(counts.planned, 'planned row')} are admissible."
+    verb = "is" if counts.admissible == 1 else "are"
     return (
-        f"Of {counted(counts.planned, 'planned row')}, {counts.admissible:,} are admissible; "
+        f"Of {counted(counts.planned, 'planned row')}, {counts.admissible:,} {verb} admissible; "
         f"left out: {joined(parts)}."
     )
 

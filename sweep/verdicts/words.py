@@ -118,7 +118,7 @@ def number(value: float | None, digits: int = 3) -> str:
         return MISSING
     if value == 0:
         return "0"
-    size = abs(value)
+    size = float(f"{abs(value):.{digits - 1}e}")  # rounded, so that 99.95 counts as 100
     if size >= 10 ** (digits - 1):
         text = f"{value:,.0f}"
     elif size >= 1e-4:

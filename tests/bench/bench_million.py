@@ -8,6 +8,7 @@ summarised once.  Screens: ``require = ["enough observations"]``.
 from __future__ import annotations
 
 import json
+import sys
 from pathlib import Path
 
 import measuring
@@ -38,7 +39,7 @@ def test_million(tmp_path: Path) -> None:
     script = tmp_path / "million.py"
     script.write_text(SCRIPT, encoding="utf-8")
     store = tmp_path / "million.duckdb"
-    command = [*measuring.python("")[:1], str(script), str(plan), str(store), str(measuring.CORES)]
+    command = [sys.executable, str(script), str(plan), str(store), str(measuring.CORES)]
     measured = measuring.run_measured(command, tmp_path)
     counts = json.loads(measured.output.strip().splitlines()[-1])
     assert counts["planned"] >= 1_000_000

@@ -9,6 +9,7 @@ import pytest
 
 def pytest_collect_file(file_path: Path, parent: pytest.Collector) -> pytest.Module | None:
     asked = "bench" in (parent.config.option.markexpr or "")
-    if asked and file_path.suffix == ".py" and file_path.name.startswith("bench_"):
+    given = parent.session.isinitpath(file_path)  # named on the command line: collected anyway
+    if asked and not given and file_path.suffix == ".py" and file_path.name.startswith("bench_"):
         return pytest.Module.from_parent(parent, path=file_path)
     return None

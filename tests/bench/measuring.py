@@ -8,7 +8,6 @@ from __future__ import annotations
 
 import os
 import subprocess
-import sys
 import threading
 import time
 from collections.abc import Callable, Sequence
@@ -21,6 +20,7 @@ import pandas as pd
 
 ROWS = 800
 CORES = 2
+ROOT = Path(__file__).resolve().parents[2]
 SERIES = ("x", "y", "z")
 TRENDS = {"constant": "c", "linear trend": "ct", "quadratic trend": "ctt"}
 
@@ -58,14 +58,15 @@ given = ["x"]
 """
 
 
-def write_plan(folder: Path, axes: str, findings: str = FINDINGS) -> Path:
+def write_plan(folder: Path, axes: str, rows: int = ROWS) -> Path:
     """Write the drawn data and a plan over them; return the plan's path."""
-    drawn().to_csv(folder / "drawn.csv", index=False)
+    folder.mkdir(exist_ok=True)
+    drawn(rows).to_csv(folder / "drawn.csv", index=False)
     plan = folder / "plan.toml"
     plan.write_text(
         'title = "Measurement"\n\n'
         '[data]\nfile = "drawn.csv"\ndate = "date"\nfrequency = "monthly"\n'
-        f"{findings}\n"
+        f"{FINDINGS}\n"
         '[baseline]\nlags = 1\ndeterministics = "constant"\nwindow = "full sample"\n'
         'transformation = "level"\ntest = "F"\n\n'
         f"[axes]\n{axes}\n\n"
@@ -114,7 +115,12 @@ def run_measured(command: Sequence[str], folder: Path, every: float = 0.05) -> M
     start = time.perf_counter()
     with (folder / "stderr.txt").open("w+", encoding="utf-8") as errors:
         process = subprocess.Popen(
-            command, stdout=subprocess.PIPE, stderr=errors, cwd=folder, text=True
+            command,
+            stdout=subprocess.PIPE,
+            stderr=errors,
+            cwd=folder,
+            text=True,
+            env=os.environ | {"PYTHONPATH": str(ROOT)},  # this tree, installed or not
         )
         peak = [0.0]
         done = threading.Event()
@@ -162,11 +168,6 @@ def _proportional(pid: int) -> float:
         if line.startswith("Pss:"):
             return int(line.split()[1]) / 1024**2
     return 0.0
-
-
-def python(script: str, *arguments: str) -> list[str]:
-    """Return the command that runs a script in a fresh interpreter."""
-    return [sys.executable, "-c", script, *arguments]
 
 
 def say(*lines: str) -> None:

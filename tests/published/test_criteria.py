@@ -18,17 +18,29 @@ from scipy.stats import chi2
 CRITERIA = {"AIC": "aic_withdet", "BIC": "bic_withdet", "HQ": "hq_withdet", "FPE": "fpe"}
 
 
-def chosen_orders(folder: Path, case: dict[str, Any], lags: list[Any]) -> pd.DataFrame:
-    """Run a case with criteria as its lag choices; rows by label and deterministic terms."""
+EQUATION = ("AIC", "BIC", "HQ")
+
+
+@pytest.fixture(scope="module", params=plans.CASES)
+def chosen(
+    request: pytest.FixtureRequest, tmp_path_factory: pytest.TempPathFactory
+) -> tuple[dict[str, Any], pd.DataFrame]:
+    """Run a case with every rule as a lag choice; rows by rule and deterministic terms."""
+    case = plans.reference()["cases"][request.param]
+    maximum = case["criteria_system"][0]["maximum"]
     dets = [block["det"] for block in case["criteria_system"]]
+    rules = [plans.criterion(rule, maximum) for rule in (*CRITERIA, "sequential LR")]
+    rules += [
+        plans.criterion(rule, maximum, scope="equation", name=f"{rule} of the equation")
+        for rule in EQUATION
+    ]
     axes = {
-        "lags": [1, *lags],
+        "lags": [1, *rules],
         "deterministics": [plans.DETERMINISTICS[det] for det in dets],
     }
+    folder = tmp_path_factory.mktemp(request.param)
     outcomes = plans.run_plan(folder, plans.case_plan(folder, case, axes))
-    outcomes["rule"] = outcomes["lags_choice"].astype(str)
-    outcomes["det"] = outcomes["deterministics"].astype(str)
-    return outcomes.set_index(["rule", "det"])
+    return case, outcomes.set_index(["lags_choice", "deterministics"])
 
 
 def best_from_one(block: dict[str, Any], column: str) -> int:
@@ -38,12 +50,8 @@ def best_from_one(block: dict[str, Any], column: str) -> int:
     return int(rows.loc[rows[column].idxmin(), "lag"])
 
 
-@pytest.mark.parametrize("name", plans.CASES)
-def test_system_criteria(name: str, tmp_path: Path) -> None:
-    case = plans.reference()["cases"][name]
-    maximum = case["criteria_system"][0]["maximum"]
-    lags = [plans.criterion(rule, maximum) for rule in CRITERIA]
-    outcomes = chosen_orders(tmp_path, case, lags)
+def test_system_criteria(chosen: tuple[dict[str, Any], pd.DataFrame]) -> None:
+    case, outcomes = chosen
     for block in case["criteria_system"]:
         for rule, column in CRITERIA.items():
             row = outcomes.loc[(rule, block["det"])]
@@ -52,17 +60,12 @@ def test_system_criteria(name: str, tmp_path: Path) -> None:
             assert int(row["observations"]) == case["n"] - int(row["lags"])
 
 
-@pytest.mark.parametrize("name", plans.CASES)
-def test_equation_criteria(name: str, tmp_path: Path) -> None:
+def test_equation_criteria(chosen: tuple[dict[str, Any], pd.DataFrame]) -> None:
     """With ``scope = "equation"`` the effect's own equation decides."""
-    case = plans.reference()["cases"][name]
-    maximum = case["criteria_system"][0]["maximum"]
-    rules = ("AIC", "BIC", "HQ")
-    lags = [plans.criterion(rule, maximum, scope="equation") for rule in rules]
-    outcomes = chosen_orders(tmp_path, case, lags)
+    case, outcomes = chosen
     for block in case["criteria_equation"]:
-        for rule in rules:
-            row = outcomes.loc[(rule, block["det"])]
+        for rule in EQUATION:
+            row = outcomes.loc[(f"{rule} of the equation", block["det"])]
             assert int(row["lags"]) == block["chosen"][rule.lower()], (rule, block)
 
 
@@ -76,11 +79,8 @@ def likelihood_ratio_order(block: dict[str, Any], series: int) -> int:
     return 1
 
 
-@pytest.mark.parametrize("name", plans.CASES)
-def test_sequential_likelihood_ratio(name: str, tmp_path: Path) -> None:
-    case = plans.reference()["cases"][name]
-    maximum = case["criteria_system"][0]["maximum"]
-    outcomes = chosen_orders(tmp_path, case, [plans.criterion("sequential LR", maximum)])
+def test_sequential_likelihood_ratio(chosen: tuple[dict[str, Any], pd.DataFrame]) -> None:
+    case, outcomes = chosen
     for block in case["criteria_system"]:
         row = outcomes.loc[("sequential LR", block["det"])]
         assert int(row["lags"]) == likelihood_ratio_order(block, len(case["transforms"]))

@@ -148,8 +148,8 @@ def test_own_and_cause_orders(
     series: dict[str, Array], tmp_path: Path, own: int, cause: int
 ) -> None:
     axes = {
-        "lags": [{"own": own, "cause": cause}],
-        "tests": ["F", {"test": "F", "covariance": "HC3"}],
+        "lags": [{"own": own, "cause": cause, "name": "unequal"}],
+        "tests": [plans.procedure("F"), plans.procedure("F", "HC3")],
     }
     outcomes = sweep_drawn(tmp_path, series, axes)
     longest = max(own, cause)
@@ -224,6 +224,44 @@ def test_without_an_episode(series: dict[str, Array], tmp_path: Path) -> None:
     agree(row, *by_ols(difference["y"], columns, [np.ones(len(rows))], rows))
 
 
+@pytest.mark.parametrize(
+    ("entry", "bounds"),
+    [
+        ({"rolling": 90, "step": 30}, [(0, 89), (30, 119), (60, 149), (90, 179)]),
+        ({"expanding": 90, "step": 40}, [(0, 89), (0, 129), (0, 169)]),
+        ({"shrinking": 90, "step": 40}, [(0, 179), (40, 179), (80, 179)]),
+        ({"split": "1998-07"}, [(0, 101), (102, 179)]),
+        ({"from": "1992-01", "until": "2001-12"}, [(24, 143)]),
+        ({"drop_first": 0.1, "drop_last": 0.2}, [(18, 143)]),
+    ],
+    ids=lambda value: next(iter(value)) if isinstance(value, dict) else "",
+)
+def test_windows(
+    series: dict[str, Array], tmp_path: Path, entry: dict[str, Any], bounds: list[tuple[int, int]]
+) -> None:
+    """Every position: first and last row, then the regression inside them."""
+    outcomes = sweep_drawn(
+        tmp_path, series, {"lags": [3], "windows": [entry]}, {"given": ["z"]}, {"lags": 3}
+    )
+    outcomes = outcomes[outcomes["window_name"] != "full sample"]
+    found = {
+        tuple(
+            PERIODS.index(f"{date:%Y-%m}") for date in (row["window_start"], row["window_end"])
+        ): row
+        for _, row in outcomes.iterrows()
+    }
+    assert sorted(found) == sorted(bounds)
+    for (first, last), row in found.items():
+        rows = np.arange(first + 3, last + 1)
+        columns = {
+            "cause": lagged(series["x"], 3, rows),
+            "own": lagged(series["y"], 3, rows),
+            "given": lagged(series["z"], 3, rows),
+        }
+        assert int(row["observations"]) == len(rows)
+        agree(row, *by_ols(series["y"], columns, [np.ones(len(rows))], rows))
+
+
 def logarithm(values: Array) -> Array:
     return np.log(values)
 
@@ -260,29 +298,35 @@ def test_transformations(series: dict[str, Array], tmp_path: Path, name: str) ->
     agree(outcomes.iloc[0], *by_ols(changed["y"], columns, [np.ones(len(rows))], rows))
 
 
-@pytest.mark.parametrize("trend", ["c", "ct", "ctt"])
-def test_var_criteria(series: dict[str, Array], tmp_path: Path, trend: str) -> None:
+def test_var_criteria(tmp_path: Path) -> None:
     """The order that minimises each criterion of VAR.select_order from order 1 upwards."""
     from statsmodels.tsa.api import VAR
 
-    words = {"c": "constant", "ct": "linear trend", "ctt": "quadratic trend"}
+    trends = {"constant": "c", "linear trend": "ct", "quadratic trend": "ctt"}
     keys = {"AIC": "aic", "BIC": "bic", "HQ": "hqic", "FPE": "fpe"}
-    for seed in range(8):
-        data = drawn(seed)
-        folder = tmp_path / str(seed)
-        folder.mkdir()
-        outcomes = sweep_drawn(
-            folder,
-            data,
-            {"lags": [1, *(plans.criterion(name, 10) for name in keys)]},
-            {"given": ["z"]},
-            {"deterministics": words[trend]},
-        ).set_index("lags_choice")
+    samples = {seed: drawn(seed) for seed in range(8)}
+    columns = {
+        f"{name}{seed}": values for seed, data in samples.items() for name, values in data.items()
+    }
+    plans.write_data(tmp_path / "drawn.csv", PERIODS, columns)
+    findings = [
+        {"name": str(seed), "cause": f"x{seed}", "effect": f"y{seed}", "given": [f"z{seed}"]}
+        for seed in samples
+    ]
+    axes = {
+        "lags": [1, *(plans.criterion(name, 10) for name in keys)],
+        "deterministics": [{"trend": trend, "name": short} for trend, short in trends.items()],
+    }
+    text = plans.plan_text("drawn.csv", findings, axes, frequency="monthly")
+    outcomes = plans.run_plan(tmp_path, text)
+    orders = outcomes.set_index(["effect", "lags_choice", "deterministics"])["lags"].astype(int)
+    for seed, data in samples.items():
         model = VAR(np.column_stack([data[name] for name in ("y", "x", "z")]))
-        values = model.select_order(10, trend=trend).ics
-        for name, key in keys.items():
-            theirs = 1 + int(np.argmin(values[key][1:]))
-            assert int(outcomes.loc[name, "lags"]) == theirs, name
+        for short in trends.values():
+            values = model.select_order(10, trend=short).ics
+            for name, key in keys.items():
+                theirs = 1 + int(np.argmin(values[key][1:]))
+                assert orders.loc[(f"y{seed}", name, short)] == theirs, (seed, name, short)
 
 
 def test_var_causality_statistic(series: dict[str, Array], tmp_path: Path) -> None:

@@ -30,8 +30,8 @@ def judged_rows(db: Database, sweep: int) -> pd.DataFrame:
             "records"
         )
     }
-    reasons = {code: text for code, text in db.execute("SELECT code, text FROM reason")}
-    ruled = {code: flag for code, flag in db.execute("SELECT code, ruled FROM reason")}
+    reasons = dict(db.execute("SELECT code, text FROM reason"))
+    ruled = dict(db.execute("SELECT code, ruled FROM reason"))
     screens = db.execute("SELECT bit, name FROM screen ORDER BY bit")
     raw = db.frame("SELECT * FROM outcome WHERE sweep = ?", [sweep]).astype(object)
     rows = []

@@ -94,7 +94,7 @@ def test_a_missing_file_or_folder_is_bad_usage(tmp_path: Path) -> None:
     with pytest.raises(StoreMissing, match="no store here") as caught:
         store.database.open_reading(tmp_path / "none.duckdb")
     assert caught.value.exit_code == 2
-    with pytest.raises(StoreMissing, match="folder .* does not exist"):
+    with pytest.raises(StoreMissing, match=r"folder .* does not exist"):
         store.database.open_writing(tmp_path / "no" / "none.duckdb")
     assert list(tmp_path.iterdir()) == []
 
@@ -135,7 +135,7 @@ def test_a_store_of_another_schema(path: Path, open_: object) -> None:
     with duckdb.connect(str(path)) as connection:
         connection.execute("UPDATE meta SET schema_version = 99")
     before = path.read_bytes()
-    with pytest.raises(OtherSchema, match="has schema 99, .* reads schema 1") as caught:
+    with pytest.raises(OtherSchema, match=r"has schema 99, .* reads schema 1") as caught:
         open_(path)  # type: ignore[operator]
     assert caught.value.exit_code == 5
     assert path.read_bytes() == before
@@ -191,10 +191,10 @@ def test_a_copy_opens_under_another_name(path: Path) -> None:
 
 def test_a_transaction_is_undone_on_any_exception(path: Path) -> None:
     with store.database.open_writing(path) as db:
-        with pytest.raises(KeyboardInterrupt), db.transaction():
+        with pytest.raises(KeyboardInterrupt), db.transaction():  # noqa: PT012
             db.execute("INSERT INTO event VALUES (NULL, NULL, 'x', 'y')")
             raise KeyboardInterrupt
-        with pytest.raises(duckdb.ConversionException), db.transaction():
+        with pytest.raises(duckdb.ConversionException), db.transaction():  # noqa: PT012
             db.execute("INSERT INTO event VALUES (NULL, NULL, 'x', 'y')")
             db.execute("INSERT INTO event SELECT 'no date', NULL, 'x', 'y'")
         assert db.scalar("SELECT count(*) FROM event") == 0

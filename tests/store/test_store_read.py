@@ -265,9 +265,9 @@ def test_design_columns_are_there(filled: Filled) -> None:
     conditioning measures lags observations statistic df_num df_den p_value coefficient_sum
     coefficient_sum_se signed_partial_r2 standardised_sum reverse_statistic reverse_p_value request
     computation solver reverse_status status reason admissible failed_screens survives verdict
-    is_baseline""".split()
+    is_baseline"""
     view = filled.db.frame("SELECT * FROM outcomes LIMIT 0")
-    assert [name for name in expected if name not in view.columns] == []
+    assert set(expected.split()) <= set(view.columns)
 
 
 @pytest.mark.parametrize("where", ["1) OR (1", "1; DROP TABLE meta", "p_value < 0.1 --", "'", ""])

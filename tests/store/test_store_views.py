@@ -9,7 +9,7 @@ import pandas as pd
 import plain_twin
 import pytest
 from conftest import RULES, fill
-from store_samples import LABELS
+from store_samples import LABELS, finding, outcomes, planned, sample
 
 import store.database
 from store import read
@@ -100,3 +100,28 @@ def test_sweeps_are_counted_apart(tmp_path: Path) -> None:
         other = read.survival(db, second)
     assert (other["planned"] == alone["planned"]).all()
     assert (other["survived"] != alone["survived"]).any()
+
+
+def test_shares_have_the_same_digits_whatever_the_threads(tmp_path: Path) -> None:
+    with store.database.create(tmp_path / "x.duckdb", threads=1) as db:
+        sweep = fill(db, 6).sweep
+        expected = read.survival(db, sweep)
+    for threads in (1, 2, 4):
+        with store.database.open_reading(tmp_path / "x.duckdb", threads=threads) as db:
+            pd.testing.assert_frame_equal(read.survival(db, sweep), expected, check_exact=True)
+
+
+def test_a_share_of_one_is_exact(tmp_path: Path) -> None:
+    with store.database.create(tmp_path / "x.duckdb") as db:
+        writer = SweepWriter(db)
+        content = sample(writer, [finding(0)])
+        sweep = writer.begin(content.sweep, content.findings, content.choices, content.positions)
+        batch = outcomes(planned(content, 0), np.random.default_rng(0))
+        batch["failed_mask"][:] = 0
+        okay = batch["status"] == 0
+        batch["p_value"][okay] = 1e-9
+        writer.write(sweep, batch)
+        frame = read.survival(db, sweep)
+    assert (frame["survived"] == frame["admissible"]).all()
+    for name in ("raw_share", "headline_share", "share_at_1", "share_at_10"):
+        assert (frame[name] == 1.0).all(), name

@@ -36,8 +36,8 @@ def build(frames: Mapping[str, pd.DataFrame], context: Context) -> Table:
         total = sum(every)
         rows.append((axis, choice, total, *every, every[0] / total if total else None))
     notes = (
-        f"Admissible rows, level {context.level}. One way: cause to effect is rejected "
-        "and the reverse is not. "
+        f"Admissible rows, level {context.level}. One way: cause to effect is "
+        "significant and the reverse is not. "
         "Neither rejected is not evidence of independence. Undetermined: a direction could not "
         "be estimated."
     )

@@ -51,9 +51,10 @@ def build(frames: Mapping[str, pd.DataFrame], context: Context) -> Table:
         rows.append(tuple(record[name] for name, _ in _COLUMNS))
     notes = (
         f"{context.lead} Planned = not applicable + infeasible + failed + screened out + "
-        "admissible. Distinct: distinct computations among the admissible rows. Weighted share: each row weighs 1 / (positions of its window entry) / "
-        "(size of its test group). Other sign: significant, but not with the claimed sign. The "
-        "columns at 1, 5 and 10% are the weighted share were that the level."
+        "admissible. Distinct: distinct computations among the admissible rows. Weighted share: "
+        "each row weighs 1 / (positions of its window entry) / (size of its test group). Other "
+        "sign: significant, but not with the claimed sign. The columns at 1, 5 and 10% are the "
+        "weighted share were that the level."
     )
     return Table(
         NAME,

@@ -1,0 +1,179 @@
+"""What a plan comes to, before anything is estimated."""
+
+from __future__ import annotations
+
+import os
+from dataclasses import dataclass
+from pathlib import Path
+
+import numpy as np
+
+from sweep.engine.cost import estimate_seconds
+from sweep.engine.prepare import Prepared, prepare
+from sweep.plan.choices import AXES, WindowChoice
+from sweep.plan.model import Plan
+
+__all__ = ["AxisSize", "Check", "RuledOut", "check_plan", "default_jobs"]
+
+
+@dataclass(frozen=True, slots=True)
+class AxisSize:
+    """One axis of one finding.
+
+    Attributes
+    ----------
+    finding, axis : str
+    choices : tuple of str
+        Labels in plan order.
+    baseline : str
+        Label of the baseline's choice.
+    positions : int
+        Window positions in all; the number of choices on other axes.
+    """
+
+    finding: str
+    axis: str
+    choices: tuple[str, ...]
+    baseline: str
+    positions: int
+
+
+@dataclass(frozen=True, slots=True)
+class RuledOut:
+    """Specifications of one finding that are not run, and why."""
+
+    finding: str
+    specifications: int
+    because: str
+
+
+@dataclass(frozen=True, slots=True)
+class Check:
+    """A plan found sound, and its size.
+
+    Attributes
+    ----------
+    plan : Plan
+    axes : tuple of AxisSize
+    findings : tuple of (str, int, int)
+        Name, planned specifications, and those that will be run.
+    ruled_out : tuple of RuledOut
+    notes : tuple of str
+        Choices that give the same numbers by construction.
+    seconds : float
+        Rough estimate of a whole run with ``jobs`` workers, nothing stored before.
+    jobs : int
+    first, last : str
+        First and last period of the data.
+    """
+
+    plan: Plan
+    axes: tuple[AxisSize, ...]
+    findings: tuple[tuple[str, int, int], ...]
+    ruled_out: tuple[RuledOut, ...]
+    notes: tuple[str, ...]
+    seconds: float
+    jobs: int
+    first: str
+    last: str
+
+    @property
+    def planned(self) -> int:
+        """Planned specifications of all findings."""
+        return sum(planned for _, planned, _ in self.findings)
+
+
+def default_jobs() -> int:
+    """Return the cores that this process may use."""
+    if hasattr(os, "sched_getaffinity"):
+        return len(os.sched_getaffinity(0))
+    return os.cpu_count() or 1
+
+
+def check_plan(plan: Plan, *, jobs: int | None = None) -> Check:
+    """Validate a plan with its data and count its specifications; estimates nothing.
+
+    Raises
+    ------
+    InputFault
+        With every fault of the data.
+    """
+    prepared = prepare(plan)
+    jobs = jobs or default_jobs()
+    calendar = prepared.dataset.calendar
+    rows = prepared.rows
+    counts = []
+    for finding in plan.findings:
+        mine = rows.finding == finding.number
+        counts.append((finding.name, int(mine.sum()), int((mine & (rows.rule < 0)).sum())))
+    return Check(
+        plan,
+        tuple(_axes(prepared)),
+        tuple(counts),
+        tuple(_ruled(prepared)),
+        prepared.notes,
+        estimate_seconds(prepared, jobs),
+        jobs,
+        calendar.label(0),
+        calendar.label(len(calendar) - 1),
+    )
+
+
+def _axes(prepared: Prepared) -> list[AxisSize]:
+    plan = prepared.plan
+    sizes = []
+    for finding in plan.findings:
+        for axis in AXES:
+            held = plan.finding_axes[finding.number][axis]
+            positions = len(held.codes)
+            if axis == "window":
+                positions = sum(prepared.windows[finding.number][code].count for code in held.codes)
+            labels = tuple(plan.axes[axis][code].label for code in held.codes)
+            sizes.append(
+                AxisSize(
+                    finding.name, axis, labels, plan.axes[axis][held.baseline].label, positions
+                )
+            )
+    return sizes
+
+
+def _ruled(prepared: Prepared) -> list[RuledOut]:
+    """Count what the plan's rules exclude, and filters that meet an episode."""
+    plan, rows = prepared.plan, prepared.rows
+    found = []
+    for finding in plan.findings:
+        mine = rows.finding == finding.number
+        for number, rule in enumerate(plan.rules):
+            count = int((mine & (rows.rule == number)).sum())
+            if count:
+                found.append(RuledOut(finding.name, count, rule.because))
+        episodes = np.array(
+            [isinstance(c, WindowChoice) and bool(c.without) for c in plan.axes["window"]]
+        )
+        filters = np.array(
+            [
+                "Hodrick-Prescott cycle"
+                in (getattr(c, "default", ""), *(kind for _, kind in getattr(c, "series", ())))
+                for c in plan.axes["transformation"]
+            ]
+        )
+        meets = episodes[rows.codes["window"]] & filters[rows.codes["transformation"]]
+        count = int((mine & meets & (rows.rule < 0)).sum())
+        if count:
+            found.append(
+                RuledOut(
+                    finding.name,
+                    count,
+                    "a Hodrick-Prescott filter uses every value of its window, so it does not go "
+                    "with an episode left out (where the filtered series is in the regression)",
+                )  # fmt: skip
+            )
+    return found
+
+
+def shown_path(path: Path) -> str:
+    """Return a path as short as it can be written from here."""
+    try:
+        return str(path.relative_to(Path.cwd()))
+    except ValueError:
+        return str(path)

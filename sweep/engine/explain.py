@@ -1,0 +1,247 @@
+"""One specification in full: its rows, its regression, its numbers by both paths, in words."""
+
+from __future__ import annotations
+
+import json
+from dataclasses import dataclass
+from pathlib import Path
+from typing import TYPE_CHECKING, Any
+
+import numpy as np
+
+from sweep.engine.prepare import Prepared, prepare
+from sweep.engine.recheck import SlowDirection, SlowResult, recheck
+from sweep.errors import Fault, InputFault
+from sweep.plan.canonical import hex_id
+from sweep.plan.choices import AXES, LagChoice
+from sweep.plan.load import plan_from_text
+from sweep.procedures import PROCEDURES
+
+if TYPE_CHECKING:
+    from sweep.results import Results
+
+__all__ = ["Compared", "Explanation", "explain"]
+
+
+@dataclass(frozen=True, slots=True)
+class Compared:
+    """A stored number beside the same number by the slow path.
+
+    Attributes
+    ----------
+    name : str
+    stored, slow : float or None
+    """
+
+    name: str
+    stored: float | None
+    slow: float | None
+
+    @property
+    def difference(self) -> float | None:
+        """Relative difference, None where one is missing."""
+        if self.stored is None or self.slow is None:
+            return None
+        return abs(self.stored - self.slow) / max(abs(self.slow), 1e-300)
+
+
+@dataclass(frozen=True, slots=True)
+class Explanation:
+    """Everything known about one specification.
+
+    Attributes
+    ----------
+    row : mapping
+        Its row of the view ``outcomes``.
+    statement : str
+        The finding in words.
+    choices : tuple of (axis, label, reason)
+    sample : tuple of str
+        Sentences on window and regression rows.
+    regression : tuple of str
+        Sentences on the equation and the lag choice.
+    null : str
+        The hypothesis in words.
+    compared : tuple of Compared
+        Empty where the specification has no numbers.
+    coefficients : tuple of (lag, value, standard error)
+        Of the cause in the effect's equation, by the slow path.
+    verdict : tuple of str
+    """
+
+    row: dict[str, Any]
+    statement: str
+    choices: tuple[tuple[str, str, str], ...]
+    sample: tuple[str, ...]
+    regression: tuple[str, ...]
+    null: str
+    compared: tuple[Compared, ...]
+    coefficients: tuple[tuple[int, float, float], ...]
+    verdict: tuple[str, ...]
+
+
+def explain(
+    results: Results, specification: str, finding: str | int | None, data: Path | None
+) -> Explanation:
+    """Explain one stored specification; see :meth:`sweep.results.Results.explain`."""
+    row = results.specification(specification, finding)
+    prepared = _prepared(results, data)
+    number = next(f.number for f in prepared.plan.findings if f.name == row["finding"])
+    index = _row_of(prepared, number, str(row["specification"]))
+    plan = prepared.plan
+    found = plan.findings[number]
+    choices = tuple(
+        (axis, choice.label, choice.because)
+        for axis in AXES
+        for choice in [plan.axes[axis][int(prepared.rows.codes[axis][index])]]
+    )
+    procedure = plan.axes["test"][int(prepared.rows.codes["test"][index])]
+    null = PROCEDURES[getattr(procedure, "statistic")].NULL  # noqa: B009  (a Choice to mypy)
+    slow: SlowResult | None = None
+    if row["status"] == "ok":
+        slow = recheck(prepared, index)
+    return Explanation(
+        row,
+        found.sentence,
+        choices,
+        tuple(_sample(prepared, row, slow)),
+        tuple(_regression(prepared, index, slow)),
+        f"{null} ({found.cause} → {found.effect}; in reverse likewise)",
+        tuple(_compare(row, slow)) if slow is not None else (),
+        _coefficients(slow),
+        tuple(_verdict(row)),
+    )
+
+
+def _prepared(results: Results, data: Path | None) -> Prepared:
+    """Rebuild the plan from the store and read its data again, refusing other data."""
+    text = str(results.info["plan_toml"])
+    plan = plan_from_text(text, results.store.with_suffix(".toml"))
+    note = json.loads(str(results.info["data_note"]))
+    candidates = [data] if data is not None else [plan.data_path, Path(note["file"])]
+    path = next((p for p in candidates if p is not None and p.exists()), None)
+    if path is None:
+        raise InputFault(
+            Fault(
+                str(candidates[0]), "the data file is not there", "Name it with --data FILE."
+            )  # fmt: skip
+        )
+    from sweep.engine.prepare import with_data
+
+    prepared = prepare(with_data(plan, path))
+    for record, key in zip(results.findings.itertuples(), prepared.data_keys, strict=True):
+        if (int(record.data_high), int(record.data_low)) != key:
+            raise InputFault(
+                Fault(
+                    str(path),
+                    "the data have changed since this sweep was run",
+                    "Run the plan again, or name the earlier file with --data FILE.",
+                )  # fmt: skip
+            )
+    return prepared
+
+
+def _row_of(prepared: Prepared, finding: int, specification: str) -> int:
+    high, low = int(specification[:16], 16), int(specification[16:], 16)
+    rows = prepared.rows
+    where = np.flatnonzero(
+        (rows.finding == finding) & (rows.high == np.uint64(high)) & (rows.low == np.uint64(low))
+    )
+    if where.size != 1:
+        raise InputFault(Fault(hex_id(high, low), "the stored plan does not hold it any more"))
+    return int(where[0])
+
+
+def _sample(prepared: Prepared, row: dict[str, Any], slow: SlowResult | None) -> list[str]:
+    calendar = prepared.dataset.calendar
+    start, end = str(row["window_start"])[:10], str(row["window_end"])[:10]
+    sentences = [f"The window runs from {start} to {end} before lags are taken."]
+    if slow is None:
+        return sentences
+    rows = slow.rows
+    sentences.append(
+        f"The regression uses T = {rows.size} rows, "
+        f"{calendar.label(int(rows[0]))} to {calendar.label(int(rows[-1]))}."
+    )
+    missing = int(rows[-1] - rows[0] + 1 - rows.size)
+    if missing:
+        sentences.append(f"{missing} rows between them touch an episode left out and are dropped.")
+    return sentences
+
+
+def _regression(prepared: Prepared, index: int, slow: SlowResult | None) -> list[str]:
+    plan = prepared.plan
+    choice = plan.axes["lags"][int(prepared.rows.codes["lags"][index])]
+    assert isinstance(choice, LagChoice)
+    if slow is None:
+        return []
+    own, cause, given = slow.forward.orders
+    sentences = []
+    if choice.criterion:
+        scope = "the effect's equation" if choice.scope == "equation" else "the whole system"
+        table = slow.forward.criterion_table
+        assert table is not None
+        sentences.append(
+            f"{choice.criterion} of {scope} chose {own} lags among 1 to {table.size - 1}, compared "
+            "on their common sample."
+        )
+    fit = slow.forward.fit
+    sentences.append(
+        f"The effect's equation has k = {fit.regressors} regressors: {own} own lags, {cause} lags "
+        f"of the cause, {given} of each given series, and the deterministic terms."
+    )
+    sentences.append(
+        f"Restricted and unrestricted sums of squares: s0 = {fit.restricted_squares:.8g}, "
+        f"s1 = {fit.unrestricted_squares:.8g}."
+    )
+    return sentences
+
+
+def _compare(row: dict[str, Any], slow: SlowResult) -> list[Compared]:
+    forward, reverse = slow.forward, slow.reverse
+    sign = np.sign(forward.coefficient_sum)
+    pairs = [
+        ("statistic", forward.statistic),
+        ("p_value", forward.p_value),
+        ("coefficient_sum", forward.coefficient_sum),
+        ("coefficient_sum_se", forward.coefficient_sum_error),
+        ("signed_partial_r2", float(sign * forward.partial_r2)),
+        *_reverse_pairs(row, reverse),
+    ]
+    compared = []
+    for name, value in pairs:
+        stored = row[name]
+        known = stored is not None and stored == stored
+        compared.append(Compared(name, float(stored) if known else None, value))
+    return compared
+
+
+def _reverse_pairs(row: dict[str, Any], reverse: SlowDirection) -> list[tuple[str, float]]:
+    if row["reverse_status"] != "ok":
+        return []
+    return [("reverse_statistic", reverse.statistic), ("reverse_p_value", reverse.p_value)]
+
+
+def _coefficients(slow: SlowResult | None) -> tuple[tuple[int, float, float], ...]:
+    if slow is None:
+        return ()
+    values, errors = slow.forward.fit.lag_coefficients, slow.forward.lag_errors
+    return tuple(
+        (lag, float(value), float(error))
+        for lag, (value, error) in enumerate(zip(values, errors, strict=True), start=1)
+    )
+
+
+def _verdict(row: dict[str, Any]) -> list[str]:
+    if row["status"] != "ok":
+        return [f"No number: {row['status']}, because {row['reason']}."]
+    sentences = []
+    if row["failed_screens"]:
+        sentences.append(f"Screens not passed: {row['failed_screens']}.")
+    admissible = bool(row["admissible"])
+    sentences.append("It is admissible." if admissible else "It is not admissible.")
+    survives = row["survives"]
+    if admissible and survives is not None and survives == survives:
+        sentences.append("The claim holds in it." if survives else "The claim does not hold in it.")
+    sentences.append(f"Direction: {row['verdict']}.")
+    return sentences

@@ -1,0 +1,273 @@
+"""Reading a store: the same verbs as the commands, frames out."""
+
+from __future__ import annotations
+
+import html
+import json
+from collections.abc import Sequence
+from dataclasses import replace
+from pathlib import Path
+from typing import TYPE_CHECKING, Any
+
+from store import read
+from store.database import Database, open_reading
+from store.errors import NotFound
+from sweep.errors import Fault, InputFault
+from sweep.plan.choices import AXES
+from sweep.plan.suggest import suggestion
+
+if TYPE_CHECKING:
+    import altair
+    import pandas as pd
+
+    from sweep.engine.explain import Explanation
+    from sweep.engine.run import RunReport
+    from sweep.report.content import ReportContent
+    from sweep.report.tables import Table
+
+__all__ = ["Results"]
+
+
+class Results:
+    """One sweep of a store.
+
+    The file is opened for each question and closed again, so that a run can go on.
+
+    Parameters
+    ----------
+    store : str or Path
+        DuckDB file that ``run`` wrote.
+    sweep : int or None
+        Number of the sweep; None for the latest.
+    report : RunReport or None
+        What the run that made these results did.
+
+    Raises
+    ------
+    store.errors.StoreError
+        If the file is missing, locked, damaged, or no store of this version.
+    store.errors.NotFound
+        If the store holds no such sweep.
+    """
+
+    def __init__(
+        self, store: str | Path, sweep: int | None = None, report: RunReport | None = None
+    ) -> None:
+        self.store = Path(store)
+        self.run_report = report
+        with self._open() as database:
+            self.sweep = read.latest_sweep(database) if sweep is None else sweep
+            self.info = read.sweep_info(database, self.sweep)
+            self.findings = read.findings(database, self.sweep)
+
+    def _open(self) -> Database:
+        return open_reading(self.store)
+
+    def survival(self, by: str | None = None, finding: str | int | None = None) -> pd.DataFrame:
+        """Return how often the findings survive, with all counts.
+
+        Parameters
+        ----------
+        by : str or None
+            An axis (``lags``, ``deterministics``, ``window``, ``transformation``, ``test``,
+            ``conditioning``, ``measures``), ``all`` for the overall rows, None for everything.
+        finding : str, int or None
+            Name or number of a finding; None for all.
+
+        Returns
+        -------
+        pandas.DataFrame
+            The store's view ``survival``: counts, ``raw_share`` and the weighted
+            ``headline_share``, also at 1%, 5% and 10%.
+        """
+        if by is not None and by not in (*AXES, "all"):
+            raise InputFault(Fault("by", f'"{by}" is no axis' + suggestion(by, (*AXES, "all"))))
+        number = None if finding is None else self._number(finding)
+        with self._open() as database:
+            return read.survival(database, self.sweep, number, by)
+
+    def outcomes(
+        self, columns: Sequence[str] | None = None, where: str | None = None
+    ) -> pd.DataFrame:
+        """Return one row a specification; names are categoricals.
+
+        Parameters
+        ----------
+        columns : sequence of str or None
+            Columns of the view ``outcomes``; None for all.
+        where : str or None
+            SQL condition on its columns.
+        """
+        with self._open() as database:
+            return read.outcomes(database, self.sweep, columns, where)
+
+    def chart(
+        self, name: str, finding: str | int | None = None, width: str = "wide"
+    ) -> altair.LayerChart:
+        """Return a stability chart of one finding (the first if none is named)."""
+        from sweep.charts import CHARTS, chart
+        from sweep.charts.context import context_of
+
+        if name not in CHARTS:
+            raise InputFault(
+                Fault("chart", f'no chart is called "{name}"' + suggestion(name, CHARTS))
+            )
+        number = self._number(0 if finding is None else finding)
+        module = chart(name)
+        frames = self._frames(number, (*module.NEEDS, "survival"))
+        context = context_of(
+            self._record(number), frames["survival"], significance=float(self.info["significance"]),
+            title=str(self.info["title"]), design=str(self.info["design"]),
+        )  # fmt: skip
+        return module.build(frames, context, width)
+
+    def table(self, name: str, finding: str | int | None = None) -> Table:
+        """Return a table of one finding (the first if none is named)."""
+        from sweep.charts.context import context_of
+        from sweep.report.tables import TABLES
+
+        if name not in TABLES:
+            raise InputFault(
+                Fault("table", f'no table is called "{name}"' + suggestion(name, TABLES))
+            )
+        number = self._number(0 if finding is None else finding)
+        frames = self._frames(number, (*TABLES[name].NEEDS, "survival"))
+        context = context_of(
+            self._record(number), frames["survival"], significance=float(self.info["significance"]),
+            title=str(self.info["title"]), design=str(self.info["design"]),
+        )  # fmt: skip
+        return TABLES[name].build(frames, context)
+
+    def content(self) -> ReportContent:
+        """Return everything that the report and the summary are made from."""
+        from sweep.report.content import FRAMES, content_of
+
+        records = [self._record(int(n)) for n in self.findings["finding"]]
+        frames = {int(r["finding"]): self._frames(int(r["finding"]), FRAMES) for r in records}
+        note = json.loads(str(self.info["data_note"]))
+        same = note.pop("same numbers", [])
+        info = {**self.info, "data_note": json.dumps(note, ensure_ascii=False)}
+        ruled = []
+        for record in records:
+            lost = frames[int(record["finding"])]["attrition"]
+            for row in lost[lost["ruled"].fillna(False).astype(bool)].itertuples():
+                ruled.append(f"{record['name']}: {row.rows:,} specifications, because {row.reason}")
+        content = content_of(info, records, frames, ruled_out=ruled)
+        return replace(content, redundancies=tuple(same))
+
+    def summary(self) -> list[tuple[str, list[str]]]:
+        """Return, for each finding, its statement and the sentences that sum it up."""
+        from sweep.report.content import summary
+
+        return [
+            (found.context.statement, [found.reproduction.sentence, *summary(found)])
+            for found in self.content().findings
+        ]
+
+    def report(self, path: str | Path | None = None) -> Path:
+        """Write the report as one self-contained HTML file and return its path.
+
+        Parameters
+        ----------
+        path : str, Path or None
+            Where; beside the store if none is given.
+        """
+        from sweep.report.page import page
+
+        target = Path(path) if path is not None else self.store.with_suffix(".html")
+        text = page(self.content())
+        partial = target.with_name(target.name + ".part")
+        try:
+            partial.write_text(text, encoding="utf-8")
+            partial.replace(target)
+        except OSError as error:
+            partial.unlink(missing_ok=True)
+            mend = "Give another path with --output."
+            raise InputFault(
+                Fault(str(target), f"the report cannot be written ({error.strerror})", mend)
+            ) from None
+        return target
+
+    def export(self, folder: str | Path, formats: Sequence[str] = ("parquet", "csv")) -> list[Path]:
+        """Write outcomes, survival, details and choices as Parquet and CSV files."""
+        from store.export import export
+
+        with self._open() as database:
+            return [Path(p) for p in export(database, self.sweep, Path(folder), tuple(formats))]
+
+    def explain(
+        self,
+        specification: str = "baseline",
+        finding: str | int | None = None,
+        data: str | Path | None = None,
+    ) -> Explanation:
+        """Return one specification in full, recomputed by the slow path.
+
+        Parameters
+        ----------
+        specification : str
+            Its id or a unique beginning of it, or ``baseline``.
+        finding : str, int or None
+            Needed where two findings share the specification; the first for ``baseline``.
+        data : str, Path or None
+            Data file, where it is no longer where the plan says.
+
+        Raises
+        ------
+        store.errors.NotFound, store.errors.Ambiguous
+            If no or more than one specification answers.
+        InputFault
+            If the data are gone or have changed.
+        """
+        from sweep.engine.explain import explain
+
+        return explain(self, specification, finding, None if data is None else Path(data))
+
+    def specification(self, prefix: str, finding: str | int | None = None) -> dict[str, Any]:
+        """Return the stored row of one specification as a mapping."""
+        number = None if finding is None else self._number(finding)
+        if prefix == "baseline":
+            number = number or 0
+            record = self._record(number)
+            prefix = f"{int(record['baseline_high']):016x}{int(record['baseline_low']):016x}"
+        with self._open() as database:
+            row = read.specification(database, self.sweep, prefix, number)
+        return {str(key): value for key, value in row.iloc[0].items()}
+
+    def details(self, specification: str, finding: str | int = 0) -> pd.DataFrame:
+        """Return the stored lag coefficients of one specification (all 32 digits)."""
+        with self._open() as database:
+            return read.details(database, self.sweep, self._number(finding), specification)
+
+    def _frames(self, number: int, names: Sequence[str]) -> dict[str, pd.DataFrame]:
+        with self._open() as database:
+            return {
+                name: getattr(read, name)(database, self.sweep, number)
+                for name in dict.fromkeys(names)
+            }
+
+    def _record(self, number: int) -> dict[str, Any]:
+        row = self.findings[self.findings["finding"] == number].iloc[0]
+        return {str(key): value for key, value in row.items()}
+
+    def _number(self, finding: str | int) -> int:
+        names = {str(n): int(f) for n, f in zip(self.findings["name"], self.findings["finding"],
+                                                strict=True)}  # fmt: skip
+        if isinstance(finding, int) and finding in names.values():
+            return finding
+        if finding in names:
+            return names[str(finding)]
+        raise NotFound(f'No finding is called "{finding}"' + suggestion(str(finding), names))
+
+    def __repr__(self) -> str:
+        lines = [f"Sweep {self.sweep} of {self.store.name}: {self.info['title']}"]
+        for statement, sentences in self.summary():
+            lines += [f"  {statement}", *(f"    {sentence}" for sentence in sentences)]
+        return "\n".join(lines)
+
+    def _repr_html_(self) -> str:
+        parts = [f"<p><strong>{html.escape(str(self.info['title']))}</strong></p>"]
+        for statement, sentences in self.summary():
+            items = "".join(f"<li>{html.escape(sentence)}</li>" for sentence in sentences)
+            parts.append(f"<p>{html.escape(statement)}</p><ul>{items}</ul>")
+        return "".join(parts)

@@ -1,0 +1,115 @@
+import math
+
+import pytest
+
+from sweep.verdicts import directions, effects, flips, survival
+
+
+@pytest.fixture(scope="module")
+def frames(sweeps):
+    return sweeps.frames_of(sweeps.Sweep())
+
+
+def test_headline_states_counts_weight_and_distinct_computations(frames):
+    counts = survival.overall(frames["survival"])
+    text = survival.headline(counts)
+    assert f"{counts.survived:,} of {counts.admissible:,} rows" in text
+    assert f"weighted {survival.percent(counts.headline)}" in text
+    assert text.endswith(f"{counts.distinct:,} distinct computations")
+
+
+@pytest.mark.parametrize("design", ["one change", "two changes"])
+def test_designs_of_few_changes_have_no_pooled_share(frames, design):
+    assert "weighted" not in survival.headline(survival.overall(frames["survival"]), design)
+
+
+def test_losses_add_up_to_what_was_planned(frames):
+    for row in frames["survival"].to_dict("records"):
+        counts = survival.counts_of(row)
+        lost = counts.not_applicable + counts.infeasible + counts.failed + counts.screened_out
+        assert counts.planned == lost + counts.admissible
+        assert counts.left_out == lost
+
+
+def test_levels_sentence_adds_the_plans_own_level(frames):
+    counts = survival.overall(frames["survival"])
+    assert "at the plan's 2.5%" in survival.levels_sentence(counts, 0.025)
+    assert "plan's" not in survival.levels_sentence(counts, 0.05)
+
+
+def test_one_overall_row_is_required(frames):
+    with pytest.raises(ValueError, match="0 overall rows"):
+        survival.overall(frames["survival"].iloc[1:])
+
+
+def test_sampling_interval_by_hand(frames):
+    low, high = survival.sampling_interval(frames["survival"])
+    strata = frames["survival"].query("axis == 'window'")
+    variance = 0.0
+    for row in strata.to_dict("records"):
+        p = (row["survived"] + 2) / (row["admissible"] + 4)
+        variance += p * (1 - p) / row["admissible"] / len(strata) ** 2
+    share = survival.overall(frames["survival"]).headline
+    assert high - share == pytest.approx(1.959964 * math.sqrt(variance))
+    assert low == pytest.approx(max(0, 2 * share - high))
+
+
+def test_axis_sentences_name_lowest_and_highest(frames):
+    sentence = next(
+        s for s in survival.axis_sentences(frames["survival"]) if s.startswith("By test")
+    )
+    rows = frames["survival"].query("axis == 'test'").sort_values("headline_share")
+    assert f"under {rows['choice'].iloc[0]} (" in sentence
+    assert f"under {rows['choice'].iloc[-1]} (" in sentence
+
+
+def test_verdicts_count_each_admissible_row_once(frames):
+    counts = directions.totals(frames["directions"])
+    assert tuple(counts) == directions.VERDICTS
+    assert sum(counts.values()) == survival.overall(frames["survival"]).admissible
+    without = frames["directions"].query("axis != 'all'")
+    assert directions.totals(without) == counts
+    assert "not evidence of independence" in directions.sentence(frames["directions"])
+
+
+def test_verdicts_of_nothing(frames):
+    assert directions.sentence(frames["directions"].iloc[:0]).startswith("No specification")
+
+
+def test_single_changes_are_counted_and_named(frames):
+    changes, base = frames["single_changes"], frames["baseline"].iloc[0]
+    rows = flips.turned(changes)
+    sentence = flips.single_sentence(changes, base["survives"], limit=1)
+    tried = int((changes["admissible"] > 0).sum())
+    assert sentence.startswith(f"{len(rows)} of {tried} single changes")
+    assert f"and {len(rows) - 1} more" in sentence
+    assert rows["z_change"].abs().is_monotonic_decreasing
+
+
+@pytest.mark.parametrize(("holds", "word"), [(True, "holds"), (False, "still does not hold")])
+def test_no_flip_is_said_plainly(frames, holds, word):
+    changes = frames["single_changes"].assign(flips=0)
+    assert word in flips.single_sentence(changes, holds)
+
+
+def test_flips_without_a_baseline(frames):
+    assert "not admissible" in flips.single_sentence(frames["single_changes"], None)
+    assert flips.path_sentence(frames["shortest_flips"], None) == ""
+    assert "In no specification" in flips.path_sentence(frames["shortest_flips"].iloc[:0], True)
+    empty = flips.single_sentence(frames["single_changes"].iloc[:0], True)
+    assert empty.startswith("No choice differs")
+
+
+def test_shortest_path_states_the_changes(frames):
+    base = frames["baseline"].iloc[0]
+    sentence = flips.path_sentence(frames["shortest_flips"], base["survives"])
+    assert frames["shortest_flips"]["changed"].iloc[0] in sentence
+    assert "after 1 changed choice" in sentence
+
+
+def test_effect_sentences(frames):
+    found = effects.sentences(frames["effects_overall"], frames["effects"])
+    assert found[0].startswith("The signed partial R² is positive in ")
+    assert found[1].startswith("The standardised sum ")
+    assert "keeps one sign throughout" in found[2]
+    assert effects.sentences(frames["effects_overall"].iloc[:0], frames["effects"].iloc[:0]) == []
