@@ -63,6 +63,11 @@ class Results:
     def _open(self) -> Database:
         return open_reading(self.store)
 
+    def sweeps(self) -> pd.DataFrame:
+        """Return one row for each sweep of the store, oldest first."""
+        with self._open() as database:
+            return read.sweeps(database)
+
     def survival(self, by: str | None = None, finding: str | int | None = None) -> pd.DataFrame:
         """Return how often the findings survive, with all counts.
 
@@ -164,18 +169,21 @@ class Results:
             for found in self.content().findings
         ]
 
-    def report(self, path: str | Path | None = None) -> Path:
+    def report(self, path: str | Path | None = None, *, jobs: int | None = None) -> Path:
         """Write the report as one self-contained HTML file and return its path.
 
         Parameters
         ----------
         path : str, Path or None
             Where; beside the store if none is given.
+        jobs : int or None
+            Worker processes that draw; None for one a core.
         """
+        from sweep.engine.check import default_jobs
         from sweep.report.page import page
 
         target = Path(path) if path is not None else self.store.with_suffix(".html")
-        text = page(self.content())
+        text = page(self.content(), jobs=jobs or default_jobs())
         partial = target.with_name(target.name + ".part")
         try:
             partial.write_text(text, encoding="utf-8")

@@ -1,0 +1,69 @@
+"""The command line: one short file a command, nothing heavy imported before it is needed."""
+
+from __future__ import annotations
+
+from importlib import import_module
+from typing import Any
+
+import click
+
+from sweep import __version__
+from sweep.cli.guard import guarded
+
+__all__ = ["COMMANDS", "main"]
+
+# Command and what it does, in the order of a working day; each lives in a file of its name.
+COMMANDS = {
+    "new": "Write a commented starter plan for a data file, or copy a shipped example.",
+    "check": "Validate a plan and its data, count specifications, estimate the time.",
+    "run": "Run what is not stored yet, print the survival summary, write the report.",
+    "show": "Print the survival summary again, whole or by one axis.",
+    "explain": "Show one specification in full, recomputed by the slow path.",
+    "report": "Write the report as one HTML file that opens offline.",
+    "export": "Write outcomes, survival and details as Parquet and CSV files.",
+    "schema": "Write the JSON Schema of the plan file, for editors.",
+}
+
+
+class _LazyGroup(click.Group):
+    """Lists commands from the dictionary and imports one when it is called."""
+
+    def list_commands(self, ctx: click.Context) -> list[str]:
+        return list(COMMANDS)
+
+    def get_command(self, ctx: click.Context, cmd_name: str) -> click.Command | None:
+        if cmd_name not in COMMANDS:
+            return None
+        command = import_module(f"sweep.cli.{cmd_name}").command
+        assert isinstance(command, click.Command)
+        return command
+
+    def resolve_command(
+        self, ctx: click.Context, args: list[str]
+    ) -> tuple[str | None, click.Command | None, list[str]]:
+        from sweep.plan.suggest import suggestion
+
+        if args and args[0] not in COMMANDS and not args[0].startswith("-"):
+            ctx.fail(f'there is no command "{args[0]}"' + suggestion(args[0], COMMANDS))
+        return super().resolve_command(ctx, args)
+
+    def format_commands(self, ctx: click.Context, formatter: click.HelpFormatter) -> None:
+        with formatter.section("Commands"):
+            formatter.write_dl(list(COMMANDS.items()))
+
+
+@click.group(cls=_LazyGroup, context_settings={"help_option_names": ["-h", "--help"]})
+@click.version_option(__version__, prog_name="crosswind")
+def group() -> None:
+    """Run every defensible specification of a directional finding and count where it survives.
+
+    Data go to standard output, messages to standard error.  Exit codes: 0 done, 1 internal
+    error, 2 bad usage, plan or data, 3 finished with failed specifications, 4 a rule given
+    with --require was not met, 5 store locked, damaged or of another version, 130 interrupted
+    (run again to go on).
+    """
+
+
+def main(arguments: list[str] | None = None) -> Any:
+    """Run the command line and leave with its exit code."""
+    return guarded(group, arguments)

@@ -88,29 +88,41 @@ def _bundle() -> Markup:
     return Markup(code.replace("</script", "<\\/script"))
 
 
-def _figures(finding: FindingContent, first: int) -> list[Figure]:
-    found = []
-    for number, name in enumerate(CHARTS, start=first):
-        module = chart(name)
-        plain = specification(module.build(finding.frames, finding.context, "wide"))
-        found.append(
-            Figure(
-                number,
-                name,
-                module.QUESTION,
-                still(svg(plain), number),
-                script_json(plain),
-                module.describe(finding.frames, finding.context),
-            )
-        )
-    return found
+def _figure(finding: FindingContent, name: str, number: int) -> Figure:
+    """Draw one chart of one finding."""
+    module = chart(name)
+    plain = specification(module.build(finding.frames, finding.context, "wide"))
+    return Figure(
+        number,
+        name,
+        module.QUESTION,
+        still(svg(plain), number),
+        script_json(plain),
+        module.describe(finding.frames, finding.context),
+    )
 
 
-def _sections(report: ReportContent) -> list[dict[str, Any]]:
-    sections, drawn = [], 0
-    for number, finding in enumerate(report.findings, start=1):
-        figures = _figures(finding, drawn + 1)
-        drawn += len(figures)
+def _figures(report: ReportContent, jobs: int) -> tuple[list[list[Figure]], Markup]:
+    """Draw every figure, and fetch the drawing library, in workers where there are several."""
+    wanted = [(finding, name) for finding in report.findings for name in CHARTS]
+    if jobs == 1 or len(wanted) <= len(CHARTS):
+        drawn = [_figure(*item, number) for number, item in enumerate(wanted, start=1)]
+        bundle = _bundle()
+    else:
+        from joblib import Parallel, delayed
+
+        tasks = [delayed(_bundle)()]
+        tasks += [delayed(_figure)(*item, number) for number, item in enumerate(wanted, start=1)]
+        bundle, *drawn = Parallel(n_jobs=jobs, batch_size=1)(tasks)
+    size = len(CHARTS)
+    return [drawn[start : start + size] for start in range(0, len(drawn), size)], bundle
+
+
+def _sections(report: ReportContent, drawn: list[list[Figure]]) -> list[dict[str, Any]]:
+    sections = []
+    for number, (finding, figures) in enumerate(
+        zip(report.findings, drawn, strict=True), start=1
+    ):
         tables = {
             name: Markup(as_html(module.build(finding.frames, finding.context)))
             for name, module in TABLES.items()
@@ -131,13 +143,15 @@ def _sections(report: ReportContent) -> list[dict[str, Any]]:
     return sections
 
 
-def page(report: ReportContent) -> str:
+def page(report: ReportContent, *, jobs: int = 1) -> str:
     """Write the whole report as one HTML document.
 
     Parameters
     ----------
     report : ReportContent
         What to show; every string in it may come from a user's files and is escaped.
+    jobs : int
+        Worker processes that draw the figures.
 
     Returns
     -------
@@ -153,13 +167,14 @@ def page(report: ReportContent) -> str:
         loader=jinja2.FunctionLoader(lambda name: (folder / name).read_text(encoding="utf-8")),
     )
     style = Markup((folder / "page.css").read_text(encoding="utf-8"))
+    drawn, bundle = _figures(report, jobs)
     script = Markup((folder / "page.js").read_text(encoding="utf-8"))
     return environment.get_template("template.html.j2").render(
         report=report,
         first_lines=first_lines(report),
         level=level_text(report.significance),
-        sections=_sections(report),
+        sections=_sections(report, drawn),
         style=style,
         script=script,
-        bundle=_bundle(),
+        bundle=bundle,
     )

@@ -1,0 +1,81 @@
+"""What several commands share: paths, formats, printing of frames."""
+
+from __future__ import annotations
+
+import json
+from pathlib import Path
+from typing import TYPE_CHECKING, Any
+
+import click
+
+if TYPE_CHECKING:
+    import pandas as pd
+
+    from sweep.results import Results
+
+__all__ = [
+    "FORMATS", "data_format", "plan_argument", "print_frame", "print_summary", "store_argument",
+    "sweep_option",
+]  # fmt: skip
+
+FORMATS = ("table", "csv", "json")
+
+plan_argument = click.argument("plan", type=click.Path(path_type=Path))
+store_argument = click.argument("store", type=click.Path(path_type=Path))
+sweep_option = click.option(
+    "--sweep", type=int, default=None, help="Number of the sweep; the latest if left out."
+)
+data_format = click.option(
+    "--format", "form", type=click.Choice(FORMATS), default="table", show_default=True,
+    help="How data are printed.",
+)  # fmt: skip
+
+
+def print_frame(frame: pd.DataFrame, form: str) -> None:
+    """Print a frame to standard output as a table, CSV or JSON records."""
+    if form == "csv":
+        click.echo(frame.to_csv(index=False), nl=False)
+    elif form == "json":
+        records = json.loads(frame.to_json(orient="records", date_format="iso"))
+        click.echo(json.dumps(records, ensure_ascii=False, indent=1))
+    else:
+        print_rows(list(frame.columns), frame.astype(object).to_numpy().tolist())
+
+
+def print_rows(columns: list[str], rows: list[list[Any]]) -> None:
+    """Print rows as aligned columns, numbers to the right."""
+    texts = [[str(cell) for cell in row] for row in rows]
+    width = [max([len(c), *(len(row[j]) for row in texts)]) for j, c in enumerate(columns)]
+    right = [all(_numeric(row[j]) for row in texts) and bool(texts) for j in range(len(columns))]
+
+    def line(cells: list[str]) -> str:
+        parts = [c.rjust(w) if r else c.ljust(w) for c, w, r in zip(cells, width, right,
+                                                                  strict=True)]  # fmt: skip
+        return "  ".join(parts).rstrip()
+
+    click.echo(line(columns))
+    for row in texts:
+        click.echo(line(row))
+
+
+def _numeric(text: str) -> bool:
+    return bool(text) and text.lstrip("−-<>")[:1].isdigit() or text in ("–", "")
+
+
+def print_summary(results: Results, finding: str | None = None) -> None:
+    """Print the sentences that sum up each finding, wrapped for a terminal."""
+    import shutil
+    import textwrap
+
+    width = min(shutil.get_terminal_size((96, 24)).columns, 110)
+    if finding is not None:
+        results.survival(finding=finding)  # refuses a finding that is not there
+    for name, (statement, sentences) in zip(
+        results.findings["name"], results.summary(), strict=True
+    ):
+        if finding is not None and str(name) != finding:
+            continue
+        click.echo(f"\n{name}: {statement}")
+        for sentence in sentences:
+            click.echo(textwrap.fill(sentence, width, initial_indent="  ",
+                                     subsequent_indent="    "))  # fmt: skip

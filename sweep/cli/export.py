@@ -1,0 +1,25 @@
+"""crosswind export STORE FOLDER."""
+
+from __future__ import annotations
+
+from pathlib import Path
+
+import click
+
+from sweep.cli.common import store_argument, sweep_option
+
+
+@click.command()
+@store_argument
+@click.argument("folder", type=click.Path(path_type=Path, file_okay=False))
+@sweep_option
+@click.option("--only", type=click.Choice(("parquet", "csv")), default=None,
+              help="One format; both if left out.")  # fmt: skip
+def command(store: Path, folder: Path, sweep: int | None, only: str | None) -> None:
+    """Write outcomes, survival and details of STORE into FOLDER as Parquet and CSV files."""
+    from sweep.api import open_results
+    from sweep.engine.check import shown_path
+
+    formats = ("parquet", "csv") if only is None else (only,)
+    for path in open_results(store, sweep).export(folder, formats):
+        click.echo(shown_path(path))

@@ -1,0 +1,87 @@
+"""crosswind run PLAN."""
+
+from __future__ import annotations
+
+from pathlib import Path
+from typing import TYPE_CHECKING
+
+import click
+
+from sweep.cli.common import plan_argument, print_summary
+from sweep.errors import RuleNotMet
+
+if TYPE_CHECKING:
+    from sweep.results import Results
+
+
+@click.command()
+@plan_argument
+@click.option("--store", type=click.Path(path_type=Path), default=None,
+              help="DuckDB file; PLAN with the ending .duckdb if left out.")
+@click.option("--jobs", type=click.IntRange(min=1), default=None,
+              help="Worker processes; one a core if left out. Numbers do not depend on it.")
+@click.option("--report/--no-report", default=True, show_default=True,
+              help="Write the report beside the store.")
+@click.option("--require", "rules", multiple=True, type=click.Choice(("reproduced",)),
+              help="Leave with exit code 4 unless the baseline reproduces the reported numbers.")
+@click.option("--quiet", is_flag=True, help="No progress and no messages.")  # fmt: skip
+def command(
+    plan: Path, store: Path | None, jobs: int | None, report: bool, rules: tuple[str, ...],
+    quiet: bool,
+) -> int:  # fmt: skip
+    """Run what is not stored yet, print the survival summary, write the report.
+
+    Stop with Ctrl-C at any time; the same command goes on where it stopped.
+    """
+    from sweep.api import run
+    from sweep.cli.progress import Reporter
+
+    with Reporter(quiet=quiet) as reporter:
+        results = run(plan, store=store, jobs=jobs, progress=reporter.advance)
+    done = results.run_report
+    assert done is not None
+    if not quiet:
+        click.echo(_did(results), err=True)
+    print_summary(results)
+    if report:
+        path = results.report(jobs=jobs)
+        if not quiet:
+            click.echo(f"\nReport: {_short(path)}", err=True)
+    if "reproduced" in rules:
+        _require_reproduced(results)
+    return 3 if done.failed else 0
+
+
+def _did(results: Results) -> str:
+    done = results.run_report
+    assert done is not None
+    parts = [f"computed {done.computed:,}"]
+    if done.stored:
+        parts.append(f"{done.stored:,} were stored before")
+    if done.reused:
+        parts.append(f"{done.reused:,} were taken over from another sweep in this store")
+    if done.ruled:
+        parts.append(f"{done.ruled:,} are ruled out by the plan")
+    if done.failed:
+        parts.append(f"{done.failed:,} failed (the store's log says how)")
+    return (f"{done.planned:,} specifications planned: {', '.join(parts)}; {done.seconds:.1f} s. "
+            f"Store: {_short(done.store)}")  # fmt: skip
+
+
+def _short(path: Path) -> str:
+    from sweep.engine.check import shown_path
+
+    return shown_path(path)
+
+
+def _require_reproduced(results: Results) -> None:
+    """Fail unless every finding with reported numbers reproduces them, and there is one."""
+    found = [f.reproduction for f in results.content().findings]
+    told = [item for item in found if item.reproduced is not None]
+    if not told:
+        raise RuleNotMet(
+            "--require reproduced: the plan reports no numbers; add [baseline.reported]."
+        )
+    for item in told:
+        if not item.reproduced:
+            raise RuleNotMet(f"--require reproduced: {item.sentence}")

@@ -1,0 +1,51 @@
+"""The examples that come with the package: plans and their data."""
+
+from __future__ import annotations
+
+import shutil
+from importlib.resources import files
+from pathlib import Path
+
+from sweep.errors import Fault, InputFault
+from sweep.plan.suggest import suggestion
+
+__all__ = ["EXAMPLES", "copy_example"]
+
+# Example and the data file that its plan reads.
+EXAMPLES = {"us_macro": "data/us_macro.csv", "harbour": "data/harbour.csv"}
+
+
+def examples_folder() -> Path:
+    """Return the folder of the shipped examples.
+
+    In an installed package it is ``sweep/examples``; in a source tree, ``configs``.
+    """
+    packaged = Path(str(files("sweep"))) / "examples"
+    return packaged if packaged.is_dir() else Path(str(files("sweep"))).parent / "configs"
+
+
+def copy_example(name: str, folder: Path, *, overwrite: bool = False) -> list[Path]:
+    """Copy a plan and its data into a folder.
+
+    Raises
+    ------
+    InputFault
+        If there is no such example, or a file is there already.
+    """
+    if name not in EXAMPLES:
+        raise InputFault(
+            Fault("--example", f'no example is called "{name}"' + suggestion(name, EXAMPLES))
+        )
+    written = []
+    pairs = [(f"{name}.toml", folder / f"{name}.toml"), (EXAMPLES[name], folder / EXAMPLES[name])]
+    for _, target in pairs:
+        if target.exists() and not overwrite:
+            raise InputFault(
+                Fault(str(target), "the file is there already",
+                      "Choose another folder with --output, or give --overwrite.")  # fmt: skip
+            )
+    for source, target in pairs:
+        target.parent.mkdir(parents=True, exist_ok=True)
+        shutil.copyfile(examples_folder() / source, target)
+        written.append(target)
+    return written
