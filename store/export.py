@@ -73,16 +73,25 @@ def export(
     target = Path(folder)
     target.mkdir(parents=True, exist_ok=True)
     written = []
-    for format_ in formats:
-        for name, sql in _PARTS.items():
-            selected = sql.format(sweep=int(sweep))
-            path = target / f"{name}.{format_}"
-            if format_ == "csv":
-                _copy(db, _neutralised(db, selected), path, "FORMAT csv, HEADER true")
-            else:
-                _copy(db, selected, path, "FORMAT parquet, COMPRESSION zstd")
-            written.append(path)
+    threads = db.scalar("SELECT current_setting('threads')")
+    # Sorting a million wide rows needs memory for each thread; one keeps it within the limit.
+    db.execute("SET threads = 1")
+    try:
+        for format_ in formats:
+            for name, sql in _PARTS.items():
+                path = target / f"{name}.{format_}"
+                _write(db, sql.format(sweep=int(sweep)), path, format_)
+                written.append(path)
+    finally:
+        db.execute(f"SET threads = {threads}")
     return written
+
+
+def _write(db: Database, sql: str, path: Path, format_: str) -> None:
+    if format_ == "csv":
+        _copy(db, _neutralised(db, sql), path, "FORMAT csv, HEADER true")
+    else:
+        _copy(db, sql, path, "FORMAT parquet, COMPRESSION zstd")
 
 
 def _copy(db: Database, sql: str, path: Path, options: str) -> None:

@@ -4,7 +4,6 @@ from __future__ import annotations
 
 from collections.abc import Mapping
 
-from sweep.engine.orders import FREEDOM_FOR_CRITERION
 from sweep.errors import Fault
 from sweep.panel.calendar import Calendar
 from sweep.panel.transforms import TRANSFORMS
@@ -17,7 +16,10 @@ from sweep.plan.choices import (
 )
 from sweep.plan.model import Finding, Plan
 
-__all__ = ["fewest_terms", "shortest_faults"]
+__all__ = ["FREEDOM_FOR_CRITERION", "fewest_terms", "shortest_faults"]
+
+FREEDOM_FOR_CRITERION = 20
+"""Degrees of freedom that the largest order considered must leave (common practice, no source)."""
 
 
 def shortest_faults(

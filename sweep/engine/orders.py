@@ -7,6 +7,7 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import NDArray
 
+from sweep.engine.feasible import FREEDOM_FOR_CRITERION
 from sweep.engine.panel import TaskPanel
 from sweep.engine.reasons import Reason
 from sweep.engine.task import System
@@ -15,13 +16,9 @@ from sweep.kernels.layout import Layout, Moments
 from sweep.kernels.stacks import factorise
 from sweep.plan.choices import LagChoice
 
-__all__ = ["FREEDOM_FOR_CRITERION", "OrderBook", "Orders", "term_space"]
+__all__ = ["OrderBook", "Orders", "term_space"]
 
 Ints = NDArray[np.int64]
-
-FREEDOM_FOR_CRITERION = 20
-"""Degrees of freedom that the largest order considered must leave (common practice)."""
-
 
 @dataclass(frozen=True, slots=True)
 class Orders:

@@ -11,8 +11,8 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import NDArray
 
+from sweep.engine.feasible import FREEDOM_FOR_CRITERION
 from sweep.engine.group import make_tasks
-from sweep.engine.orders import FREEDOM_FOR_CRITERION
 from sweep.engine.panel import window_values
 from sweep.engine.prepare import Prepared
 from sweep.engine.task import System, Task

@@ -5,6 +5,7 @@ from __future__ import annotations
 
 import time
 from collections.abc import Callable
+from concurrent.futures import Future, ThreadPoolExecutor
 from dataclasses import dataclass
 from pathlib import Path
 
@@ -15,8 +16,9 @@ from store.database import open_writing
 from sweep.engine.check import default_jobs
 from sweep.engine.group import make_tasks
 from sweep.engine.prepare import Prepared
+from sweep.engine.reasons import Status
 from sweep.engine.sink import StoreSink
-from sweep.engine.task import Outcome
+from sweep.engine.task import Outcome, Task
 from sweep.engine.waves import Broken, compute_in_waves
 from sweep.errors import Interrupted
 
@@ -133,28 +135,47 @@ def run_prepared(
 
 def _compute(
     sink: StoreSink,
-    tasks: list,  # type: ignore[type-arg]
+    tasks: list[Task],
     jobs: int,
     total: int,
     progress: Callable[[Progress], None] | None,
 ) -> int:
-    """Compute and write the tasks; return how many rows failed."""
+    """Compute the tasks; return how many rows failed.
+
+    One thread writes a wave while the workers compute the next: at most two are in memory.
+    """
     began = time.monotonic()
     done = failed = 0
-    for wave in compute_in_waves(tasks, jobs):
-        good = [item for item in wave if isinstance(item, Outcome)]
-        if good:
-            sink.write(good)
-        for item in wave:
-            if isinstance(item, Broken):
-                sink.failed(item.task.row, item.text)
-                failed += item.task.row.size
-                done += item.task.row.size
-        done += sum(item.row.size for item in good)
-        failed += sum(int((item.status == 3).sum()) for item in good)
-        if progress is not None:
-            progress(Progress(done, total, time.monotonic() - began))
+    with ThreadPoolExecutor(max_workers=1) as thread:
+        writing: Future[None] | None = None
+        for wave in compute_in_waves(tasks, jobs):
+            if writing is not None:
+                writing.result()
+            writing = thread.submit(_write, sink, wave)
+            done += sum(_rows(item) for item in wave)
+            failed += sum(_failed(item) for item in wave)
+            if progress is not None:
+                progress(Progress(done, total, time.monotonic() - began))
+        if writing is not None:
+            writing.result()
     return failed
+
+
+def _write(sink: StoreSink, wave: list[Outcome | Broken]) -> None:
+    good = [item for item in wave if isinstance(item, Outcome)]
+    if good:
+        sink.write(good)
+    for item in wave:
+        if isinstance(item, Broken):
+            sink.failed(item.task.row, item.text)
+
+
+def _rows(item: Outcome | Broken) -> int:
+    return int(item.task.row.size if isinstance(item, Broken) else item.row.size)
+
+
+def _failed(item: Outcome | Broken) -> int:
+    return _rows(item) if isinstance(item, Broken) else int((item.status == Status.FAILED).sum())
 
 
 def _wants_lags(prepared: Prepared) -> NDArray[np.bool_]:

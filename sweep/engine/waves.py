@@ -50,9 +50,10 @@ def compute_in_waves(
     if jobs == 1 or sum(task.cost for task in tasks) < INLINE_SECONDS:
         from threadpoolctl import threadpool_limits
 
-        with threadpool_limits(1):
-            for task in tasks:
-                yield [_guarded(work, task)]
+        for start in range(0, len(tasks), TASKS_A_WORKER):
+            with threadpool_limits(1):
+                wave = [_guarded(work, task) for task in tasks[start : start + TASKS_A_WORKER]]
+            yield wave
         return
     from sweep.engine.pool import WorkerPool
 

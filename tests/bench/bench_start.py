@@ -35,11 +35,16 @@ def test_start(tmp_path: Path) -> None:
     check = best([*command, "check", str(EXAMPLE)], tmp_path, 3)
     store = tmp_path / "us_macro.duckdb"
     run = measuring.run_measured([*command, "run", str(EXAMPLE), "--store", str(store)], tmp_path)
+    bare_store = tmp_path / "no_report.duckdb"
+    numbers = measuring.run_measured(
+        [*command, "run", str(EXAMPLE), "--store", str(bare_store), "--no-report"], tmp_path
+    )
     again = best([*command, "run", str(EXAMPLE), "--store", str(store)], tmp_path, 2)
     measuring.say(
         f"an empty interpreter         {bare:.2f} s",
         f"crosswind --help             {help_:.2f} s ({help_ / bare:.1f} times that)",
         f"crosswind check us_macro     {check:.2f} s",
         f"crosswind run us_macro       {run.seconds:.2f} s, peak memory {run.peak:.2f} GB",
+        f"the same without report      {numbers.seconds:.2f} s",
         f"the same run, all stored     {again:.2f} s",
     )
