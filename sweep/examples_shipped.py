@@ -42,7 +42,7 @@ def copy_example(name: str, folder: Path, *, overwrite: bool = False) -> list[Pa
         if target.exists() and not overwrite:
             raise InputFault(
                 Fault(str(target), "the file is there already",
-                      "Choose another folder with --output, or give --overwrite.")  # fmt: skip
+                      "Choose another folder with --output, or give --overwrite.")
             )
     for source, target in pairs:
         target.parent.mkdir(parents=True, exist_ok=True)

@@ -148,7 +148,14 @@ class Results:
         from sweep.report.content import FRAMES, content_of
 
         records = [self._record(int(n)) for n in self.findings["finding"]]
-        frames = {int(r["finding"]): self._frames(int(r["finding"]), FRAMES) for r in records}
+        with self._open() as database:
+            frames = {
+                int(record["finding"]): {
+                    name: getattr(read, name)(database, self.sweep, int(record["finding"]))
+                    for name in FRAMES
+                }
+                for record in records
+            }
         note = json.loads(str(self.info["data_note"]))
         same = note.pop("same numbers", [])
         info = {**self.info, "data_note": json.dumps(note, ensure_ascii=False)}
@@ -160,16 +167,28 @@ class Results:
         content = content_of(info, records, frames, ruled_out=ruled)
         return replace(content, redundancies=tuple(same))
 
-    def summary(self) -> list[tuple[str, list[str]]]:
-        """Return, for each finding, its statement and the sentences that sum it up."""
+    def summary(self, content: ReportContent | None = None) -> list[tuple[str, list[str]]]:
+        """Return, for each finding, its statement and the sentences that sum it up.
+
+        Parameters
+        ----------
+        content : ReportContent or None
+            What :meth:`content` returned, where it is at hand; read anew if None.
+        """
         from sweep.report.content import summary
 
         return [
             (found.context.statement, [found.reproduction.sentence, *summary(found)])
-            for found in self.content().findings
+            for found in (content or self.content()).findings
         ]
 
-    def report(self, path: str | Path | None = None, *, jobs: int | None = None) -> Path:
+    def report(
+        self,
+        path: str | Path | None = None,
+        *,
+        jobs: int | None = None,
+        content: ReportContent | None = None,
+    ) -> Path:
         """Write the report as one self-contained HTML file and return its path.
 
         Parameters
@@ -178,12 +197,14 @@ class Results:
             Where; beside the store if none is given.
         jobs : int or None
             Worker processes that draw; None for one a core.
+        content : ReportContent or None
+            What :meth:`content` returned, where it is at hand; read anew if None.
         """
         from sweep.engine.check import default_jobs
         from sweep.report.page import page
 
         target = Path(path) if path is not None else self.store.with_suffix(".html")
-        text = page(self.content(), jobs=jobs or default_jobs())
+        text = page(content or self.content(), jobs=jobs or default_jobs())
         partial = target.with_name(target.name + ".part")
         try:
             partial.write_text(text, encoding="utf-8")

@@ -11,6 +11,7 @@ import click
 if TYPE_CHECKING:
     import pandas as pd
 
+    from sweep.report.content import ReportContent
     from sweep.results import Results
 
 __all__ = [
@@ -59,10 +60,12 @@ def print_rows(columns: list[str], rows: list[list[Any]]) -> None:
 
 
 def _numeric(text: str) -> bool:
-    return bool(text) and text.lstrip("−-<>")[:1].isdigit() or text in ("–", "")
+    return text in ("–", "") or text.lstrip("−-<>")[:1].isdigit()
 
 
-def print_summary(results: Results, finding: str | None = None) -> None:
+def print_summary(
+    results: Results, finding: str | None = None, content: ReportContent | None = None
+) -> None:
     """Print the sentences that sum up each finding, wrapped for a terminal."""
     import shutil
     import textwrap
@@ -71,7 +74,7 @@ def print_summary(results: Results, finding: str | None = None) -> None:
     if finding is not None:
         results.survival(finding=finding)  # refuses a finding that is not there
     for name, (statement, sentences) in zip(
-        results.findings["name"], results.summary(), strict=True
+        results.findings["name"], results.summary(content), strict=True
     ):
         if finding is not None and str(name) != finding:
             continue

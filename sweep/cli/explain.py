@@ -60,11 +60,14 @@ def command(
 
 def _lines(found: Explanation) -> list[str]:
     width = 96
-    lines = [f"{found.row['finding']}: {found.statement}", f"Specification {found.row['specification']}"]
+    row = found.row
+    lines = [f"{row['finding']}: {found.statement}", f"Specification {row['specification']}"]
     name = max(len(axis) for axis, _, _ in found.choices)
     for axis, label, because in found.choices:
-        lines.append(f"  {axis.ljust(name)}  {label}" + (f"  (because {because})" if because else ""))
-    for sentence in (*found.sample, *found.regression, f"Hypothesis: {found.null}.", *found.verdict):
+        reason = f"  (because {because})" if because else ""
+        lines.append(f"  {axis.ljust(name)}  {label}{reason}")
+    hypothesis = f"Hypothesis: {found.null}."
+    for sentence in (*found.sample, *found.regression, hypothesis, *found.verdict):
         lines.append(textwrap.fill(sentence, width))
     return lines
 

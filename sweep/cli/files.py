@@ -20,7 +20,7 @@ def write_new(path: Path, text: str, *, overwrite: bool = False) -> None:
     if path.exists() and not overwrite:
         raise InputFault(
             Fault(str(path), "the file is there already",
-                  "Name another with --output, or give --overwrite.")  # fmt: skip
+                  "Name another with --output, or give --overwrite.")
         )
     try:
         path.write_text(text, encoding="utf-8")

@@ -34,7 +34,7 @@ def guarded(group: click.Group, arguments: list[str] | None) -> Any:
         # The reader of our output went away; nothing more can be said to it.
         os.dup2(os.open(os.devnull, os.O_WRONLY), sys.stdout.fileno())
         _leave(0)
-    except Exception as error:  # noqa: BLE001  (sorted by its own exit code, else re-raised)
+    except Exception as error:  # sorted by its own exit code, else re-raised
         known = _store_exit_code(error)
         if known is None:
             raise

@@ -11,6 +11,7 @@ from sweep.cli.common import plan_argument, print_summary
 from sweep.errors import RuleNotMet
 
 if TYPE_CHECKING:
+    from sweep.report.content import ReportContent
     from sweep.results import Results
 
 
@@ -42,13 +43,13 @@ def command(
     assert done is not None
     if not quiet:
         click.echo(_did(results), err=True)
-    print_summary(results)
-    if report:
-        path = results.report(jobs=jobs)
-        if not quiet:
-            click.echo(f"\nReport: {_short(path)}", err=True)
+    content = results.content()
+    path = results.report(jobs=jobs, content=content) if report else None
+    print_summary(results, content=content)
+    if path is not None and not quiet:
+        click.echo(f"\nReport: {_short(path)}", err=True)
     if "reproduced" in rules:
-        _require_reproduced(results)
+        _require_reproduced(content)
     return 3 if done.failed else 0
 
 
@@ -74,9 +75,9 @@ def _short(path: Path) -> str:
     return shown_path(path)
 
 
-def _require_reproduced(results: Results) -> None:
+def _require_reproduced(content: ReportContent) -> None:
     """Fail unless every finding with reported numbers reproduces them, and there is one."""
-    found = [f.reproduction for f in results.content().findings]
+    found = [f.reproduction for f in content.findings]
     told = [item for item in found if item.reproduced is not None]
     if not told:
         raise RuleNotMet(

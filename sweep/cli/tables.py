@@ -24,15 +24,15 @@ def survival_rows(results: Results, frame: pd.DataFrame) -> Iterator[str]:
         yield f"\n{names.get(finding, finding)}, by {axis}"
         rows = [
             (
-                f"{row.choice}{' (baseline)' if row.is_baseline and axis != 'all' else ''}",
-                f"{row.survived:,}",
-                f"{row.admissible:,}",
-                percent(row.headline_share),
-                percent(row.share_at_1),
-                percent(row.share_at_10),
-                f"{row.planned - row.admissible:,}",
+                f"{row['choice']}{' (baseline)' if row['is_baseline'] and axis != 'all' else ''}",
+                f"{row['survived']:,}",
+                f"{row['admissible']:,}",
+                percent(row["headline_share"]),
+                percent(row["share_at_1"]),
+                percent(row["share_at_10"]),
+                f"{row['planned'] - row['admissible']:,}",
             )
-            for row in part.itertuples()
+            for row in part.to_dict("records")
         ]
         width = [max(len(r[j]) for r in [COLUMNS, *rows]) for j in range(len(COLUMNS))]
         for row in [COLUMNS, *rows]:

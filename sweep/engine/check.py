@@ -166,7 +166,7 @@ def _ruled(prepared: Prepared) -> list[RuledOut]:
                     count,
                     "a Hodrick-Prescott filter uses every value of its window, so it does not go "
                     "with an episode left out (where the filtered series is in the regression)",
-                )  # fmt: skip
+                )
             )
     return found
 

@@ -57,7 +57,7 @@ def compute_task(task: Task) -> Outcome:
     groups = [_group(task, orders, members) for members in _split(task)]
     for group in groups:
         for forward, backward, members in _pieces(task, group):
-            windows = np.unique(task.window[members])
+            windows = np.unique(task.window[members]).astype(np.int64)
             names = {task.procedures[p].covariance for p in np.unique(task.procedure[members])}
             single = bool(task.coefficients[members].any())
             fits.ask(forward, windows, names, single_lags=single)
@@ -109,9 +109,10 @@ def _pieces(task: Task, group: _Group) -> list[tuple[Equation, Equation, Ints]]:
     system = task.systems[group.system]
     pieces = []
     for piece, example in enumerate(window[which].tolist()):
-        kind = [int(part[example]) for part in parts]
-        ahead = Equation.of(system, tuple(kind[:3]), kind[3], group.term, reverse=False)
-        back = Equation.of(system, tuple(kind[4:7]), kind[7], group.term, reverse=True)
+        own, cause, given, start, *turned = (int(part[example]) for part in parts)
+        ahead = Equation.of(system, (own, cause, given), start, group.term, reverse=False)
+        own, cause, given, start = turned
+        back = Equation.of(system, (own, cause, given), start, group.term, reverse=True)
         pieces.append((ahead, back, members[number.reshape(-1) == piece]))
     return pieces
 
@@ -232,7 +233,7 @@ class _Sheet:
                 value.reshape(-1),
                 error.reshape(-1),
                 p_value.reshape(-1),
-            )  # fmt: skip
+            )
         )
 
     def outcome(self) -> Outcome:

@@ -124,19 +124,20 @@ def _prepared(results: Results, data: Path | None) -> Prepared:
         raise InputFault(
             Fault(
                 str(candidates[0]), "the data file is not there", "Name it with --data FILE."
-            )  # fmt: skip
+            )
         )
     from sweep.engine.prepare import with_data
 
     prepared = prepare(with_data(plan, path))
-    for record, key in zip(results.findings.itertuples(), prepared.data_keys, strict=True):
-        if (int(record.data_high), int(record.data_low)) != key:
+    held = zip(results.findings["data_high"], results.findings["data_low"], strict=True)
+    for (high, low), key in zip(held, prepared.data_keys, strict=True):
+        if (int(high), int(low)) != key:
             raise InputFault(
                 Fault(
                     str(path),
                     "the data have changed since this sweep was run",
                     "Run the plan again, or name the earlier file with --data FILE.",
-                )  # fmt: skip
+                )
             )
     return prepared
 
@@ -211,8 +212,7 @@ def _compare(row: dict[str, Any], slow: SlowResult) -> list[Compared]:
     compared = []
     for name, value in pairs:
         stored = row[name]
-        known = stored is not None and stored == stored
-        compared.append(Compared(name, float(stored) if known else None, value))
+        compared.append(Compared(name, None if missing(stored) else float(stored), value))
     return compared
 
 
@@ -241,7 +241,7 @@ def _verdict(row: dict[str, Any]) -> list[str]:
     admissible = bool(row["admissible"])
     sentences.append("It is admissible." if admissible else "It is not admissible.")
     survives = row["survives"]
-    if admissible and survives is not None and survives == survives:
+    if admissible and not missing(survives):
         sentences.append("The claim holds in it." if survives else "The claim does not hold in it.")
     sentences.append(f"Direction: {row['verdict']}.")
     return sentences

@@ -85,6 +85,17 @@ class Equation:
         held[self.effect], held[self.cause] = own, cause
         return held | dict(self.exogenous)
 
+    def sample_reach(self) -> dict[int, int]:
+        """Return the largest lag that a row must have of every series.
+
+        A common sample holds the rows that its order would use, also beside an episode
+        left out, so its lags must exist whether or not they are regressors.
+        """
+        reach = self.reach()
+        if self.start > max(reach.values()):
+            reach |= dict.fromkeys(self.modelled, self.start)
+        return reach
+
 
 @dataclass(frozen=True, slots=True)
 class Fitted:
@@ -168,7 +179,7 @@ class FitBook:
             equation = request.equation
             assert equation is not None
             moments, _ = self._panel.moments(equation.term)
-            reach = tuple(sorted(equation.reach().items()))
+            reach = tuple(sorted(equation.sample_reach().items()))
             samples[id(moments), reach, equation.start].append(request)
         for requests in samples.values():
             self._fit_sample(requests)
@@ -180,7 +191,7 @@ class FitBook:
         equation = requests[0].equation
         assert equation is not None
         moments, _ = self._panel.moments(equation.term)
-        held = sorted(equation.reach().items())
+        held = sorted(equation.sample_reach().items())
         layout = Layout(moments.terms, tuple(c for c, _ in held), tuple(lag for _, lag in held))
         union = np.any([request.windows for request in requests], axis=0)
         windows = np.flatnonzero(union)

@@ -95,15 +95,16 @@ class OrderBook:
             )
         failed = (chosen == 0) & (reason == Reason.NONE)
         if failed.any():
-            layout, start = self._layout(system, moments.terms, choice.maximum)
+            layout, start = self._layout(system, moments.terms, choice.maximum, choice.common)
             select = windows[failed]
             gram = moments.gram(select, layout, start)
             singular = ~term_space(gram.products[:, columns[:, None], columns])
             reason[failed] = np.where(singular, Reason.TERM, Reason.COLLINEAR)
         return chosen, reason
 
-    def _layout(self, system: System, terms: int, order: int) -> tuple[Layout, int]:
-        held = {column: order for column in system.modelled}
+    def _layout(self, system: System, terms: int, order: int, common: int) -> tuple[Layout, int]:
+        """Return the columns of an order's regressions and the rows left out at the start."""
+        held = {column: max(order, common) for column in system.modelled}
         held |= dict(system.exogenous)
         columns = tuple(sorted(held))
         layout = Layout(terms, columns, tuple(held[column] for column in columns))
@@ -150,8 +151,8 @@ class OrderBook:
             open_ = np.flatnonzero(largest == 0)
             if not open_.size:
                 break
-            layout, start = self._layout(system, moments.terms, order)
-            rows = moments.observations(windows[open_], layout, max(start, choice.common))
+            layout, start = self._layout(system, moments.terms, order, choice.common)
+            rows = moments.observations(windows[open_], layout, start)
             enough = rows - (fixed + width * order) >= FREEDOM_FOR_CRITERION
             largest[open_[enough]] = order
         return largest
@@ -166,8 +167,7 @@ class OrderBook:
         effect: int,
         common: int,
     ) -> tuple[NDArray[np.float64], Ints]:
-        layout, start = self._layout(system, moments.terms, maximum)
-        start = max(start, common)
+        layout, start = self._layout(system, moments.terms, maximum, common)
         gram = moments.gram(windows, layout, start)
         exogenous = [layout.at(c, lag) for c, lags in system.exogenous for lag in range(lags + 1)]
         lagged = [layout.at(c, lag) for lag in range(1, maximum + 1) for c in system.modelled]

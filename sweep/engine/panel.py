@@ -31,7 +31,7 @@ class TaskPanel:
 
     def __init__(self, task: Task) -> None:
         self.task = task
-        self.lags = max((max(c.own, c.cause, c.given, c.maximum) for c in task.lags), default=1)
+        self.lags = max((max(c.own, c.cause, c.given, c.maximum, c.common) for c in task.lags), default=1)
         exogenous = [lags for system in task.systems for _, lags in system.exogenous]
         self.lags = max([self.lags, *exogenous])
         self._local: Floats | None = None

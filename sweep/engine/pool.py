@@ -51,9 +51,10 @@ class WorkerPool:
     def _alone(self, task: Task) -> Outcome | Broken:
         self._pool = self._open()
         try:
-            return list(self._pool([delayed(_work)(self._work, task)]))[0]
+            done: list[Outcome | Broken] = list(self._pool([delayed(_work)(self._work, task)]))
         except TerminatedWorkerError:
             return Broken(task, DIED)
+        return done[0]
 
 
 def _work(work: Callable[[Task], Outcome], task: Task) -> Outcome | Broken:

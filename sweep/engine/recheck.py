@@ -132,9 +132,12 @@ def _direction(
     series.append((values[:, system.effect], 1, own))
     series += [(values[:, c], 1, given) for c in system.given]
     series.append((values[:, system.cause], 1, cause))
-    series += [(values[:, c], 0, 0) for c in (system.effect, system.cause, *system.given)]
+    # The current values and, on a common sample, its lags: they say which rows are complete.
+    series += [
+        (values[:, c], 0, choice.common) for c in (system.effect, system.cause, *system.given)
+    ]
     rows, which = plain_design(series, terms, *bounds, start)
-    current = 2 + len(system.given)
+    current = (2 + len(system.given)) * (choice.common + 1)
     regressors = rows[:, :-current]
     effect = rows[:, regressors.shape[1]]
     fit = plain_fit(effect, regressors[:, :-cause], regressors[:, -cause:])
@@ -166,7 +169,7 @@ def _orders(
     for maximum in range(choice.maximum, 0, -1):
         table, rows = plain_orders(
             values[:, modelled], exogenous, terms, bounds, maximum, effect=effect,
-            start=choice.common,
+            common=choice.common,
         )  # fmt: skip
         if rows - (fixed + width * maximum) >= FREEDOM_FOR_CRITERION:
             order = plain_order(

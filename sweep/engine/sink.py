@@ -315,4 +315,4 @@ def package_versions() -> dict[str, str]:
     return found
 
 
-assert RULED > max(Reason)
+assert max(Reason) < RULED

@@ -143,4 +143,4 @@ def _general_to_specific(log_determinant: Floats, rows: Ints, df: int, level: fl
     statistic = rows[:, None] * (log_determinant[:, :-1] - log_determinant[:, 1:])
     rejects = chi_square_tail(np.maximum(statistic, 0.0), float(df)) <= level
     orders = np.arange(1, rejects.shape[1] + 1)
-    return np.where(rejects, orders, 1).max(axis=1)
+    return np.asarray(np.where(rejects, orders, 1).max(axis=1), dtype=np.int64)

@@ -75,7 +75,8 @@ class RunningMoments:
     def observations(self, select: Ints, layout: Layout, start: int) -> Ints:
         """Return the regression rows T of each selected window, shape (w,)."""
         first, last = self.usable(layout.columns)
-        return np.maximum(last[select] - first[select] - start + 1, 0)
+        count: Ints = np.maximum(last[select] - first[select] - start + 1, 0)
+        return count
 
     def gram(self, select: Ints, layout: Layout, start: int) -> Gram:
         """Return the cross products over rows ``first + start`` … ``last``."""
@@ -95,8 +96,8 @@ class RunningMoments:
 
     def design(self, select: Ints, layout: Layout, start: int) -> list[tuple[Ints, Floats]]:
         """Return (positions in ``select``, rows (w, t, c)) in groups of equal length."""
-        first, last = self.usable(layout.columns)
-        first, count = first[select] + start - self.low, self.observations(select, layout, start)
+        first = self.usable(layout.columns)[0][select] + start - self.low
+        count = self.observations(select, layout, start)
         groups = []
         for length in np.unique(count):
             members = np.flatnonzero(count == length)
@@ -130,7 +131,8 @@ class RunningMoments:
         gap = np.abs(lag[:, None] - lag)
         sums[d:, d:] = d * d + d * m * depth + (recent * m + older) * depth + gap
         shift[d:, d:] = np.minimum(lag[:, None], lag)
-        return sums * self._running.shape[1] - shift
+        address: Ints = sums * self._running.shape[1] - shift
+        return address
 
 
 def _bounds(exists: NDArray[np.bool_], low: int) -> tuple[int, int]:

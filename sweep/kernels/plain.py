@@ -135,10 +135,18 @@ def plain_robust(fit: PlainFit, covariance: str) -> Floats:
     """Return the sandwich covariance of all coefficients, shape (k, k).
 
     White (1980); MacKinnon & White (1985): HC0, HC1, HC2, HC3.
+
+    Raises
+    ------
+    ValueError
+        If HC2 or HC3 does not exist because an observation is fitted exactly.
     """
     design, t, k = fit.design, fit.observations, fit.regressors
     inverse = np.linalg.inv(design.T @ design)
     leverage = np.einsum("ti,ij,tj->t", design, inverse, design)
+    if covariance in ("HC2", "HC3") and leverage.max() > 1 - 1e-10:
+        raise ValueError("an observation is fitted exactly")
+    leverage = np.minimum(leverage, 1 - 1e-10)
     weight = {
         "HC0": np.ones(t),
         "HC1": np.full(t, t / (t - k)),
@@ -157,7 +165,7 @@ def plain_orders(
     maximum: int,
     *,
     effect: int | None = None,
-    start: int = 0,
+    common: int = 0,
 ) -> tuple[Floats, int]:
     """Return ln|Σ_p| (T divisor, common sample) of p = 0…maximum and the rows T.
 
@@ -174,15 +182,16 @@ def plain_orders(
         Largest order.
     effect : int or None
         The one equation that counts; None for all of them.
-    start : int
-        Smallest number of rows left out at the start.
+    common : int
+        Order whose rows are used where it is larger than ``maximum``.
     """
-    start = max([start, maximum, *(lags for _, lags in exogenous)])
+    start = max([common, maximum, *(lags for _, lags in exogenous)])
     extra = [(column, 0, lags) for column, lags in exogenous]
-    lags = [(values[:, j], 0, maximum) for j in range(values.shape[1])]
+    deepest = max(maximum, common)
+    lags = [(values[:, j], 0, deepest) for j in range(values.shape[1])]
     rows, _ = plain_design([*extra, *lags], terms, bounds[0], bounds[1], start)
     fixed = terms.shape[1] + sum(lags + 1 for _, lags in exogenous)
-    lagged = rows[:, fixed:].reshape(rows.shape[0], values.shape[1], maximum + 1)
+    lagged = rows[:, fixed:].reshape(rows.shape[0], values.shape[1], deepest + 1)
     current = lagged[:, :, 0] if effect is None else lagged[:, [effect], 0]
     result = np.empty(maximum + 1)
     for order in range(maximum + 1):

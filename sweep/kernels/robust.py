@@ -150,7 +150,7 @@ def _weight(name: str, leverage: Floats, k: int) -> tuple[Floats, np.ndarray]:
     if name == "HC1":
         return np.full_like(leverage, count / (count - k)), np.zeros(leverage.shape[0], bool)
     room = 1.0 - leverage
-    exact = (room < FULL_LEVERAGE).any(axis=1)
+    exact = np.asarray((room < FULL_LEVERAGE).any(axis=1))
     room = np.where(room < FULL_LEVERAGE, 1.0, room)
     return room ** (-1.0 if name == "HC2" else -2.0), exact
 

@@ -249,7 +249,7 @@ def _cholesky(products: Floats, usable: np.ndarray) -> Floats:
     """Return lower factors, NaN where there is none."""
     if usable.all():
         try:
-            return np.linalg.cholesky(products)
+            return np.asarray(np.linalg.cholesky(products), dtype=np.float64)
         except np.linalg.LinAlgError:
             pass
     lower = np.full_like(products, np.nan)
@@ -280,7 +280,7 @@ def _needs_qr(pivots: Floats, cancellation: Floats) -> np.ndarray:
     """
     with np.errstate(divide="ignore", invalid="ignore"):
         bound = EPSILON * cancellation.max(axis=1) / pivots.min(axis=1) ** 2
-    return ~(bound <= QR_TRIGGER)
+    return np.asarray(~(bound <= QR_TRIGGER))
 
 
 def _redo_by_qr(
@@ -296,7 +296,7 @@ def _redo_by_qr(
     """Replace the factors of some windows by QR on their rows, in place."""
     for inside, rows in moments.design(select[members], layout, start):
         matrix = rows[:, :, order]
-        upper = np.linalg.qr(matrix, mode="r")
+        upper: Floats = np.asarray(np.linalg.qr(matrix, mode="r"))
         diagonal = np.einsum("wcc->wc", upper)
         norms = np.sqrt((matrix**2).sum(axis=1))
         lower[members[inside]] = (upper * np.where(diagonal < 0, -1.0, 1.0)[:, :, None]).transpose(
@@ -340,10 +340,10 @@ def _spread(gram: Gram, regression: Regression) -> Floats:
     mean = gram.products[:, 0, held] / count
     variance = np.einsum("wcc->wc", gram.products)[:, held] / count - mean**2
     deviation = np.sqrt(np.maximum(variance, 0.0))
-    return np.divide(
-        deviation[:, :1], deviation[:, 1:], out=np.full_like(deviation[:, 1:], np.nan),
-        where=deviation[:, 1:] > 0,
-    )  # fmt: skip
+    effects = deviation[:, 1:]
+    ratio: Floats = np.full_like(effects, np.nan)
+    np.divide(deviation[:, :1], effects, out=ratio, where=effects > 0)
+    return ratio
 
 
 def forward(lower: Floats, right: Floats) -> Floats:

@@ -73,7 +73,7 @@ def _trend(number: int, context: TermContext) -> Floats:
 
 def _season(number: int, context: TermContext) -> Floats:
     """Centred dummy: one in its season, minus one over the seasons everywhere."""
-    return (context.season == number) - 1.0 / context.seasons
+    return np.asarray((context.season == number) - 1.0 / context.seasons)
 
 
 def _step(number: int, context: TermContext) -> Floats:

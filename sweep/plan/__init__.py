@@ -1,0 +1,1 @@
+"""From a TOML file to a table of specifications; pure, nothing is estimated."""

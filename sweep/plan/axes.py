@@ -203,7 +203,7 @@ class _Builder:
                     table.claim,
                     SIGNS[table.sign],
                     SIGNS[table.reverse_sign],
-                )  # fmt: skip
+                )
             )
         return tuple(result)
 
@@ -285,8 +285,11 @@ class _Builder:
             assert isinstance(choice, TransformationChoice)
             for name, _ in choice.series:
                 if name not in known:
-                    self.fault("axes.transformations", f'"{choice.label}" names the series "{name}", '
-                               "which no finding uses" + suggestion(name, known))  # fmt: skip
+                    self.fault(
+                        "axes.transformations",
+                        f'"{choice.label}" names the series "{name}", which no finding uses'
+                        + suggestion(name, known),
+                    )
 
     def construction_notes(self) -> None:
         """Name choices that give the same numbers whatever the data."""
@@ -367,7 +370,7 @@ def _check_baseline(plan: Plan) -> None:
                 "baseline.window",
                 "the baseline is one specification, and a moving window is many",
                 "Choose a fixed window.",
-            )  # fmt: skip
+            )
         )
     for finding, axes in zip(plan.findings, plan.finding_axes, strict=True):
         for number, rule in enumerate(plan.rules, start=1):
@@ -378,7 +381,7 @@ def _check_baseline(plan: Plan) -> None:
                         f"rule_out[{number}]",
                         f'rules out the baseline of "{finding.name}"',
                         "Narrow the rule or change the baseline.",
-                    )  # fmt: skip
+                    )
                 )
 
 

@@ -67,7 +67,8 @@ def lag_choice(entry: int | str | LagTable, frequency: Frequency) -> LagChoice:
         meaning["common"] = common
         label += f", sample of {common}"
     return LagChoice(
-        entry.name or label, meaning, entry.because, own=own, cause=cause, given=given, common=common
+        entry.name or label, meaning, entry.because, own=own, cause=cause, given=given,
+        common=common,
     )  # fmt: skip
 
 
@@ -79,7 +80,7 @@ def _criterion_choice(entry: LagTable, common: int, frequency: Frequency) -> Lag
             f"the common order {common} is smaller than the criterion's maximum {maximum}"
         )
     meaning: dict[str, Any] = {"criterion": criterion}
-    label = criterion
+    label: str = criterion
     if maximum != frequency.criterion_maximum:
         meaning["maximum"] = maximum
         label += f" up to {maximum}"
@@ -238,7 +239,7 @@ def transformation_choice(
     if horizon and "Hamilton cycle" not in used:
         raise ValueError('"horizon" goes with "Hamilton cycle"')
     meaning: dict[str, Any] = {"default": entry.default}
-    label = entry.default
+    label: str = entry.default
     if series:
         meaning["series"] = dict(series)
         label += "; " + "; ".join(f"{name}: {kind}" for name, kind in series)
@@ -259,7 +260,7 @@ def procedure_choice(entry: str | ProcedureTable) -> ProcedureChoice:
     if isinstance(entry, str):
         entry = ProcedureTable.model_validate({"test": entry})
     meaning: dict[str, Any] = {"statistic": entry.statistic}
-    label = entry.statistic
+    label: str = entry.statistic
     if entry.covariance != "classical":
         meaning["covariance"] = entry.covariance
         label += f", {entry.covariance}"

@@ -88,7 +88,7 @@ def _fault(item: Any) -> Fault:
     if kind in ("literal_error", "union_tag_invalid"):
         known = re.findall(r"'([^']*)'", text)
         return Fault(place, f'"{item["input"]}" is not known here' + _near(item["input"], known))
-    if kind.startswith("greater_than") or kind.startswith("less_than"):
+    if kind.startswith(("greater_than", "less_than")):
         return Fault(place, f"{item['input']} is out of range", text.replace("Input", "It") + ".")
     if kind == "too_short":
         return Fault(place, "an empty list leaves nothing to run", "Give at least one choice.")

@@ -1,4 +1,4 @@
-"""Did you mean …"""
+"""Did you mean: the known name that is nearest to an unknown one."""
 
 from __future__ import annotations
 

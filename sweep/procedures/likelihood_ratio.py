@@ -22,6 +22,6 @@ def applies(choice: ProcedureChoice) -> str | None:
 
 def compute(evidence: Evidence, choice: ProcedureChoice) -> Statistic:
     """Return T ln(s0/s1), from ln(1 + (s0 − s1)/s1), and its tail on χ²(q)."""
-    value = evidence.observations * np.log1p(evidence.explained / evidence.residual)
+    value = evidence.observations.astype(float) * np.log1p(evidence.explained / evidence.residual)
     q = evidence.restrictions
     return Statistic(value, q, None, chi_square_tail(value, float(q)))
