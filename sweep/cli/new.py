@@ -13,10 +13,10 @@ import click
               help="Copy a shipped example instead: us_macro (the default) or harbour.")
 @click.option("--output", type=click.Path(path_type=Path), default=None,
               help="Plan file to write (with --example, the folder); beside DATA if left out.")
-@click.option("--overwrite", is_flag=True, help="Replace files that are there already.")  # fmt: skip
+@click.option("--overwrite", is_flag=True, help="Replace files that are there already.")
 def command(
-    data: Path | None, example: str | None, output: Path | None, overwrite: bool
-) -> None:
+    data: Path | None, example: str | None, output: Path | None, *, overwrite: bool
+) -> None:  # fmt: skip
     """Read a data file and write a commented starter plan beside it.
 
     DATA is a CSV, Parquet or Excel file with a column of dates.

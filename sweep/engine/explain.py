@@ -212,7 +212,8 @@ def _compare(row: dict[str, Any], slow: SlowResult) -> list[Compared]:
     compared = []
     for name, value in pairs:
         stored = row[name]
-        compared.append(Compared(name, None if missing(stored) else float(stored), value))
+        known = stored is not None and stored == stored  # noqa: PLR0124 - NaN is not itself
+        compared.append(Compared(name, float(stored) if known else None, value))
     return compared
 
 
@@ -241,7 +242,7 @@ def _verdict(row: dict[str, Any]) -> list[str]:
     admissible = bool(row["admissible"])
     sentences.append("It is admissible." if admissible else "It is not admissible.")
     survives = row["survives"]
-    if admissible and not missing(survives):
+    if admissible and survives is not None:
         sentences.append("The claim holds in it." if survives else "The claim does not hold in it.")
     sentences.append(f"Direction: {row['verdict']}.")
     return sentences

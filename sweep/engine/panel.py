@@ -31,9 +31,9 @@ class TaskPanel:
 
     def __init__(self, task: Task) -> None:
         self.task = task
-        self.lags = max((max(c.own, c.cause, c.given, c.maximum, c.common) for c in task.lags), default=1)
+        orders = [max(c.own, c.cause, c.given, c.maximum, c.common) for c in task.lags]
         exogenous = [lags for system in task.systems for _, lags in system.exogenous]
-        self.lags = max([self.lags, *exogenous])
+        self.lags = max([1, *orders, *exogenous])
         self._local: Floats | None = None
         self._built: dict[bool, tuple[Moments, tuple[Term, ...]]] = {}
         self.blocked = _filter_meets_episode(task)

@@ -2,7 +2,6 @@
 
 from __future__ import annotations
 
-
 import time
 from collections.abc import Callable
 from concurrent.futures import Future, ThreadPoolExecutor

@@ -77,11 +77,11 @@ def _season(number: int, context: TermContext) -> Floats:
 
 
 def _step(number: int, context: TermContext) -> Floats:
-    return (context.rows >= number).astype(float)
+    return np.asarray(context.rows >= number, dtype=np.float64)
 
 
 def _pulse(number: int, context: TermContext) -> Floats:
-    return (context.rows == number).astype(float)
+    return np.asarray(context.rows == number, dtype=np.float64)
 
 
 def _sine(number: int, context: TermContext) -> Floats:

@@ -91,12 +91,18 @@ class FindingTable(Table):
     """A claim: cause, effect, and what it is conditioned on."""
 
     name: StrictStr = Field(min_length=1, description="Short name of the finding.")
-    cause: StrictStr
-    effect: StrictStr
+    cause: StrictStr = Field(description="Column, or role under measures, said to lead.")
+    effect: StrictStr = Field(description="Column or role said to follow.")
     given: list[StrictStr] = Field(default=[], description="Conditioning series.")
-    claim: Literal["leads", "leads one way", "leads both ways", "does not lead"] = "leads"
-    sign: Literal["positive", "negative"] | None = None
-    reverse_sign: Literal["positive", "negative"] | None = None
+    claim: Literal["leads", "leads one way", "leads both ways", "does not lead"] = Field(
+        default="leads", description="What is said of cause and effect."
+    )
+    sign: Literal["positive", "negative"] | None = Field(
+        default=None, description="Sign of the effect that the claim names, if any."
+    )
+    reverse_sign: Literal["positive", "negative"] | None = Field(
+        default=None, description='Sign of the reverse effect, with "leads both ways".'
+    )
     exogenous: list[ExogenousTable] = Field(default=[], description="Unmodelled regressors.")
 
     @model_validator(mode="after")
@@ -111,9 +117,9 @@ class FindingTable(Table):
 class ReportedTable(Table):
     """The numbers that are in print."""
 
-    statistic: float | None = None
-    p_value: float | None = Field(default=None, ge=0, le=1)
-    observations: StrictInt | None = Field(default=None, ge=1)
+    statistic: float | None = Field(default=None, description="Printed statistic.")
+    p_value: float | None = Field(default=None, ge=0, le=1, description="Printed p-value.")
+    observations: StrictInt | None = Field(default=None, ge=1, description="Printed rows T.")
     tolerance: float = Field(
         default=0.0005, gt=0, description="Largest difference that counts as reproduced."
     )
@@ -125,13 +131,25 @@ class ReportedTable(Table):
 class BaselineTable(Table):
     """The specification that is reported: one choice an axis."""
 
-    lags: LagEntry
-    deterministics: DeterministicEntry = "constant"
-    window: WindowEntry = "full sample"
-    transformation: TransformationEntry
-    test: ProcedureEntry = "F"
-    conditioning: Literal["given", "pairwise"] = "given"
-    reported: ReportedTable | None = None
+    lags: LagEntry = Field(description="Order or criterion.")  # type: ignore[valid-type]
+    deterministics: DeterministicEntry = Field(  # type: ignore[valid-type]
+        default="constant", description="Deterministic terms."
+    )
+    window: WindowEntry = Field(  # type: ignore[valid-type]
+        default="full sample", description="Sample window, a fixed one."
+    )
+    transformation: TransformationEntry = Field(  # type: ignore[valid-type]
+        description="Scale of the series."
+    )
+    test: ProcedureEntry = Field(  # type: ignore[valid-type]
+        default="F", description="Statistic and covariance."
+    )
+    conditioning: Literal["given", "pairwise"] = Field(
+        default="given", description="With or without the given series."
+    )
+    reported: ReportedTable | None = Field(
+        default=None, description="The numbers in print, to be reproduced."
+    )
 
 
 def _axis(entry: Any, description: str) -> Any:
@@ -166,15 +184,17 @@ class RuleTable(Table):
     """A combination that the author holds indefensible."""
 
     when: WhenTable
-    because: StrictStr = Field(min_length=1)
+    because: StrictStr = Field(min_length=1, description="Why it is ruled out.")
     finding: StrictStr | None = Field(default=None, description="Only for this finding.")
 
 
 class ScreensTable(Table):
     """Preconditions: those a specification must pass, and those only shown."""
 
-    require: list[StrictStr] = Field(default=["enough observations"])
-    report: list[StrictStr] = Field(default=[])
+    require: list[StrictStr] = Field(
+        default=["enough observations"], description="Screens that an admissible row passes."
+    )
+    report: list[StrictStr] = Field(default=[], description="Screens that are only shown.")
 
 
 class SampleDesign(Table):
@@ -186,7 +206,9 @@ class SampleDesign(Table):
 class SweepTable(Table):
     """How much of the cross is run."""
 
-    design: anything_of(SampleDesign, Literal["full", "one change", "two changes"]) = "full"  # type: ignore[valid-type]
+    design: anything_of(SampleDesign, Literal["full", "one change", "two changes"]) = Field(  # type: ignore[valid-type]
+        default="full", description="Full cross, changes from the baseline, or a sample."
+    )
     coefficients: Literal["baseline", "fixed windows", "all", "none"] = Field(
         default="fixed windows",
         description="For which specifications each lag's coefficient is kept.",
@@ -205,14 +227,16 @@ Later = SkipJsonSchema[Annotated[Any, AfterValidator(_unavailable)]]
 class PlanDocument(Table):
     """A whole plan file."""
 
-    title: StrictStr = Field(min_length=1)
-    significance: float = Field(default=0.05, gt=0, lt=1)
-    seed: StrictInt = Field(default=0, ge=0)
+    title: StrictStr = Field(min_length=1, description="What the plan asks, in words.")
+    significance: float = Field(
+        default=0.05, gt=0, lt=1, description="Level at which a hypothesis is rejected."
+    )
+    seed: StrictInt = Field(default=0, ge=0, description="Seed of everything random.")
     data: DataTable
     findings: list[FindingTable] = Field(min_length=1)
     baseline: BaselineTable
     axes: AxesTable = AxesTable()
-    rule_out: list[RuleTable] = []
+    rule_out: list[RuleTable] = Field(default=[], description="Combinations that are not run.")
     screens: ScreensTable = ScreensTable()
     sweep: SweepTable = SweepTable()
     calibration: Later = None

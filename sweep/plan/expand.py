@@ -150,7 +150,7 @@ def _stratified(
     plan: Plan, finding: Finding, codes: NDArray[np.int16], source: NDArray[np.int64]
 ) -> NDArray[np.int64]:
     """Draw equally many rows of every window entry; the baseline is always in."""
-    wanted = plan.document.sweep.design.sample  # type: ignore[union-attr]
+    wanted = plan.document.sweep.design.sample
     axes = plan.finding_axes[finding.number]
     window = codes[source, AXES.index("window")]
     entries = axes["window"].codes

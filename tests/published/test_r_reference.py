@@ -13,7 +13,6 @@ Tolerances, each with its reason:
 
 from __future__ import annotations
 
-import functools
 from typing import Any
 
 import numpy as np
@@ -137,22 +136,3 @@ def test_window_is_the_case_sample(swept: tuple[dict[str, Any], pd.DataFrame]) -
     """The longest regression has every row of R's sample but the first lag."""
     case, outcomes = swept
     assert int(outcomes["observations"].max()) == case["n"] - 1
-
-
-@functools.cache
-def _prices() -> dict[str, Any]:
-    case: dict[str, Any] = plans.reference()["cases"]["macro_unemp_infl_tbill"]
-    return case
-
-
-def test_shipped_baseline_is_reproduced() -> None:
-    """The numbers printed in configs/us_macro.toml are those of the reference."""
-    import tomllib
-
-    path = plans.HERE.parents[1] / "configs" / "us_macro.toml"
-    baseline = tomllib.loads(path.read_text(encoding="utf-8"))["baseline"]
-    rows = plans.table(_prices()["cause_to_effect"]["own_sample"])
-    row = rows[(rows["lag"] == baseline["lags"]) & (rows["det"] == "c")].iloc[0]
-    assert baseline["reported"]["statistic"] == pytest.approx(row["F"], rel=1e-11)
-    assert baseline["reported"]["p_value"] == pytest.approx(row["p_F"], rel=1e-11)
-    assert baseline["reported"]["observations"] == row["nobs"]

@@ -369,3 +369,27 @@ def test_coefficient_sum(series: dict[str, Array], tmp_path: Path) -> None:
         error = float(np.sqrt(ones @ fitted.cov_params() @ ones))
         assert float(row["coefficient_sum"]) == pytest.approx(float(ones @ fitted.params), rel=1e-8)
         assert float(row["coefficient_sum_se"]) == pytest.approx(error, rel=1e-8)
+
+
+def test_shipped_baseline_is_reproduced(tmp_path: Path) -> None:
+    """The numbers in configs/us_macro.toml are statsmodels' on the shipped data, to all digits."""
+    import tomllib
+
+    import statsmodels.api as sm
+
+    configs = plans.HERE.parents[1] / "configs"
+    baseline = tomllib.loads((configs / "us_macro.toml").read_text(encoding="utf-8"))["baseline"]
+    assert baseline["transformation"] == "difference"
+    data = pd.read_csv(configs / "data" / "us_macro.csv")
+    names, order = ["inflation", "unemployment", "bill_rate"], baseline["lags"]
+    change = data[names].dropna().diff().dropna().reset_index(drop=True)
+    lags = {(n, j): change[n].shift(j) for n in names for j in range(1, order + 1)}
+    design = sm.add_constant(pd.DataFrame({f"{n} {j}": v for (n, j), v in lags.items()})[order:])
+    fitted = sm.OLS(change["inflation"][order:], design).fit()
+    restricted = [int(str(c).startswith("unemployment")) for c in design.columns]
+    rows = np.diag(restricted)[np.flatnonzero(restricted)]
+    found = fitted.f_test(rows.astype(float))
+    reported = baseline["reported"]
+    assert reported["statistic"] == pytest.approx(float(found.fvalue), abs=0.0005)
+    assert reported["p_value"] == pytest.approx(float(found.pvalue), abs=0.00005)
+    assert reported["observations"] == int(fitted.nobs)

@@ -8,8 +8,7 @@ from pathlib import Path
 import duckdb
 import numpy as np
 import pytest
-from conftest import Filled
-from store_samples import finding, outcomes, planned, sample
+from store_samples import Filled, finding, outcomes, planned, sample
 
 from store.database import Database, open_reading
 from store.export import export

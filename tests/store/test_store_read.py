@@ -8,7 +8,7 @@ import numpy as np
 import pandas as pd
 import plain_twin
 import pytest
-from conftest import Filled
+from store_samples import Filled
 
 from store import read
 from store.database import Database

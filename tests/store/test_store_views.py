@@ -8,8 +8,7 @@ import numpy as np
 import pandas as pd
 import plain_twin
 import pytest
-from conftest import RULES, fill
-from store_samples import LABELS, finding, outcomes, planned, sample
+from store_samples import LABELS, RULES, fill, finding, outcomes, planned, sample
 
 import store.database
 from store import read

@@ -1,1 +1,0 @@
-"""Published or simulated critical values as data, each with its provenance; none needed yet."""
