@@ -65,8 +65,14 @@ def _did(results: Results) -> str:
         parts.append(f"{done.ruled:,} are ruled out by the plan")
     if done.failed:
         parts.append(f"{done.failed:,} failed (the store's log says how)")
-    return (f"{done.planned:,} specifications planned: {', '.join(parts)}; {done.seconds:.1f} s. "
-            f"Store: {_short(done.store)}")  # fmt: skip
+    words = (f"{done.planned:,} specifications planned: {', '.join(parts)}; {done.seconds:.1f} s. "
+             f"Store: {_short(done.store)}")  # fmt: skip
+    if done.other_data is not None:
+        words += (
+            f"\nThe data or the program's numerics have changed since sweep {done.other_data} of "
+            f"this plan; this is sweep {results.sweep} beside it."
+        )
+    return words
 
 
 def _short(path: Path) -> str:

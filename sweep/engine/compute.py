@@ -7,7 +7,7 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import NDArray
 
-from sweep.engine.digest import computation_digest
+from sweep.engine.digest import computation_digest, window_words
 from sweep.engine.fits import Equation, FitBook, Fitted
 from sweep.engine.orders import OrderBook, Orders
 from sweep.engine.panel import TaskPanel
@@ -126,6 +126,7 @@ class _Sheet:
         self.numbers = {name: np.full(count, np.nan) for name in _NUMBERS}
         self.integers = {name: np.zeros(count, np.int64) for name in _INTEGERS}
         self.computation = np.zeros(count, np.uint64)
+        self.windows = window_words(task)
         self.coefficients: list[LagCoefficients] = []
 
     def mark(self, group: _Group) -> None:
@@ -160,7 +161,9 @@ class _Sheet:
             self.integers["order_used"][rows] = forward.orders[1]
             self._effect_size(rows, window, choice, ahead)
             self.numbers["reverse_coefficient_sum"][rows] = back.coefficient_sum[window]
-            self.computation[rows] = computation_digest(task, forward, backward, choice, window)
+            self.computation[rows] = computation_digest(
+                task, forward, backward, choice, self.windows[window]
+            )
             wanted = task.coefficients[rows]
             if wanted.any():
                 for fitted, turned in ((ahead, False), (back, True)):

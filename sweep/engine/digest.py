@@ -12,7 +12,7 @@ from sweep.engine.task import Task
 from sweep.plan.canonical import canonical_json
 from sweep.plan.choices import ProcedureChoice
 
-__all__ = ["computation_digest", "mix"]
+__all__ = ["computation_digest", "mix", "window_words"]
 
 Words = NDArray[np.uint64]
 
@@ -25,12 +25,22 @@ def mix(words: Words) -> Words:
         return words ^ (words >> np.uint64(31))
 
 
+def window_words(task: Task) -> Words:
+    """Digest the data rows of each window of a task, shape (w,)."""
+    first, last = task.first.astype(np.uint64), task.last.astype(np.uint64)
+    with np.errstate(over="ignore"):
+        words = mix(first + np.uint64(0x9E3779B97F4A7C15))
+        words = mix(words + mix(last + np.uint64(0xD1B54A32D192ED03)))
+    episodes = np.array([_word(repr(item)) if item else 0 for item in task.episodes], np.uint64)
+    return mix(words ^ episodes)
+
+
 def computation_digest(
     task: Task,
     forward: Equation,
     backward: Equation,
     choice: ProcedureChoice,
-    window: NDArray[np.int32],
+    windows: Words,
 ) -> Words:
     """Digest what was computed: rows of data, orders, terms, restriction, statistic.
 
@@ -40,7 +50,8 @@ def computation_digest(
     forward, backward : Equation
         Both directions, orders resolved.
     choice : ProcedureChoice
-    window : ndarray of int, shape (s,)
+    windows : ndarray of uint64, shape (s,)
+        Entries of :func:`window_words`.
 
     Returns
     -------
@@ -52,14 +63,7 @@ def computation_digest(
         [[term.kind, term.number] for term in task.terms[forward.term]],
         [choice.statistic, choice.covariance, choice.divisor],
     ]
-    start = _word(canonical_json(meaning))
-    first = task.first[window].astype(np.uint64)
-    last = task.last[window].astype(np.uint64)
-    with np.errstate(over="ignore"):
-        words = mix(np.uint64(start) + mix(first + np.uint64(0x9E3779B97F4A7C15)))
-        words = mix(words + mix(last + np.uint64(0xD1B54A32D192ED03)))
-    episodes = np.array([_word(repr(item)) if item else 0 for item in task.episodes], np.uint64)
-    return mix(words ^ episodes[window])
+    return mix(windows ^ np.uint64(_word(canonical_json(meaning))))
 
 
 def _equation(task: Task, equation: Equation) -> list[object]:

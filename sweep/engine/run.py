@@ -64,6 +64,8 @@ class RunReport:
         Specifications: planned in all; there before; taken over from another sweep; ruled
         out by the plan; computed now; of these, failed.
     seconds : float
+    other_data : int or None
+        Latest earlier sweep of the same plan on data that have changed since.
     """
 
     store: Path
@@ -75,6 +77,7 @@ class RunReport:
     computed: int
     failed: int
     seconds: float
+    other_data: int | None = None
 
 
 def run_prepared(
@@ -123,7 +126,7 @@ def run_prepared(
         ruled = int((prepared.rows.rule >= 0).sum())
         report = RunReport(
             store, sink.sweep, prepared.rows.count, stored, reused, ruled, int(missing.size),
-            failed, seconds,
+            failed, seconds, sink.data_changed_since(),
         )  # fmt: skip
         sink.finish(
             seconds,

@@ -12,6 +12,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from store.database import Database
+from store.read_sweeps import sweeps
 from store.records import ChoiceRecord, FindingRecord, SweepChoiceRecord, SweepRecord
 from store.write import SweepWriter
 from sweep.engine.prepare import Prepared
@@ -42,12 +43,20 @@ class StoreSink:
 
     def __init__(self, database: Database, prepared: Prepared) -> None:
         self.prepared = prepared
+        self._database = database
         self._writer = SweepWriter(database)
         self._codes = {axis: self._register(axis) for axis in AXES}
         for screen in SCREENS.values():
             self._writer.register_screen(screen.BIT, screen.NAME)
         self._reasons = self._register_reasons()
         self.sweep = self._begin()
+
+    def data_changed_since(self) -> int | None:
+        """Return the latest earlier sweep of the same plan on other data, None if there is none."""
+        found = sweeps(self._database)
+        same = found[(found["plan_digest"] == self.prepared.plan.digest)]
+        earlier = same[same["sweep"] < self.sweep]["sweep"]
+        return int(earlier.max()) if len(earlier) else None
 
     def missing(self) -> tuple[Ints, int, int]:
         """Return the rows to compute, and how many were stored before or taken over.
@@ -110,7 +119,7 @@ class StoreSink:
             plan.title,
             plan.document.seed,
             plan.significance,
-            numerics(),
+            stored_numerics(),
             design if isinstance(design, str) else f"sample of {design.sample}",
             json.dumps(_data_note(self.prepared), ensure_ascii=False),
             json.dumps(package_versions()),
@@ -254,6 +263,12 @@ class StoreSink:
             "p_value": np.concatenate([part.p_value for part in parts]),
             "critical_value": np.full(row.size, np.nan),
         }
+
+
+def stored_numerics() -> str:
+    """Return the versions that stored rows are matched on: engine, procedures, screens."""
+    screens = [f"{name} {screen.NUMERICS}" for name, screen in sorted(SCREENS.items())]
+    return f"{numerics()}; screens: {', '.join(screens)}"
 
 
 def _orientation(finding: Finding, choice: Choice) -> int:

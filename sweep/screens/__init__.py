@@ -18,6 +18,7 @@ class Screen(Protocol):
 
     NAME: str
     BIT: int
+    NUMERICS: int
     GRAIN: str
     COST: str
     WORDS: str

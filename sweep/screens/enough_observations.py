@@ -11,6 +11,7 @@ from numpy.typing import NDArray
 
 NAME = "enough observations"
 BIT = 0
+NUMERICS = 1
 GRAIN = "regression"
 COST = "moments"
 PER_REGRESSOR = 3
