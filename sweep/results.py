@@ -150,10 +150,7 @@ class Results:
         records = [self._record(int(n)) for n in self.findings["finding"]]
         with self._open() as database:
             frames = {
-                int(record["finding"]): {
-                    name: getattr(read, name)(database, self.sweep, int(record["finding"]))
-                    for name in FRAMES
-                }
+                int(record["finding"]): self._read_frames(database, int(record["finding"]), FRAMES)
                 for record in records
             }
         note = json.loads(str(self.info["data_note"]))
@@ -270,10 +267,38 @@ class Results:
 
     def _frames(self, number: int, names: Sequence[str]) -> dict[str, pd.DataFrame]:
         with self._open() as database:
-            return {
-                name: getattr(read, name)(database, self.sweep, number)
-                for name in dict.fromkeys(names)
-            }
+            return self._read_frames(database, number, names)
+
+    def _read_frames(
+        self, database: Database, number: int, names: Sequence[str]
+    ) -> dict[str, pd.DataFrame]:
+        frames = {
+            name: getattr(read, name)(database, self.sweep, number)
+            for name in dict.fromkeys(names)
+        }
+        if "windows" in frames:
+            left_out = self._episodes()
+            frames["windows"]["episodes"] = [
+                left_out.get(str(name), "") for name in frames["windows"]["window_name"]
+            ]
+        return frames
+
+    def _episodes(self) -> dict[str, str]:
+        """Return the episodes that each window entry leaves out, as the charts want them."""
+        from sweep.panel.periods import parse_period
+        from sweep.plan.choices import WindowChoice
+        from sweep.plan.load import plan_from_text
+
+        plan = plan_from_text(str(self.info["plan_toml"]), self.store.with_suffix(".toml"))
+        found = {}
+        for choice in plan.axes["window"]:
+            assert isinstance(choice, WindowChoice)
+            days = [
+                (parse_period(first, plan.frequency)[0], parse_period(last, plan.frequency)[1])
+                for first, last in choice.without
+            ]
+            found[choice.label] = ";".join(f"{a.isoformat()}/{b.isoformat()}" for a, b in days)
+        return found
 
     def _record(self, number: int) -> dict[str, Any]:
         row = self.findings[self.findings["finding"] == number].iloc[0]

@@ -53,6 +53,13 @@ class Strip:
     panel: tuple[float, ...]
 
     @property
+    def episodes(self) -> tuple[tuple[float, float], ...]:
+        """Return the episodes that a fixed window leaves out, in days since 1970."""
+        text = str(self.records[0].get("episodes") or "") if self.records else ""
+        pairs = [part.split("/") for part in text.split(";") if part]
+        return () if self.moving else tuple((day_number(a), day_number(b)) for a, b in pairs)
+
+    @property
     def moving(self) -> bool:
         """Whether the entry has a path of positions."""
         return self.kind != "fixed"

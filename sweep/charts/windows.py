@@ -26,6 +26,7 @@ _LEFT, _RIGHT = 40.0, 22.0
 _TOP = 30.0
 _TICKS = {"narrow": 5, "wide": 9}
 _MOST_DOTS = 80
+_HATCH = 2.9  # pixels across for one stroke of a hatch
 
 _TIPS = {
     "window": "window",
@@ -89,6 +90,8 @@ def _subtitle(context: Context, strips: list[Strip], total: int) -> str:
         )
     if any(not strip.moving for strip in strips):
         words.append("Fixed windows: a bar from the first to the last date.")
+    if any(strip.episodes for strip in strips):
+        words.append("Hatched: an episode that the window leaves out.")
     words.append(context.losses)
     if len(strips) < total:
         words.append(f"Shown are {len(strips):,} of {total:,} window entries, thinned evenly.")
@@ -106,7 +109,8 @@ def build(
     Parameters
     ----------
     frames : mapping of str to DataFrame
-        ``windows`` of one finding: one row a window entry and position.
+        ``windows`` of one finding: one row a window entry and position; where there is a column
+        ``episodes``, it holds the episodes left out, ``from/to`` in ISO days, joined by ";".
     context : Context
         The finding, its level and counts.
     width : str
@@ -123,6 +127,7 @@ def build(
             *_legend(height, across),
             *_ground(strips, height, track, width),
             *_strips(strips, height, track),
+            *_left_out(strips, height, track),
             *_names(strips, height, across),
             *_values(strips, height, track, context),
         ],
@@ -199,6 +204,31 @@ def _strips(strips: list[Strip], height: float, track: tuple[float, float]) -> l
         *marks.areas(cells, height, x, "to", tips=_TIPS),
         *marks.dots(empty, height, x, colour=ABSENT, area=7),
         *marks.strokes(outline, height, x, "to", colour=QUIET, width=0.5),
+    ]
+
+
+def _left_out(strips: list[Strip], height: float, track: tuple[float, float]) -> list[alt.Chart]:
+    """Hatch the episodes that a window leaves out."""
+    spans = [span for strip in strips for span in strip.spans]
+    if not spans:
+        return []
+    x = _scale("day", strips, track)
+    whole = max(max(e for _, e in spans) - min(s for s, _ in spans), 1.0)
+    gaps, hatches = [], []
+    for strip in strips:
+        for start, end in strip.episodes:
+            gaps.append({"y": strip.top, "y2": strip.bottom, "day": start, "to": end})
+            wide = (end - start) / whole * (track[1] - track[0])
+            hatches.append(
+                {
+                    "y": (strip.top + strip.bottom) / 2,
+                    "day": (start + end) / 2,
+                    "text": "/" * max(1, int(wide / _HATCH)),
+                }
+            )
+    return [
+        *marks.areas(gaps, height, x, "to", colour="white"),
+        *marks.texts(hatches, height, x, align="center", colour=QUIET),
     ]
 
 

@@ -11,7 +11,7 @@ from __future__ import annotations
 import json
 import re
 import tempfile
-from collections.abc import Callable
+from collections.abc import Callable, Sequence
 from pathlib import Path
 from typing import Any
 
@@ -79,18 +79,42 @@ def plan_keys() -> str:
     if unknown:
         raise RuntimeError(f"tables of the schema without a place in the README: {unknown}")
     order = _key_order()
-    parts = []
+    lines = [f"- *{words}*: {_listed(names)}" for words, names in _names().items()]
+    parts = ["\n".join(lines)]
     for name, heading in TABLES.items():
         table = tables[name]
+        if name == "WhenTable":
+            keys = ", ".join(f"`{key}`" for key in order[name])
+            parts.append(f"**{heading}**: {keys}, each a list of choices or of their names.")
+            continue
         required = set(table.get("required", ()))
         lines = [f"**{heading}**", "", "| key | value | default | meaning |", "|---|---|---|---|"]
         for key in order[name]:
             value = table["properties"][key]
             default = "*needed*" if key in required else _default(value)
-            cells = (f"`{key}`", _value(value), default, _meaning(value))
+            cells = (f"`{key}`", _value(value), default, _meaning(value, tables))
             lines.append("| " + " | ".join(cells) + " |")
         parts.append("\n".join(lines))
     return "\n\n".join(parts)
+
+
+def _names() -> dict[str, tuple[str, ...]]:
+    """Return the lists of names that several keys take, under the word that stands for them."""
+    from typing import get_args
+
+    from sweep.plan import tables
+
+    return {
+        "criterion": get_args(tables.CRITERIA),
+        "trend": get_args(tables.TRENDS),
+        "transformation": get_args(tables.TRANSFORMATIONS),
+        "statistic": get_args(tables.STATISTICS),
+        "covariance": get_args(tables.COVARIANCES),
+    }
+
+
+def _listed(names: Sequence[str]) -> str:
+    return ", ".join(f'`"{name}"`' for name in names)
 
 
 def _key_order() -> dict[str, list[str]]:
@@ -103,7 +127,10 @@ def _key_order() -> dict[str, list[str]]:
         if name != "Crosswind plan":
             model = getattr(document, name, None) or getattr(tables, name)
         held = set(model.model_json_schema(by_alias=True)["properties"])
-        keys = [field.alias or key for key, field in model.model_fields.items()]
+        fields = model.model_fields.items()
+        # What every entry may carry is said once, above the tables.
+        common = set(tables.Named.model_fields) if issubclass(model, tables.Named) else set()
+        keys = [field.alias or key for key, field in fields if key not in common]
         order[name] = [key for key in keys if key in held]
     return order
 
@@ -115,8 +142,9 @@ def _value(schema: dict[str, Any]) -> str:
             kinds = [_value(part) for part in schema[several] if part.get("type") != "null"]
             return " or ".join(dict.fromkeys(kinds))
     if "enum" in schema or "const" in schema:
-        names = schema.get("enum", [schema.get("const")])
-        return ", ".join(f'`"{name}"`' for name in names)
+        names = tuple(schema.get("enum", [schema.get("const")]))
+        known = {every: word for word, every in _names().items()}
+        return f"*{known[names]}*" if names in known else _listed(names)
     if "$ref" in schema:
         name = schema["$ref"].rsplit("/", 1)[1]
         if name in INLINE:
@@ -127,9 +155,9 @@ def _value(schema: dict[str, Any]) -> str:
         return "date"
     if kind == "array":
         inner = _value(schema.get("items", {}))
-        return f"pair of dates: {inner}" if "maxItems" in schema else f"list of {inner}"
+        return "[first date, last date]" if "maxItems" in schema else f"list of {inner}"
     if kind == "object" and isinstance(schema.get("additionalProperties"), dict):
-        return f"table: series or role = {_value(schema['additionalProperties'])}"
+        return f"{{ series or role = {_value(schema['additionalProperties'])} }}"
     return TYPES.get(str(kind), "choices or their names")
 
 
@@ -142,11 +170,15 @@ def _default(schema: dict[str, Any]) -> str:
     return f"`{json.dumps(default)}`"
 
 
-def _meaning(schema: dict[str, Any]) -> str:
-    if "description" in schema and "$ref" not in schema:
+def _meaning(schema: dict[str, Any], tables: dict[str, Any]) -> str:
+    """Return the description of a key, or of the table or list that it holds."""
+    if "description" in schema:
         return str(schema["description"])
-    inner = [part["description"] for part in schema.get("anyOf", ()) if "description" in part]
-    return str(inner[0]) if inner else ""
+    if "$ref" in schema:
+        return str(tables[schema["$ref"].rsplit("/", 1)[1]]["description"])
+    held = [*schema.get("anyOf", ()), schema.get("items"), schema.get("additionalProperties")]
+    told = (_meaning(part, tables) for part in held if isinstance(part, dict))
+    return next((words for words in told if words), "")
 
 
 def store_columns() -> str:
@@ -156,7 +188,10 @@ def store_columns() -> str:
 
     with tempfile.TemporaryDirectory() as folder, create(Path(folder) / "new.duckdb") as database:
         views = {
-            name: [str(row[0]) for row in database.execute(f"SELECT column_name FROM (DESCRIBE {name})")]
+            name: [
+                str(row[0])
+                for row in database.execute(f"SELECT column_name FROM (DESCRIBE {name})")
+            ]
             for name in ("outcomes", "survival")
         }
     lines = [f"- view `{name}`: {', '.join(columns)}" for name, columns in views.items()]
@@ -193,7 +228,7 @@ SLOW: dict[str, Callable[[], str]] = {"example summary": example_summary}
 
 
 def _pattern(name: str) -> re.Pattern[str]:
-    start, end = f"<!-- generated: {name} -->\n", f"\n<!-- end of generated: {name} -->"
+    start, end = f"<!-- generated: {name} -->\n", f"<!-- end of generated: {name} -->"
     return re.compile(f"({re.escape(start)})(.*?)({re.escape(end)})", re.DOTALL)
 
 
@@ -208,7 +243,7 @@ def part(name: str, text: str) -> str:
     found = _pattern(name).findall(text)
     if len(found) != 1:
         raise ValueError(f"README.md has {len(found)} parts called {name!r}, not one")
-    return str(found[0][1])
+    return str(found[0][1]).removesuffix("\n")
 
 
 def main() -> None:
@@ -217,7 +252,7 @@ def main() -> None:
     for name, make in (QUICK | SLOW).items():
         part(name, text)
         made = make()
-        text = _pattern(name).sub(lambda match, new=made: match[1] + new + match[3], text)
+        text = _pattern(name).sub(lambda match, new=made: match[1] + new + "\n" + match[3], text)
     README.write_text(text, encoding="utf-8")
 
 

@@ -1,6 +1,6 @@
 """Check what a built wheel holds: the packages, their data files, the examples, nothing else.
 
-    python tests/docs/wheel_contents.py WHEEL
+python tests/docs/wheel_contents.py WHEEL
 """
 
 from __future__ import annotations
