@@ -23,6 +23,7 @@ if TYPE_CHECKING:
     from sweep.engine.explain import Explanation
     from sweep.engine.run import RunReport
     from sweep.report.content import ReportContent
+    from sweep.report.library import Library
     from sweep.report.tables import Table
 
 __all__ = ["Results"]
@@ -185,6 +186,7 @@ class Results:
         *,
         jobs: int | None = None,
         content: ReportContent | None = None,
+        library: Library | None = None,
     ) -> Path:
         """Write the report as one self-contained HTML file and return its path.
 
@@ -196,12 +198,16 @@ class Results:
             Worker processes that draw; None for one a core.
         content : ReportContent or None
             What :meth:`content` returned, where it is at hand; read anew if None.
+        library : Library or None
+            The drawing library, where it is being fetched already.
         """
         from sweep.engine.check import default_jobs
         from sweep.report.page import page
 
         target = Path(path) if path is not None else self.store.with_suffix(".html")
-        text = page(content or self.content(), jobs=jobs or default_jobs())
+        text = page(
+            content or self.content(), jobs=jobs or default_jobs(), library=library
+        )
         partial = target.with_name(target.name + ".part")
         try:
             partial.write_text(text, encoding="utf-8")

@@ -11,7 +11,9 @@ from sweep.cli.common import plan_argument, print_summary
 from sweep.errors import RuleNotMet
 
 if TYPE_CHECKING:
+    from sweep.plan.model import Plan
     from sweep.report.content import ReportContent
+    from sweep.report.library import Library
     from sweep.results import Results
 
 
@@ -34,6 +36,22 @@ def command(
 
     Stop with Ctrl-C at any time; the same command goes on where it stopped.
     """
+    from sweep.api import load_plan
+
+    found = load_plan(plan)
+    if not report:
+        return _run(found, store, jobs, rules, quiet=quiet)
+    from sweep.report.library import Library
+
+    with Library() as library:
+        return _run(found, store, jobs, rules, quiet=quiet, library=library)
+
+
+def _run(
+    plan: Plan, store: Path | None, jobs: int | None, rules: tuple[str, ...], *, quiet: bool,
+    library: Library | None = None,
+) -> int:  # fmt: skip
+    """Run a plan; write the report where a drawing library is given."""
     from sweep.api import run
     from sweep.cli.progress import Reporter
 
@@ -44,7 +62,9 @@ def command(
     if not quiet:
         click.echo(_did(results), err=True)
     content = results.content()
-    path = results.report(jobs=jobs, content=content) if report else None
+    path = None
+    if library is not None:
+        path = results.report(jobs=jobs, content=content, library=library)
     print_summary(results, content=content)
     if path is not None and not quiet:
         click.echo(f"\nReport: {_short(path)}", err=True)

@@ -19,6 +19,8 @@ DIED = "a worker process died twice on this task"
 class WorkerPool:
     """A pool that survives the death of a worker.
 
+    The workers stay for what comes next (the report's figures) and end with the process.
+
     Parameters
     ----------
     jobs : int
@@ -41,12 +43,8 @@ class WorkerPool:
         except TerminatedWorkerError:
             return [self._alone(task) for task in tasks]
         except KeyboardInterrupt:
-            self.close()
+            get_reusable_executor(max_workers=self._jobs).shutdown(wait=True, kill_workers=True)
             raise
-
-    def close(self) -> None:
-        """Stop the workers."""
-        get_reusable_executor(max_workers=self._jobs).shutdown(wait=True, kill_workers=True)
 
     def _alone(self, task: Task) -> Outcome | Broken:
         self._pool = self._open()

@@ -6,7 +6,6 @@ eight tasks a worker, so memory stays bounded and an interrupted run loses littl
 
 from __future__ import annotations
 
-import contextlib
 from collections.abc import Callable, Iterator
 from dataclasses import dataclass
 
@@ -57,10 +56,10 @@ def compute_in_waves(
         return
     from sweep.engine.pool import WorkerPool
 
-    with contextlib.closing(WorkerPool(jobs, work)) as pool:
-        size = TASKS_A_WORKER * jobs
-        for start in range(0, len(tasks), size):
-            yield pool.wave(tasks[start : start + size])
+    pool = WorkerPool(jobs, work)
+    size = TASKS_A_WORKER * jobs
+    for start in range(0, len(tasks), size):
+        yield pool.wave(tasks[start : start + size])
 
 
 def _guarded(work: Callable[[Task], Outcome], task: Task) -> Outcome | Broken:

@@ -2,7 +2,6 @@
 
 from __future__ import annotations
 
-import functools
 import json
 import re
 from dataclasses import dataclass
@@ -13,11 +12,12 @@ import jinja2
 from markupsafe import Markup
 
 from sweep.charts import CHARTS, chart
-from sweep.charts.render import language_version, specification, svg
+from sweep.charts.render import specification, svg
 from sweep.verdicts.survival import axis_sentences
 from sweep.verdicts.words import level_text
 
 from .content import FindingContent, ReportContent, first_lines, sizes, summary
+from .library import Library
 from .tables import TABLES
 from .tables.writers import as_html
 
@@ -76,22 +76,13 @@ def still(drawing: str, number: int) -> Markup:
     return Markup(own[own.index("<svg") :])
 
 
-@functools.cache
-def _bundle() -> Markup:
-    """Return the drawing library as one script, read once."""
-    import vl_convert
-
-    code = vl_convert.javascript_bundle(
-        "window.drawFigure = vegaEmbed;", vl_version=language_version()
-    )
-    # A closing tag inside the code, if a version ever holds one, would end the element.
-    return Markup(code.replace("</script", "<\\/script"))
-
-
 def _figure(finding: FindingContent, name: str, number: int) -> Figure:
     """Draw one chart of one finding."""
+    from altair.utils.schemapi import debug_mode
+
     module = chart(name)
-    plain = specification(module.build(finding.frames, finding.context, "wide"))
+    with debug_mode(False):  # the tests hold every chart against the language's schema
+        plain = specification(module.build(finding.frames, finding.context, "wide"))
     return Figure(
         number,
         name,
@@ -102,20 +93,19 @@ def _figure(finding: FindingContent, name: str, number: int) -> Figure:
     )
 
 
-def _figures(report: ReportContent, jobs: int) -> tuple[list[list[Figure]], Markup]:
-    """Draw every figure, and fetch the drawing library, in workers where there are several."""
+def _figures(report: ReportContent, jobs: int) -> list[list[Figure]]:
+    """Draw every figure, in workers where there are several."""
     wanted = [(finding, name) for finding in report.findings for name in CHARTS]
     if jobs == 1 or len(wanted) <= len(CHARTS):
         drawn = [_figure(*item, number) for number, item in enumerate(wanted, start=1)]
-        bundle = _bundle()
     else:
         from joblib import Parallel, delayed
 
-        tasks = [delayed(_bundle)()]
-        tasks += [delayed(_figure)(*item, number) for number, item in enumerate(wanted, start=1)]
-        bundle, *drawn = Parallel(n_jobs=jobs, batch_size=1)(tasks)
+        drawn = Parallel(n_jobs=jobs, batch_size=1)(
+            delayed(_figure)(*item, number) for number, item in enumerate(wanted, start=1)
+        )
     size = len(CHARTS)
-    return [drawn[start : start + size] for start in range(0, len(drawn), size)], bundle
+    return [drawn[start : start + size] for start in range(0, len(drawn), size)]
 
 
 def _sections(report: ReportContent, drawn: list[list[Figure]]) -> list[dict[str, Any]]:
@@ -143,7 +133,7 @@ def _sections(report: ReportContent, drawn: list[list[Figure]]) -> list[dict[str
     return sections
 
 
-def page(report: ReportContent, *, jobs: int = 1) -> str:
+def page(report: ReportContent, *, jobs: int = 1, library: Library | None = None) -> str:
     """Write the whole report as one HTML document.
 
     Parameters
@@ -152,6 +142,8 @@ def page(report: ReportContent, *, jobs: int = 1) -> str:
         What to show; every string in it may come from a user's files and is escaped.
     jobs : int
         Worker processes that draw the figures.
+    library : Library or None
+        The drawing library, where it is being fetched already.
 
     Returns
     -------
@@ -167,7 +159,7 @@ def page(report: ReportContent, *, jobs: int = 1) -> str:
         loader=jinja2.FunctionLoader(lambda name: (folder / name).read_text(encoding="utf-8")),
     )
     style = Markup((folder / "page.css").read_text(encoding="utf-8"))
-    drawn, bundle = _figures(report, jobs)
+    drawn = _figures(report, jobs)
     script = Markup((folder / "page.js").read_text(encoding="utf-8"))
     return environment.get_template("template.html.j2").render(
         report=report,
@@ -176,5 +168,5 @@ def page(report: ReportContent, *, jobs: int = 1) -> str:
         sections=_sections(report, drawn),
         style=style,
         script=script,
-        bundle=bundle,
+        bundle=(library or Library()).script(),
     )
