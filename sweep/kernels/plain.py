@@ -142,8 +142,10 @@ def plain_robust(fit: PlainFit, covariance: str) -> Floats:
         If HC2 or HC3 does not exist because an observation is fitted exactly.
     """
     design, t, k = fit.design, fit.observations, fit.regressors
-    inverse = np.linalg.inv(design.T @ design)
-    leverage = np.einsum("ti,ij,tj->t", design, inverse, design)
+    size = np.sqrt((design**2).sum(axis=0))
+    left, singular, right = np.linalg.svd(design / size, full_matrices=False)
+    estimator = ((right.T / singular) @ left.T) / size[:, None]
+    leverage = (left**2).sum(axis=1)
     if covariance in ("HC2", "HC3") and leverage.max() > 1 - 1e-10:
         raise ValueError("an observation is fitted exactly")
     leverage = np.minimum(leverage, 1 - 1e-10)
@@ -153,8 +155,7 @@ def plain_robust(fit: PlainFit, covariance: str) -> Floats:
         "HC2": 1 / (1 - leverage),
         "HC3": 1 / (1 - leverage) ** 2,
     }[covariance]
-    middle = (design * (weight * fit.residuals**2)[:, None]).T @ design
-    return np.asarray(inverse @ middle @ inverse)
+    return np.asarray((estimator * (weight * fit.residuals**2)) @ estimator.T)
 
 
 def plain_orders(

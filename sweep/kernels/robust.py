@@ -25,6 +25,8 @@ __all__ = ["COVARIANCES", "RobustFit", "robust_stack"]
 COVARIANCES = ("HC0", "HC1", "HC2", "HC3")
 FULL_LEVERAGE = 1e-10
 """1 − h below which an observation counts as fitted exactly."""
+SINGULAR = 1e-5
+"""Smallest pivot of the unit-diagonal sandwich that still gives digits: its square over ε."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -173,4 +175,7 @@ def _solve_into(middle: Floats, projection: Floats, wald: Floats, members: np.nd
         _solve_into(middle, projection, wald, members[:half])
         _solve_into(middle, projection, wald, members[half:])
         return
-    wald[members] = (forward(factor, projection[members]) ** 2).sum(axis=1)
+    length = np.sqrt(np.einsum("wii->wi", middle[members]))
+    pivots = (np.einsum("wii->wi", factor) / length).min(axis=1)
+    found = (forward(factor, projection[members]) ** 2).sum(axis=1)
+    wald[members] = np.where(pivots > SINGULAR, found, np.nan)

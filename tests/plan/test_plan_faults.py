@@ -1,0 +1,134 @@
+# ruff: noqa: E501 - a table of messages is read one fault a line
+"""Faults of a plan, one a row: one clear message with its place, exit code 2, nothing written."""
+
+from __future__ import annotations
+
+from pathlib import Path
+
+import pytest
+import small_plans
+
+from sweep.cli import main
+from sweep.errors import InputFault
+from sweep.plan.load import load_plan
+
+# What follows the baseline's first two keys, what is in the finding, and the message.
+FAULTS: dict[str, tuple[str, str, str]] = {
+    "unknown key": ("[axis]\nlags = [1]", "", 'axis: unknown key "axis"; did you mean "axes"?'),
+    "unknown key inside": ("[axes]\nwindow = [1]", "", 'axes.window: unknown key "window"; did you mean "windows"?'),
+    "unknown name": ('[axes]\ntests = ["f"]', "", 'axes.tests[1]: "f" is not known here; did you mean "F"?'),
+    "wrong type": ('[axes]\nlags = 4', "", "axes.lags: a list in [brackets] is needed here, not a number."),
+    "not a lag": ("[axes]\nlags = [0]", "", "axes.lags[1]: 0 is not a lag order; orders start at 1."),
+    "empty axis": ("[axes]\ntests = []", "", "axes.tests: an empty list leaves nothing to run. Give at least one choice."),
+    "duplicate lags": ('[axes]\nlags = ["AIC", { criterion = "AIC", maximum = 12 }]', "", 'axes.lags[2]: "AIC" means the same as "AIC". Leave one of them out.'),
+    "duplicate names": ('[axes]\nwindows = [{ name = "a", from = "1992" }, { name = "a", until = "2000" }]', "", 'axes.windows: two choices carry the name "a". Give each its own name.'),
+    "common too small": ("[axes]\nlags = [{ order = 5, sample = { common = 3 } }]", "", "axes.lags[1]: the common order 3 is smaller than the lags; raise it to 5 or more."),
+    "criterion without maximum": ('[axes]\nlags = [{ criterion = "AIC", sample = { common = 3 } }]', "", 'axes.lags[1]: a criterion on a common sample needs its own "maximum".'),
+    "moving baseline": ("window = { rolling = 60 }", "", "baseline.window: the baseline is one specification, and a moving window is many. Choose a fixed window."),
+    "split baseline": ('window = { split = "1995-01" }', "", "baseline.window: a split names two windows; the baseline is one."),
+    "two moving": ("[axes]\nwindows = [{ rolling = 60, expanding = 60 }]", "", 'axes.windows[1]: give one of "rolling", "expanding" and "shrinking".'),
+    "bad date": ('[axes]\nwindows = [{ from = "soon" }]', "", "axes.windows[1]: "),
+    "episode reversed": ('[axes]\nwindows = [{ without = ["1999-01", "1998-01"] }]', "", "axes.windows[1]: the episode ends (1998-01) before it starts (1999-01)."),
+    "date outside": ('[axes]\nwindows = [{ from = "2030-01" }]', "", 'axes.windows: "from 2030-01": 2030-01 lies outside the sample (1990-01 to 2003-04).'),
+    "rolling too long": ("[axes]\nwindows = [{ rolling = 400 }]", "", 'axes.windows: "rolling 400": a window of 400 periods is longer than the sample (160 periods, 1990-01 to 2003-04).'),
+    "window too short": ("[axes]\nwindows = [{ rolling = 6 }]", "", 'axes.windows: "rolling 6" has 6 periods, fewer than the smallest regression of "x leads y" needs. Lengthen it or use fewer lags.'),
+    "lags too long": ("[axes]\nlags = [60]", "", 'axes.lags: "60" lags leave no degree of freedom in the longest window of "x leads y" (160 periods). Use fewer lags or longer windows.'),
+    "step outside": ('[axes]\ndeterministics = [{ steps = ["2040-01"] }]', "", 'axes.deterministics: "constant + step 2040-01": 2040-01 lies outside the sample (1990-01 to 2003-04).'),
+    "robust LR": ('[axes]\ntests = [{ test = "LR", covariance = "HC3" }]', "", "axes.tests[1]: LR has no form with covariance HC3; use F or Wald."),
+    "divisor": ('[axes]\ntests = [{ test = "F", divisor = "T" }]', "", 'axes.tests[1]: divisor = "T" belongs to the classical Wald statistic.'),
+    "not yet: calibration": ("[calibration]\ndraws = 99", "", "calibration: not yet available in this version; leave it out."),
+    "not yet: requests": ('[[requests]]\nname = "a"', "", "requests: not yet available in this version; leave it out."),
+    "not yet: augmented": ('[axes]\ntests = [{ test = "lag augmented", extra_lags = 1 }]', "", 'axes.tests[1]: test "lag augmented" is not yet available in this version.'),
+    "not yet: HAC": ('[axes]\ntests = [{ test = "F", covariance = "HAC" }]', "", 'axes.tests[1]: covariance "HAC" is not yet available in this version.'),
+    "not yet: bootstrap": ('[axes]\ntests = [{ test = "F", reference = "wild bootstrap" }]', "", 'axes.tests[1].reference: "reference" is not yet available in this version.'),
+    "not yet: screen": ('[screens]\nrequire = ["stable roots"]', "", 'screens.require[1]: the screen "stable roots" is not yet available in this version.'),
+    "unknown screen": ('[screens]\nrequire = ["enough observation"]', "", 'screens.require[1]: unknown screen "enough observation"; did you mean "enough observations"?'),
+    "rule on baseline": ('[[rule_out]]\nwhen = { lags = [2] }\nbecause = "no"', "", 'rule_out[1]: rules out the baseline of "x leads y". Narrow the rule or change the baseline.'),
+    "rule on nothing": ('[[rule_out]]\nwhen = { lags = [9] }\nbecause = "no"', "", 'rule_out[1].when.lags[1]: "9" is not among the plan\'s choices. Leave it out of the rule.'),
+    "measure of nobody": ('[axes]\nmeasures = { q = ["x"] }', "", "axes.measures.q: no finding has this role"),
+    "one column twice": ('[axes]\nmeasures = { x = ["x", "z"] }', "", 'axes.measures: the column "z" stands for two roles of "x leads y" at once. Give each role a column of its own.'),
+    "unknown column": ("", 'exogenous = [{ series = "vv", lags = 1 }]', "small.csv: there is no column “vv”. Did you mean “v”?"),
+    "sign of nothing": ("", 'claim = "does not lead"\nsign = "positive"', 'findings[1]: a sign makes no sense under the claim "does not lead"; leave it out.'),
+    "reverse sign": ("", 'reverse_sign = "positive"', 'findings[1]: "reverse_sign" belongs to the claim "leads both ways".'),
+    "given twice": ("", 'exogenous = [{ series = "z" }]', 'findings[1].given: "z" stands twice. Leave one of them out.'),
+    "cause as exogenous": ("", 'exogenous = [{ series = "x" }]', 'findings[1].given: "x" is already the cause or the effect.'),
+    "unknown series in scale": ('[axes]\ntransformations = [{ default = "level", series = { q = "log" } }]', "", 'axes.transformations: "level; q: log" names the series "q", which no finding uses'),
+    "reported nothing": ("[baseline.reported]\ntolerance = 0.1", "", "baseline.reported: holds no number. Give a statistic or a p_value."),
+    "too many": ("[axes]\nlags = [" + ", ".join(str(n) for n in range(1, 31)) + "]\nwindows = [" + ", ".join(f"{{ rolling = {n} }}" for n in range(100, 152)) + '] \ntransformations = ["level", "log", "difference", "log difference", "yearly growth", "seasonal difference", "inverse hyperbolic sine"]\ndeterministics = ["none", "constant", "linear trend", "quadratic trend", { seasonal = true }]\ntests = ["F", "Wald", "LR", "LM", { test = "F", covariance = "HC0" }, { test = "F", covariance = "HC1" }, { test = "F", covariance = "HC2" }, { test = "F", covariance = "HC3" }]\nconditioning = ["given", "pairwise"]', "", "axes: the full cross has "),
+}  # fmt: skip
+
+
+@pytest.mark.parametrize("name", FAULTS)
+def test_one_fault_one_message(
+    name: str, tmp_path: Path, capsys: pytest.CaptureFixture[str]
+) -> None:
+    tail, finding, message = FAULTS[name]
+    plan = small_plans.write_plan(tmp_path, tail, finding)
+    before = sorted(tmp_path.iterdir())
+    with pytest.raises(SystemExit) as left:
+        main(["run", str(plan), "--no-report"])
+    assert left.value.code == 2
+    shown = capsys.readouterr()
+    assert shown.err.startswith(message)
+    assert shown.err.count("\n") == 1
+    assert not shown.out
+    assert sorted(tmp_path.iterdir()) == before
+
+
+def test_all_faults_at_once(tmp_path: Path) -> None:
+    plan = small_plans.write_plan(
+        tmp_path, '[axes]\nlags = [0, "AIK"]\ntests = ["G"]\n[calibration]\ndraws = 9', 'sing = "x"'
+    )
+    with pytest.raises(InputFault) as caught:
+        load_plan(plan)
+    places = [fault.place for fault in caught.value.faults]
+    assert places == ["findings[1].sing", "axes.lags[1]", "axes.lags[2]", "axes.tests[1]", "calibration"]
+
+
+@pytest.mark.parametrize(
+    ("text", "message"),
+    [("title = ", "not valid TOML"), ("", "title: this key is missing. Add it.")],
+)
+def test_files_that_are_no_plan(tmp_path: Path, text: str, message: str) -> None:
+    path = tmp_path / "plan.toml"
+    path.write_text(text, encoding="utf-8")
+    with pytest.raises(InputFault, match=message):
+        load_plan(path)
+    with pytest.raises(InputFault, match="no such plan file"):
+        load_plan(tmp_path / "pln.toml")
+    with pytest.raises(InputFault, match="a folder"):
+        load_plan(tmp_path)
+
+
+def test_log_of_values_that_are_not_positive(
+    tmp_path: Path, capsys: pytest.CaptureFixture[str]
+) -> None:
+    plan = small_plans.write_plan(tmp_path, '[axes]\ntransformations = ["level", "log"]')
+    data = tmp_path / "small.csv"
+    lines = data.read_text(encoding="utf-8").splitlines()
+    cells = lines[40].split(",")
+    lines[40] = ",".join([cells[0], "-1.5", *cells[2:]])
+    data.write_text("\n".join(lines) + "\n", encoding="utf-8")
+    with pytest.raises(SystemExit) as left:
+        main(["check", str(plan)])
+    assert left.value.code == 2
+    assert "line 41, column x" in capsys.readouterr().err
+
+
+@pytest.mark.parametrize("kind", ["constant", "collinear"])
+def test_series_that_cannot_be_used(
+    kind: str, tmp_path: Path, capsys: pytest.CaptureFixture[str]
+) -> None:
+    plan = small_plans.write_plan(tmp_path)
+    data = tmp_path / "small.csv"
+    lines = data.read_text(encoding="utf-8").splitlines()
+    for number, line in enumerate(lines[1:], start=1):
+        cells = line.split(",")
+        cells[3] = "5" if kind == "constant" else f"{2 * float(cells[1]) + 1:.6f}"
+        lines[number] = ",".join(cells)
+    data.write_text("\n".join(lines) + "\n", encoding="utf-8")
+    with pytest.raises(SystemExit) as left:
+        main(["run", str(plan), "--no-report"])
+    assert left.value.code == 2
+    assert "z" in capsys.readouterr().err
+    assert not plan.with_suffix(".duckdb").exists()
