@@ -183,7 +183,7 @@ class _Sheet:
         missing = (reason == Reason.NONE) & ~np.isfinite(statistic.p_value)
         if missing.any():
             robust = choice.covariance != "classical"
-            exact = fitted.exact_row[window] & (choice.covariance in ("HC2", "HC3"))
+            exact = fitted.exact_row[window]
             singular = Reason.NO_COVARIANCE if robust else Reason.NO_NUMBER
             reason[missing] = np.where(exact, Reason.LEVERAGE, singular)[missing]
         good = reason == Reason.NONE

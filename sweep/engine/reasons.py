@@ -41,7 +41,7 @@ REASONS: dict[Reason, tuple[Status, str]] = {
     Reason.EXACT_FIT: (Status.INFEASIBLE, "the regression fits the effect exactly"),
     Reason.LEVERAGE: (
         Status.INFEASIBLE,
-        "one observation is fitted exactly, so HC2 and HC3 do not exist",
+        "an observation is fitted exactly, so this sandwich covariance does not exist",
     ),
     Reason.SHORT_FOR_CRITERION: (
         Status.INFEASIBLE,

@@ -25,6 +25,8 @@ __all__ = ["COVARIANCES", "RobustFit", "robust_stack"]
 COVARIANCES = ("HC0", "HC1", "HC2", "HC3")
 FULL_LEVERAGE = 1e-10
 """1 − h below which an observation counts as fitted exactly."""
+ROUNDING = 1e-8
+"""Share of the leverage below which the restricted block has no part in fitting a row."""
 SINGULAR = 1e-5
 """Smallest pivot of the unit-diagonal sandwich that still gives digits: its square over ε."""
 
@@ -42,7 +44,7 @@ class RobustFit:
     lag_errors : ndarray, shape (w, e, q)
         Standard errors of the single lag coefficients, standardised units.
     exact_row : ndarray of bool, shape (w,)
-        Where HC2 and HC3 do not exist because an observation has leverage one.
+        Where the covariance does not exist because an observation is fitted exactly.
     """
 
     wald: Floats
@@ -110,13 +112,14 @@ def _fill(
     basis = _orthonormal(matrix[:, :, :k], fit.lower[members], fit.solver[members] == Solver.QR, k)
     leverage = (basis**2).sum(axis=2)
     block = np.ascontiguousarray(basis[:, :, k - q :])
+    own = (block**2).sum(axis=2)
     inverse = np.linalg.inv(fit.lower[members][:, k - q : k, k - q : k])
     direction = inverse.sum(axis=2)
     observed = matrix[:, :, k:]
     projection = basis.transpose(0, 2, 1) @ observed
     squares = (observed - basis @ projection) ** 2
     for name, result in results.items():
-        weight, exact = _weight(name, leverage, k)
+        weight, exact = _weight(name, leverage, own, k)
         for effect in range(regression.effects.size):
             weighted = block * (weight * squares[:, :, effect])[:, :, None]
             middle = weighted.transpose(0, 2, 1) @ block
@@ -144,17 +147,20 @@ def _orthonormal(columns: Floats, lower: Floats, by_qr: np.ndarray, k: int) -> F
     return basis
 
 
-def _weight(name: str, leverage: Floats, k: int) -> tuple[Floats, np.ndarray]:
-    """Return ω, shape (w, t), and where the covariance does not exist, shape (w,)."""
-    count = leverage.shape[1]
-    if name == "HC0":
-        return np.ones_like(leverage), np.zeros(leverage.shape[0], bool)
-    if name == "HC1":
-        return np.full_like(leverage, count / (count - k)), np.zeros(leverage.shape[0], bool)
+def _weight(name: str, leverage: Floats, own: Floats, k: int) -> tuple[Floats, np.ndarray]:
+    """Return ω, shape (w, t), and where the covariance does not exist, shape (w,).
+
+    HC2 and HC3 divide by 1 − h.  HC0 and HC1 do not, but where the restricted block takes part
+    in fitting a row exactly (``own``, its share of the leverage, is not zero), the squared
+    residual of that row is rounding and nothing else.
+    """
     room = 1.0 - leverage
-    exact = np.asarray((room < FULL_LEVERAGE).any(axis=1))
-    room = np.where(room < FULL_LEVERAGE, 1.0, room)
-    return room ** (-1.0 if name == "HC2" else -2.0), exact
+    fitted = room < FULL_LEVERAGE
+    if name in ("HC0", "HC1"):
+        scale = 1.0 if name == "HC0" else leverage.shape[1] / (leverage.shape[1] - k)
+        return np.full_like(leverage, scale), (fitted & (own > ROUNDING)).any(axis=1)
+    room = np.where(fitted, 1.0, room)
+    return room ** (-1.0 if name == "HC2" else -2.0), fitted.any(axis=1)
 
 
 def _wald(middle: Floats, projection: Floats) -> Floats:
