@@ -158,9 +158,10 @@ def _weight(name: str, leverage: Floats, own: Floats, k: int) -> tuple[Floats, n
     fitted = room < FULL_LEVERAGE
     if name in ("HC0", "HC1"):
         scale = 1.0 if name == "HC0" else leverage.shape[1] / (leverage.shape[1] - k)
-        return np.full_like(leverage, scale), (fitted & (own > ROUNDING)).any(axis=1)
+        lost = np.any(fitted & (own > ROUNDING), axis=1)
+        return np.full_like(leverage, scale), np.asarray(lost)
     room = np.where(fitted, 1.0, room)
-    return room ** (-1.0 if name == "HC2" else -2.0), fitted.any(axis=1)
+    return room ** (-1.0 if name == "HC2" else -2.0), np.asarray(np.any(fitted, axis=1))
 
 
 def _wald(middle: Floats, projection: Floats) -> Floats:
