@@ -6,6 +6,7 @@ import os
 import re
 from collections.abc import Iterator, Mapping, Sequence
 from contextlib import contextmanager, suppress
+from dataclasses import dataclass
 from datetime import UTC, datetime
 from importlib import metadata
 from pathlib import Path
@@ -17,6 +18,7 @@ import pandas as pd
 from store.errors import (
     NotAStore,
     OtherSchema,
+    QueryFault,
     StoreDamaged,
     StoreError,
     StoreExists,
@@ -25,11 +27,17 @@ from store.errors import (
 )
 from store.schema import SCHEMA_VERSION, STORAGE_VERSION, VIEWS, query, schema_sql
 
-__all__ = ["Database", "create", "now", "open_reading", "open_writing"]
+__all__ = ["Database", "Statement", "create", "now", "open_reading", "open_writing"]
 
 # The log is folded into the file in larger portions than DuckDB's 16 MB: a million rows in
 # batches of 50,000 then take 2.4 s instead of 3.4 s.
 _WRITING = {"storage_compatibility_version": STORAGE_VERSION, "checkpoint_threshold": "64MB"}
+# For questions that a user wrote: no file, no network, no Python variable, no other setting.
+_CONFINED = {
+    "enable_external_access": False,
+    "python_enable_replacements": False,
+    "lock_configuration": True,
+}
 
 Parameters = Sequence[Any] | Mapping[str, Any] | None
 
@@ -37,6 +45,22 @@ Parameters = Sequence[Any] | Mapping[str, Any] | None
 def now() -> datetime:
     """Return the time in universal time without a zone, as the store keeps it."""
     return datetime.now(UTC).replace(tzinfo=None)
+
+
+@dataclass(frozen=True, slots=True)
+class Statement:
+    """One statement of a user's SQL.
+
+    Attributes
+    ----------
+    kind : str
+        ``SELECT`` for everything that only reads; otherwise its verb, such as ``COPY``.
+    parameters : frozenset of str
+        Names after a ``$``.
+    """
+
+    kind: str
+    parameters: frozenset[str]
 
 
 class Database:
@@ -74,6 +98,60 @@ class Database:
         """Return the first cell of a query, or None where it has no rows."""
         rows = self.execute(sql, params)
         return rows[0][0] if rows else None
+
+    def statements(self, sql: str) -> list[Statement]:
+        """Take a user's SQL apart; runs nothing.
+
+        Raises
+        ------
+        QueryFault
+            It is no SQL.
+        """
+        with _question():
+            return [
+                Statement(str(found.type.name), frozenset(found.named_parameters))
+                for found in self._connection.extract_statements(sql)
+            ]
+
+    def asked(self, sql: str, params: Parameters = None) -> pd.DataFrame:
+        """Run a user's query and return its rows as a pandas frame.
+
+        Raises
+        ------
+        QueryFault
+            It cannot be answered.
+        """
+        with _question():
+            return self.frame(sql, params)
+
+    def stream(
+        self, sql: str, params: Parameters = None, size: int = 1000
+    ) -> tuple[list[tuple[str, str]], Iterator[list[tuple[Any, ...]]]]:
+        """Run a user's query and return its rows in portions, never all at once.
+
+        Returns
+        -------
+        columns : list of (name, type)
+        portions : iterator of lists of rows
+            At most ``size`` rows each; QueryFault where reading on fails.
+
+        Raises
+        ------
+        QueryFault
+            It cannot be answered.
+        """
+        with _question():
+            self._connection.execute(sql, params) if params else self._connection.execute(sql)
+            columns = [(str(item[0]), str(item[1])) for item in self._connection.description or ()]
+        return columns, self._portions(size)
+
+    def _portions(self, size: int) -> Iterator[list[tuple[Any, ...]]]:
+        while True:
+            with _question():
+                rows = self._connection.fetchmany(size)
+            if not rows:
+                return
+            yield rows
 
     def register(self, name: str, frame: pd.DataFrame) -> None:
         """Make a pandas frame readable under a name until :meth:`unregister`."""
@@ -186,7 +264,11 @@ def open_writing(
 
 
 def open_reading(
-    path: str | os.PathLike[str], *, memory_limit: str = "1GB", threads: int | None = None
+    path: str | os.PathLike[str],
+    *,
+    memory_limit: str = "1GB",
+    threads: int | None = None,
+    confined: bool = False,
 ) -> Database:
     """Open an existing store read-only.
 
@@ -198,6 +280,9 @@ def open_reading(
         DuckDB's memory limit, such as ``"1GB"``.
     threads : int, optional
         Threads of DuckDB; all available cores where not given.
+    confined : bool
+        For SQL that a user wrote: nothing but this store can be read (no file, no network,
+        no Python variable, no extension) and no setting can be changed.
 
     Raises
     ------
@@ -217,7 +302,8 @@ def open_reading(
         raise StoreMissing(
             f"{file}: there is no store here. Name an existing one, or run the plan."
         )
-    database = Database(file, _connect(file, _config(memory_limit, threads), read_only=True))
+    config = _config(memory_limit, threads) | (_CONFINED if confined else {})
+    database = Database(file, _connect(file, config, read_only=True))
     try:
         _check_schema(database)
     except BaseException:
@@ -288,6 +374,28 @@ def _explained(file: Path, error: duckdb.Error) -> StoreError:
     if isinstance(error, duckdb.PermissionException) or "ermission denied" in text:
         return StoreError(f"{file}: the file may not be opened. Check its permissions.")
     return _damaged(file, error)
+
+
+@contextmanager
+def _question() -> Iterator[None]:
+    """Turn what DuckDB says of a user's query into one line of ours."""
+    try:
+        yield
+    except duckdb.Error as error:
+        raise QueryFault(f"The query cannot be answered: {_told(error)}") from None
+
+
+def _told(error: duckdb.Error) -> str:
+    """Return DuckDB's message on a query in one line, without its picture of the place."""
+    if isinstance(error, duckdb.OutOfMemoryException):
+        return "it needs more memory than the limit. Ask for fewer rows or columns, or count them."
+    text = str(error)
+    if isinstance(error, duckdb.PermissionException):
+        return "a query reads this store only: no other file, no network, no other database."
+    if "extension" in text:
+        return "it needs an extension, and a query loads none. Use what DuckDB has built in."
+    told = " ".join(text.split("LINE 1:", maxsplit=1)[0].split())
+    return told if told.endswith((".", "!", "?")) else told + "."
 
 
 def _damaged(file: Path, error: duckdb.Error) -> StoreDamaged:

@@ -8,6 +8,7 @@ __all__ = [
     "NotAStore",
     "NotFound",
     "OtherSchema",
+    "QueryFault",
     "StoreDamaged",
     "StoreError",
     "StoreExists",
@@ -56,6 +57,12 @@ class StoreExists(StoreError):
 
 class StoreMissing(StoreError):
     """There is no file, or no folder, at the path; bad usage rather than a bad store."""
+
+    exit_code = 2
+
+
+class QueryFault(StoreError):
+    """A query that is not one plain question, or that cannot be answered; bad usage."""
 
     exit_code = 2
 

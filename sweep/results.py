@@ -4,7 +4,8 @@ from __future__ import annotations
 
 import html
 import json
-from collections.abc import Sequence
+from collections.abc import Iterator, Sequence
+from contextlib import contextmanager
 from dataclasses import replace
 from pathlib import Path
 from typing import TYPE_CHECKING, Any
@@ -12,6 +13,7 @@ from typing import TYPE_CHECKING, Any
 from store import read
 from store.database import Database, open_reading
 from store.errors import NotFound
+from store.query import query_frame, query_stream
 from sweep.errors import Fault, InputFault
 from sweep.plan.choices import AXES
 from sweep.plan.suggest import suggestion
@@ -226,6 +228,42 @@ class Results:
 
         with self._open() as database:
             return [Path(p) for p in export(database, self.sweep, Path(folder), tuple(formats))]
+
+    def query(self, sql: str) -> pd.DataFrame:
+        """Ask the store a question in SQL; nothing else can be read, nothing written.
+
+        Parameters
+        ----------
+        sql : str
+            One statement of DuckDB's that reads.  ``outcomes`` and ``survival`` hold every
+            sweep of the store; ``$sweep`` stands for the number of this one.
+
+        Returns
+        -------
+        pandas.DataFrame
+
+        Raises
+        ------
+        store.errors.QueryFault
+            If it is not one such statement, or cannot be answered.
+        """
+        with open_reading(self.store, confined=True) as database:
+            return query_frame(database, self.sweep, sql)
+
+    @contextmanager
+    def stream(
+        self, sql: str, size: int = 1000
+    ) -> Iterator[tuple[list[tuple[str, str]], Iterator[list[tuple[Any, ...]]]]]:
+        """Ask as :meth:`query` does and read the rows in portions, in a ``with`` block.
+
+        Yields
+        ------
+        columns : list of (name, type)
+        portions : iterator of lists of rows
+            At most ``size`` rows each.
+        """
+        with open_reading(self.store, confined=True) as database:
+            yield query_stream(database, self.sweep, sql, size)
 
     def explain(
         self,

@@ -10,14 +10,19 @@ import click
 
 from sweep.errors import CrosswindError, InputFault
 
-__all__ = ["guarded"]
+__all__ = ["COMPLETING", "guarded"]
+
+COMPLETING = "_CROSSWIND_COMPLETE"
+"""Set by a shell that asks for completions instead of a run."""
 
 
 def guarded(group: click.Group, arguments: list[str] | None) -> Any:
     """Run a command group; leave with 2, 4, 5 or 130 and one clear message where it fails."""
     _refuse_foreign_package()
     try:
-        code = group.main(args=arguments, prog_name="crosswind", standalone_mode=False)
+        code = group.main(
+            args=arguments, prog_name="crosswind", complete_var=COMPLETING, standalone_mode=False
+        )
     except click.ClickException as error:
         error.show()
         _leave(error.exit_code)
@@ -30,9 +35,10 @@ def guarded(group: click.Group, arguments: list[str] | None) -> Any:
     except CrosswindError as error:
         click.echo(str(error), err=True)
         _leave(error.exit_code)
-    except BrokenPipeError:
-        # The reader of our output went away; nothing more can be said to it.
-        os.dup2(os.open(os.devnull, os.O_WRONLY), sys.stdout.fileno())
+    except SystemExit:
+        if COMPLETING in os.environ:
+            raise
+        # The reader of our output went away, as head does; that is no fault of anybody's.
         _leave(0)
     except Exception as error:  # sorted by its own exit code, else re-raised
         known = _store_exit_code(error)
