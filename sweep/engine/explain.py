@@ -2,19 +2,16 @@
 
 from __future__ import annotations
 
-import json
 from dataclasses import dataclass
 from pathlib import Path
 from typing import TYPE_CHECKING, Any
 
 import numpy as np
 
-from sweep.engine.prepare import Prepared, prepare
+from sweep.engine.prepare import Prepared
 from sweep.engine.recheck import SlowDirection, SlowResult, recheck
-from sweep.errors import Fault, InputFault
-from sweep.plan.canonical import hex_id
+from sweep.engine.stored import prepared_again, row_of
 from sweep.plan.choices import AXES, LagChoice
-from sweep.plan.load import plan_from_text
 from sweep.procedures import PROCEDURES
 
 if TYPE_CHECKING:
@@ -85,9 +82,9 @@ def explain(
 ) -> Explanation:
     """Explain one stored specification; see :meth:`sweep.results.Results.explain`."""
     row = results.specification(specification, finding)
-    prepared = _prepared(results, data)
+    prepared = prepared_again(results, data)
     number = next(f.number for f in prepared.plan.findings if f.name == row["finding"])
-    index = _row_of(prepared, number, str(row["specification"]))
+    index = row_of(prepared, number, str(row["specification"]))
     plan = prepared.plan
     found = plan.findings[number]
     choices = tuple(
@@ -111,46 +108,6 @@ def explain(
         _coefficients(slow),
         tuple(_verdict(row)),
     )
-
-
-def _prepared(results: Results, data: Path | None) -> Prepared:
-    """Rebuild the plan from the store and read its data again, refusing other data."""
-    text = str(results.info["plan_toml"])
-    plan = plan_from_text(text, results.store.with_suffix(".toml"))
-    note = json.loads(str(results.info["data_note"]))
-    candidates = [data] if data is not None else [plan.data_path, Path(note["file"])]
-    path = next((p for p in candidates if p is not None and p.exists()), None)
-    if path is None:
-        raise InputFault(
-            Fault(
-                str(candidates[0]), "the data file is not there", "Name it with --data FILE."
-            )
-        )
-    from sweep.engine.prepare import with_data
-
-    prepared = prepare(with_data(plan, path))
-    held = zip(results.findings["data_high"], results.findings["data_low"], strict=True)
-    for (high, low), key in zip(held, prepared.data_keys, strict=True):
-        if (int(high), int(low)) != key:
-            raise InputFault(
-                Fault(
-                    str(path),
-                    "the data have changed since this sweep was run",
-                    "Run the plan again, or name the earlier file with --data FILE.",
-                )
-            )
-    return prepared
-
-
-def _row_of(prepared: Prepared, finding: int, specification: str) -> int:
-    high, low = int(specification[:16], 16), int(specification[16:], 16)
-    rows = prepared.rows
-    where = np.flatnonzero(
-        (rows.finding == finding) & (rows.high == np.uint64(high)) & (rows.low == np.uint64(low))
-    )
-    if where.size != 1:
-        raise InputFault(Fault(hex_id(high, low), "the stored plan does not hold it any more"))
-    return int(where[0])
 
 
 def _sample(prepared: Prepared, row: dict[str, Any], slow: SlowResult | None) -> list[str]:
