@@ -4,7 +4,14 @@ from __future__ import annotations
 
 from dataclasses import dataclass
 
-__all__ = ["ChoiceRecord", "FindingRecord", "SweepChoiceRecord", "SweepRecord"]
+__all__ = [
+    "ChoiceRecord",
+    "FindingRecord",
+    "RequestChoiceRecord",
+    "RequestRecord",
+    "SweepChoiceRecord",
+    "SweepRecord",
+]
 
 
 @dataclass(frozen=True, slots=True)
@@ -137,6 +144,11 @@ class SweepChoiceRecord:
         Choices whose coefficients are on one scale share it.
     length : int
         Periods in a moving window (the shortest one where it grows); 0 otherwise.
+    request : int
+        0 for a choice of the plan, otherwise the request that first brought it.
+    data_high, data_low : int
+        On the axis measures, the digest of the values of the finding's series under this
+        choice: rows are shared between sweeps only where it is equal.  0 on other axes.
     """
 
     finding: int
@@ -152,3 +164,47 @@ class SweepChoiceRecord:
     positions: int
     scale_group: str
     length: int = 0
+    request: int = 0
+    data_high: int = 0
+    data_low: int = 0
+
+
+@dataclass(frozen=True, slots=True)
+class RequestRecord:
+    """A referee's question.
+
+    Attributes
+    ----------
+    request : int
+        Number in the sweep, from 1; 0 stands for planned rows.
+    name, asked_by, asks : str
+        Words of the plan.
+    """
+
+    request: int
+    name: str
+    asked_by: str
+    asks: str
+
+
+@dataclass(frozen=True, slots=True)
+class RequestChoiceRecord:
+    """A choice that a request names for a finding.
+
+    Attributes
+    ----------
+    finding, request : int
+        Numbers of both.
+    axis : str
+        Axis name.
+    code : int
+        Code from :meth:`store.write.SweepWriter.register_choices`.
+    position : int
+        Place on the axis in the request.
+    """
+
+    finding: int
+    request: int
+    axis: str
+    code: int
+    position: int

@@ -75,7 +75,10 @@ CREATE TABLE sweep_choice (
     entry_kind VARCHAR,  -- rolling, expanding or shrinking for a moving window; empty otherwise
     positions INTEGER,  -- planned positions of a moving window; 1 otherwise
     scale_group VARCHAR,  -- choices whose coefficients are on one scale share it
-    length INTEGER  -- periods in a moving window, the shortest if it grows; 0 otherwise
+    length INTEGER,  -- periods in a moving window, the shortest if it grows; 0 otherwise
+    request SMALLINT,  -- 0 for a choice of the plan, otherwise the request that first brought it
+    data_high UBIGINT,  -- measures: digest of dates and values of their series, upper half; else 0
+    data_low UBIGINT  -- the same, lower half
 );
 
 CREATE TABLE window_position (
@@ -105,6 +108,15 @@ CREATE TABLE request (
     name VARCHAR,  -- name of the request
     asked_by VARCHAR,  -- who asked
     asks VARCHAR  -- the question in words
+);
+
+CREATE TABLE request_choice (
+    sweep INTEGER,  -- sweep
+    finding SMALLINT,  -- finding
+    request SMALLINT,  -- number of the request
+    axis VARCHAR,  -- axis
+    code SMALLINT,  -- a choice that the request names, planned or new
+    position INTEGER  -- place in the request
 );
 
 CREATE TABLE outcome (

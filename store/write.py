@@ -15,7 +15,14 @@ import pandas as pd
 from store.batches import CODE_COLUMNS, details_frame, outcome_frame, planned_frame
 from store.database import Database, now
 from store.errors import BadBatch
-from store.records import ChoiceRecord, FindingRecord, SweepChoiceRecord, SweepRecord
+from store.records import (
+    ChoiceRecord,
+    FindingRecord,
+    RequestChoiceRecord,
+    RequestRecord,
+    SweepChoiceRecord,
+    SweepRecord,
+)
 from store.schema import AXES, query
 
 __all__ = ["SweepWriter"]
@@ -111,18 +118,14 @@ class SweepWriter:
         elif known != name:
             raise ValueError(f"Bit {bit} is the screen {known!r} in this store, not {name!r}.")
 
-    def register_request(
-        self, sweep: int, request: int, name: str, asked_by: str, asks: str
-    ) -> None:
-        """Add a referee's question; rows added for it carry its number (from 1)."""
-        self._insert("request", [[sweep, request, name, asked_by, asks]])
-
     def begin(
         self,
         sweep: SweepRecord,
         findings: Sequence[FindingRecord],
         choices: Sequence[SweepChoiceRecord],
         positions: Arrays,
+        requests: Sequence[RequestRecord] = (),
+        request_choices: Sequence[RequestChoiceRecord] = (),
     ) -> int:
         """Start a sweep, or take up one that was begun with the same plan and data.
 
@@ -137,6 +140,10 @@ class SweepWriter:
         positions : dict of arrays, each (positions,)
             ``finding``, ``window`` (code), ``position``, ``window_start`` and ``window_end``
             (``datetime64[D]``) of every window.
+        requests : sequence of RequestRecord
+            Questions of referees; rows added for one carry its number.
+        request_choices : sequence of RequestChoiceRecord
+            The choices that they name.
 
         Returns
         -------
@@ -154,6 +161,8 @@ class SweepWriter:
             self._insert("sweep", [[number, *astuple(sweep), now()]])
             self._insert("finding", [[number, *astuple(finding)] for finding in findings])
             self._insert("sweep_choice", [[number, *astuple(choice)] for choice in choices])
+            self._insert("request", [[number, *astuple(request)] for request in requests])
+            self._insert("request_choice", [[number, *astuple(one)] for one in request_choices])
             database.execute(
                 'INSERT INTO window_position SELECT ?, finding, "window", position, '
                 "window_start::DATE, window_end::DATE FROM new_positions",

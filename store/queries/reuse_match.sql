@@ -1,13 +1,17 @@
 -- For each planned row that is not stored yet: the latest other sweep and finding that has it.
 -- Failed rows are computed again; a rule of another plan's author says nothing about this plan.
+-- The data are compared by the series that the row's choice of measures reads, so that a plan with
+-- a further measure takes over what it shares.
 CREATE OR REPLACE TEMP TABLE reuse_match AS
 WITH sources AS (
-    SELECT f.finding, g.sweep AS source_sweep, g.finding AS source_finding
-    FROM finding AS f
+    SELECT f.finding, g.sweep AS source_sweep, g.finding AS source_finding, f.code AS measures
+    FROM sweep_choice AS f
     JOIN sweep AS s ON s.sweep = f.sweep
-    JOIN finding AS g ON g.data_high = f.data_high AND g.data_low = f.data_low
+    JOIN sweep_choice AS g
+        ON g.axis = 'measures' AND g.code = f.code
+        AND g.data_high = f.data_high AND g.data_low = f.data_low
     JOIN sweep AS u ON u.sweep = g.sweep AND u.numerics = s.numerics
-    WHERE f.sweep = $sweep AND g.sweep <> $sweep
+    WHERE f.axis = 'measures' AND f.sweep = $sweep AND g.sweep <> $sweep
 ),
 missing AS (
     SELECT p.*
@@ -18,7 +22,8 @@ missing AS (
 candidates AS (
     SELECT o.spec_high, o.spec_low, s.finding, o.sweep AS source_sweep, o.finding AS source_finding
     FROM outcome AS o
-    JOIN sources AS s ON s.source_sweep = o.sweep AND s.source_finding = o.finding
+    JOIN sources AS s
+        ON s.source_sweep = o.sweep AND s.source_finding = o.finding AND s.measures = o.measures
     LEFT JOIN reason AS r ON r.code = o.reason
     WHERE o.status <> 3 AND o.reverse_status <> 3 AND NOT coalesce(r.ruled, FALSE)
 ),

@@ -1,7 +1,9 @@
--- How many findings of other sweeps have data and numerics in common with this sweep.
+-- How many choices of measures have data and numerics in common with other sweeps.
 SELECT count(*)
-FROM finding AS f
+FROM sweep_choice AS f
 JOIN sweep AS s ON s.sweep = f.sweep
-JOIN finding AS g ON g.data_high = f.data_high AND g.data_low = f.data_low
+JOIN sweep_choice AS g
+    ON g.axis = 'measures' AND g.code = f.code
+    AND g.data_high = f.data_high AND g.data_low = f.data_low
 JOIN sweep AS u ON u.sweep = g.sweep AND u.numerics = s.numerics
-WHERE f.sweep = $sweep AND g.sweep <> $sweep;
+WHERE f.axis = 'measures' AND f.sweep = $sweep AND g.sweep <> $sweep;

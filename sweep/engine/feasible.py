@@ -83,7 +83,7 @@ def _lost_rows(plan: Plan, calendar: Calendar) -> int:
 def _fits(plan: Plan, finding: Finding, lag: LagChoice, room: int) -> bool:
     """Say whether some combination leaves a degree of freedom in ``room`` periods."""
     given = []
-    for code in plan.finding_axes[finding.number]["conditioning"].codes:
+    for code in plan.finding_axes[finding.number]["conditioning"].every:
         choice = plan.axes["conditioning"][code]
         assert isinstance(choice, ConditioningChoice)
         given.append(len(finding.given) - len(choice.without))

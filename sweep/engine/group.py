@@ -67,7 +67,7 @@ def _by_panel(prepared: Prepared, missing: Ints) -> Iterator[Ints]:
     panels: dict[object, int] = {}
     table = np.zeros((len(plan.findings), len(plan.axes["measures"])), np.int64)
     for finding in plan.findings:
-        for code in plan.finding_axes[finding.number]["measures"].codes:
+        for code in plan.finding_axes[finding.number]["measures"].every:
             columns = _columns(prepared, finding, code)
             roles = tuple(sorted(zip(columns, finding.roles, strict=True)))
             span = tuple(
@@ -244,7 +244,7 @@ def _systems(
         choice = plan.axes["conditioning"][kind % width]
         assert isinstance(choice, ConditioningChoice)
         code = measure
-        if code not in plan.finding_axes[finding.number]["measures"].codes:
+        if code not in plan.finding_axes[finding.number]["measures"].every:
             code = plan.finding_axes[finding.number]["measures"].baseline
         place = {
             role: names.index(column)

@@ -24,15 +24,15 @@ from sweep.panel.load import (
 )
 from sweep.panel.transforms import TRANSFORMS
 from sweep.panel.windows import Positions, WindowRequest, resolve_window
-from sweep.plan.canonical import Token, halves, position_tokens
+from sweep.plan.canonical import Token, add_tokens, digest_text, halves, position_tokens
 from sweep.plan.choices import (
     DeterministicChoice,
     MeasureChoice,
     TransformationChoice,
     WindowChoice,
 )
-from sweep.plan.expand import FindingPositions, PlanRows, expand_plan
-from sweep.plan.model import Finding, Plan, scale_of
+from sweep.plan.expand import FindingPositions, PlanRows, expand_plan, request_axes
+from sweep.plan.model import Finding, FindingAxis, Plan, scale_of
 
 __all__ = ["Prepared", "prepare", "terms_of", "with_data"]
 
@@ -53,6 +53,9 @@ class Prepared:
         Every planned specification.
     data_keys : tuple of Token, one a finding
         Digest of the values that the finding uses.
+    spans : tuple of (int, int), one a finding
+        First and last row at which the baseline's series all exist; windows are cut from
+        these rows, whatever the measures and the conditioning set.
     terms : mapping of deterministics code to tuple of Term
     notes : tuple of str
         Choices that give the same numbers by construction, in words.
@@ -65,6 +68,17 @@ class Prepared:
     data_keys: tuple[Token, ...]
     terms: Mapping[int, tuple[Term, ...]]
     notes: tuple[str, ...]
+    spans: tuple[tuple[int, int], ...]
+
+    def data_key(self, finding: Finding, measure: MeasureChoice) -> Token:
+        """Return the digest of all that a finding's numbers rest on under a choice of measures.
+
+        It covers the values of its series and the rows that windows are cut from.
+        """
+        names = sorted(set(self.plan.columns(finding, measure)))
+        high, low = data_digest(self.dataset, names)
+        first, last = (self.dataset.calendar.label(row) for row in self.spans[finding.number])
+        return add_tokens((high, low), digest_text(f"span\0{first}\0{last}"))
 
 
 def prepare(plan: Plan) -> Prepared:
@@ -98,7 +112,7 @@ def prepare(plan: Plan) -> Prepared:
     rows = expand_plan(plan, positions)
     keys = tuple(data_digest(dataset, sorted(_columns(plan, f))) for f in plan.findings)
     notes = (*plan.notes, *_window_notes(plan, windows), *_measure_notes(dataset))
-    return Prepared(plan, dataset, windows, rows, keys, terms, notes)
+    return Prepared(plan, dataset, windows, rows, keys, terms, notes, tuple(spans))
 
 
 def with_data(plan: Plan, path: Path) -> Plan:
@@ -112,7 +126,7 @@ def _unique(faults: list[Fault]) -> list[Fault]:
 
 
 def _measures(plan: Plan, finding: Finding) -> Iterator[MeasureChoice]:
-    for code in plan.finding_axes[finding.number]["measures"].codes:
+    for code in plan.finding_axes[finding.number]["measures"].every:
         choice = plan.axes["measures"][code]
         assert isinstance(choice, MeasureChoice)
         yield choice
@@ -177,7 +191,7 @@ def _windows(
     result = []
     for finding, span in zip(plan.findings, spans, strict=True):
         found: dict[int, Positions] = {}
-        for code in plan.finding_axes[finding.number]["window"].codes:
+        for code in plan.finding_axes[finding.number]["window"].every:
             choice = plan.axes["window"][code]
             assert isinstance(choice, WindowChoice)
             request = WindowRequest(
@@ -259,16 +273,26 @@ def _tokens(plan: Plan, windows: Mapping[int, Positions], calendar: Calendar) ->
 def _check_size(plan: Plan, positions: list[FindingPositions]) -> None:
     total = 0
     for finding in plan.findings:
-        size = sum(positions[finding.number].counts.values())
-        for axis, entry in plan.finding_axes[finding.number].items():
-            if axis != "window":
-                size *= len(entry.codes)
-        total += size
+        counts = positions[finding.number].counts
+        planned = _full_size(plan.finding_axes[finding.number], counts)
+        total += planned
+        for request in plan.requests:
+            # An upper bound: what two requests ask alike is added once.
+            total += _full_size(request_axes(plan, finding, request), counts) - planned
     if total > MAXIMUM_ROWS and plan.document.sweep.design == "full":
         raise InputFault(
             Fault("axes", f"the full cross has {total:,} specifications, more than "
                   f"{MAXIMUM_ROWS:,}", "Choose fewer, or set [sweep] design = { sample = 5000 }.")
         )  # fmt: skip
+
+
+def _full_size(axes: Mapping[str, FindingAxis], counts: Mapping[int, int]) -> int:
+    """Return the number of specifications of a full cross."""
+    size = sum(counts[code] for code in axes["window"].codes)
+    for axis, held in axes.items():
+        if axis != "window":
+            size *= len(held.codes)
+    return size
 
 
 def _window_notes(plan: Plan, windows: tuple[Mapping[int, Positions], ...]) -> list[str]:

@@ -13,7 +13,14 @@ from numpy.typing import NDArray
 
 from store.database import Database
 from store.read_sweeps import sweeps
-from store.records import ChoiceRecord, FindingRecord, SweepChoiceRecord, SweepRecord
+from store.records import (
+    ChoiceRecord,
+    FindingRecord,
+    RequestChoiceRecord,
+    RequestRecord,
+    SweepChoiceRecord,
+    SweepRecord,
+)
 from store.write import SweepWriter
 from sweep.engine.prepare import Prepared
 from sweep.engine.reasons import REASONS, RULED, Reason, Status
@@ -126,7 +133,10 @@ class StoreSink:
         )
         findings = [self._finding(finding) for finding in plan.findings]
         choices = [c for finding in plan.findings for c in self._choices(finding)]
-        return self._writer.begin(record, findings, choices, self._positions())
+        requests = [RequestRecord(r.number, r.name, r.asked_by, r.asks) for r in plan.requests]
+        return self._writer.begin(
+            record, findings, choices, self._positions(), requests, self._request_choices()
+        )
 
     def _finding(self, finding: Finding) -> FindingRecord:
         plan = self.prepared.plan
@@ -157,12 +167,15 @@ class StoreSink:
         records = []
         for axis in AXES:
             held = plan.finding_axes[finding.number][axis]
-            for place, code in enumerate(held.codes):
+            for place, code in enumerate(held.every):
                 choice = plan.axes[axis][code]
                 moving = choice.moving if isinstance(choice, WindowChoice) else ""
                 positions = 1
                 if moving:
                     positions = self.prepared.windows[finding.number][code].count
+                data = (0, 0)
+                if isinstance(choice, MeasureChoice):
+                    data = self.prepared.data_key(finding, choice)
                 records.append(
                     SweepChoiceRecord(
                         finding.number,
@@ -178,25 +191,41 @@ class StoreSink:
                         positions,
                         _scale_group(axis, choice),
                         choice.length if isinstance(choice, WindowChoice) else 0,
+                        plan.first_request(finding, axis, code),
+                        *data,
                     )
                 )
         return records
+
+    def _request_choices(self) -> list[RequestChoiceRecord]:
+        return [
+            RequestChoiceRecord(
+                finding.number, request.number, axis, int(self._codes[axis][code]), place
+            )
+            for request in self.prepared.plan.requests
+            for finding in self.prepared.plan.findings
+            for axis, codes in request.codes[finding.number].items()
+            for place, code in enumerate(codes)
+        ]
 
     def _weight(self, finding: Finding, axis: str, code: int, choice: Choice) -> float:
         """Return a choice's part of the headline weight, fixed by the plan.
 
         Designs that change few choices at a time have no pooled share: their weights are 0.
+        What requests bring leaves the weights of planned choices alone.
         """
         if self.prepared.plan.document.sweep.design in ("one change", "two changes"):
             return 0.0
         plan, rows = self.prepared.plan, self.prepared.rows
         if isinstance(choice, ProcedureChoice):
-            held = plan.finding_axes[finding.number]["test"].codes
+            tests = plan.finding_axes[finding.number]["test"]
+            held = tests.codes if code in tests.codes else tests.every
             group = [getattr(plan.axes["test"][c], "covariance", "") for c in held]
             return 1.0 / group.count(choice.covariance)
         if isinstance(choice, WindowChoice):
             if isinstance(plan.document.sweep.design, Table):
-                mine = rows.finding == finding.number
+                added = code not in plan.finding_axes[finding.number]["window"].codes
+                mine = (rows.finding == finding.number) & ((rows.request > 0) == added)
                 return 1.0 / max(int((rows.codes["window"][mine] == code).sum()), 1)
             return 1.0 / self.prepared.windows[finding.number][code].count
         return 1.0
@@ -223,13 +252,13 @@ class StoreSink:
             "spec_high": planned.high[rows],
             "spec_low": planned.low[rows],
             "position": planned.position[rows],
+            "request": planned.request[rows],
         }
 
     def _batch(self, rows: Ints, fields: dict[str, NDArray[Any]]) -> dict[str, NDArray[Any]]:
         planned = self.prepared.rows
         codes = {axis: self._codes[axis][planned.codes[axis][rows]] for axis in AXES}
-        blank = {"request": np.zeros(rows.size, np.int16)}
-        return {**self._planned(rows), **codes, **blank, **fields}
+        return {**self._planned(rows), **codes, **fields}
 
     def _write_ruled(self, rows: Ints) -> None:
         if not rows.size:

@@ -215,6 +215,19 @@ class SweepTable(Table):
     )
 
 
+class RequestTable(Table):
+    """A referee's question: choices to be added to the plan's."""
+
+    name: StrictStr = Field(min_length=1, description="Short name of the request.")
+    from_: StrictStr = Field(default="", alias="from", description="Who asks.")
+    asks: StrictStr = Field(default="", description="The question in words.")
+    axes: AxesTable = Field(description="Choices to add, written as in [axes].")
+    with_: list[StrictStr] = Field(
+        default=[], alias="with", description="Earlier requests to cross it with."
+    )
+    finding: StrictStr | None = Field(default=None, description="Only for this finding.")
+
+
 def _unavailable(value: Any) -> Any:
     if value is not None:
         _refuse("not yet available in this version; leave it out")
@@ -239,6 +252,8 @@ class PlanDocument(Table):
     rule_out: list[RuleTable] = Field(default=[], description="Combinations that are not run.")
     screens: ScreensTable = ScreensTable()
     sweep: SweepTable = SweepTable()
+    requests: list[RequestTable] = Field(default=[], description="Questions of referees.")
+    extends: StrictStr | None = Field(
+        default=None, description="Plan file that this one starts from, relative to it."
+    )
     calibration: Later = None
-    requests: Later = None
-    extends: Later = None

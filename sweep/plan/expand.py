@@ -3,17 +3,17 @@
 from __future__ import annotations
 
 from collections.abc import Callable, Mapping, Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, fields
 
 import numpy as np
 from numpy.typing import NDArray
 
 from sweep.plan.canonical import Token, digest_text, halves, token
 from sweep.plan.choices import AXES
-from sweep.plan.model import Finding, Plan
+from sweep.plan.model import Finding, FindingAxis, Plan, Request
 from sweep.plan.tables import Table
 
-__all__ = ["DESIGNS", "Codes", "FindingPositions", "PlanRows", "expand_plan"]
+__all__ = ["DESIGNS", "Codes", "FindingPositions", "PlanRows", "expand_plan", "request_axes"]
 
 Codes = dict[str, NDArray[np.int16]]
 
@@ -48,6 +48,8 @@ class PlanRows:
         Id of the specification.
     rule : ndarray of int16, shape (s,)
         Index of the first rule that rules it out, -1 for none.
+    request : ndarray of int16, shape (s,)
+        Number of the first request that asks for it, 0 where it is planned.
     """
 
     finding: NDArray[np.int16]
@@ -56,11 +58,17 @@ class PlanRows:
     high: NDArray[np.uint64]
     low: NDArray[np.uint64]
     rule: NDArray[np.int16]
+    request: NDArray[np.int16]
 
     @property
     def count(self) -> int:
         """Number of specifications."""
         return int(self.finding.size)
+
+    def part(self, keep: NDArray[np.bool_]) -> PlanRows:
+        """Return some of the rows."""
+        kept = {f.name: getattr(self, f.name)[keep] for f in fields(self) if f.name != "codes"}
+        return PlanRows(codes={axis: held[keep] for axis, held in self.codes.items()}, **kept)
 
 
 def expand_plan(plan: Plan, positions: Sequence[FindingPositions]) -> PlanRows:
@@ -75,40 +83,118 @@ def expand_plan(plan: Plan, positions: Sequence[FindingPositions]) -> PlanRows:
     Returns
     -------
     PlanRows
-        Findings in plan order; within one, moving positions run fastest.
+        Planned rows first, findings in plan order; within one, moving positions run fastest.
+        Then the rows that requests add, request by request.
     """
-    parts = []
+    parts: list[PlanRows] = []
     for finding in plan.findings:
-        codes = _design(plan, finding, positions[finding.number])
+        codes = _design(plan, plan.finding_axes[finding.number])
         parts.append(_with_positions(plan, finding, codes, positions[finding.number]))
-    joined = {axis: np.concatenate([part.codes[axis] for part in parts]) for axis in AXES}
-    return PlanRows(
-        np.concatenate([part.finding for part in parts]),
-        joined,
-        np.concatenate([part.position for part in parts]),
-        np.concatenate([part.high for part in parts]),
-        np.concatenate([part.low for part in parts]),
-        np.concatenate([part.rule for part in parts]),
-    )
+    for request in plan.requests:
+        for finding in plan.findings:
+            earlier = [part for part in parts if part.finding[:1] == finding.number]
+            part = _requested(plan, finding, request, positions[finding.number], earlier)
+            if part.count:
+                parts.append(part)
+    return _joined(parts)
 
 
-def _design(plan: Plan, finding: Finding, positions: FindingPositions) -> NDArray[np.int16]:
-    """Return the entry codes of a finding's specifications, shape (s, axes)."""
+def _joined(parts: Sequence[PlanRows]) -> PlanRows:
+    codes = {axis: np.concatenate([part.codes[axis] for part in parts]) for axis in AXES}
+    others = {
+        f.name: np.concatenate([getattr(part, f.name) for part in parts])
+        for f in fields(PlanRows)
+        if f.name != "codes"
+    }
+    return PlanRows(codes=codes, **others)
+
+
+def _requested(
+    plan: Plan,
+    finding: Finding,
+    request: Request,
+    positions: FindingPositions,
+    earlier: Sequence[PlanRows],
+) -> PlanRows:
+    """Return the rows that a request adds to those that are there already.
+
+    They are the plan's design with the request's choices added to its axes, as far as they
+    hold one of them, and the baseline with any of the request's choices put in.
+    """
+    planned, asked = plan.finding_axes[finding.number], request.codes[finding.number]
+    axes = request_axes(plan, finding, request)
+    new = {axis: sorted(set(asked.get(axis, ())) - set(planned[axis].codes)) for axis in AXES}
+    answers = {
+        axis: FindingAxis(
+            tuple(dict.fromkeys((planned[axis].baseline, *asked.get(axis, ())))),
+            planned[axis].baseline,
+        )
+        for axis in AXES
+    }
+    codes = np.unique(np.concatenate([_full(answers), _design(plan, axes, new)]), axis=0)
+    keep = _full(answers)
+    rows = _with_positions(plan, finding, codes, positions, request, keep)
+    found = np.zeros(rows.count, bool)
+    for part in earlier:
+        found |= _present(rows, part)
+    return rows.part(~found)
+
+
+def request_axes(plan: Plan, finding: Finding, request: Request) -> dict[str, FindingAxis]:
+    """Return the planned axes of a finding with the choices that a request adds to them."""
+    asked = [request, *(plan.requests[number - 1] for number in request.together)]
+    axes = {}
+    for axis, held in plan.finding_axes[finding.number].items():
+        named = [c for one in reversed(asked) for c in one.codes[finding.number].get(axis, ())]
+        axes[axis] = FindingAxis(tuple(dict.fromkeys((*held.codes, *named))), held.baseline)
+    return axes
+
+
+def _present(rows: PlanRows, others: PlanRows) -> NDArray[np.bool_]:
+    """Say which rows stand among others, by id."""
+    found = np.isin(rows.low, others.low)
+    if found.any():
+        places = np.flatnonzero(found)
+        near = np.isin(others.low, rows.low[places])
+        ids = set(zip(others.high[near].tolist(), others.low[near].tolist(), strict=True))
+        pairs = zip(rows.high[places].tolist(), rows.low[places].tolist(), strict=True)
+        found[places] = [pair in ids for pair in pairs]
+    return found
+
+
+def _design(
+    plan: Plan,
+    axes: Mapping[str, FindingAxis],
+    new: Mapping[str, Sequence[int]] | None = None,
+) -> NDArray[np.int16]:
+    """Return the entry codes of a design, shape (s, axes).
+
+    Where ``new`` is given, only rows that hold one of its codes.
+    """
     design = plan.document.sweep.design
-    if isinstance(design, Table):
-        return _full(plan, finding)
-    return DESIGNS[design](plan, finding)
+    make = DESIGNS["full" if isinstance(design, Table) else design]
+    if new is None:
+        return make(axes)
+    parts = [np.empty((0, len(AXES)), np.int16)]
+    # Disjoint blocks: the first axis that holds a new code says which block a row is in.
+    held = dict(axes)
+    for axis in AXES:
+        if new[axis]:
+            only = FindingAxis(tuple(new[axis]), axes[axis].baseline)
+            block = make(held | {axis: only})
+            parts.append(block[np.isin(block[:, AXES.index(axis)], new[axis])])
+            rest = tuple(code for code in axes[axis].codes if code not in new[axis])
+            held[axis] = FindingAxis(rest, axes[axis].baseline)
+    return np.concatenate(parts)
 
 
-def _full(plan: Plan, finding: Finding) -> NDArray[np.int16]:
-    axes = plan.finding_axes[finding.number]
+def _full(axes: Mapping[str, FindingAxis]) -> NDArray[np.int16]:
     grids = np.meshgrid(*[np.array(axes[a].codes, np.int16) for a in AXES], indexing="ij")
     return np.stack([grid.reshape(-1) for grid in grids], axis=1)
 
 
-def _changes(plan: Plan, finding: Finding, most: int) -> NDArray[np.int16]:
+def _changes(axes: Mapping[str, FindingAxis], most: int) -> NDArray[np.int16]:
     """Return the baseline and every specification at most ``most`` choices away."""
-    axes = plan.finding_axes[finding.number]
     baseline = np.array([axes[a].baseline for a in AXES], np.int16)
     found = [baseline[None]]
     for column, axis in enumerate(AXES):
@@ -121,40 +207,57 @@ def _changes(plan: Plan, finding: Finding, most: int) -> NDArray[np.int16]:
     return np.concatenate(found)
 
 
-DESIGNS: dict[str, Callable[[Plan, Finding], NDArray[np.int16]]] = {
+DESIGNS: dict[str, Callable[[Mapping[str, FindingAxis]], NDArray[np.int16]]] = {
     "full": _full,
-    "one change": lambda plan, finding: _changes(plan, finding, 1),
-    "two changes": lambda plan, finding: _changes(plan, finding, 2),
+    "one change": lambda axes: _changes(axes, 1),
+    "two changes": lambda axes: _changes(axes, 2),
 }
 
 
 def _with_positions(
-    plan: Plan, finding: Finding, codes: NDArray[np.int16], positions: FindingPositions
+    plan: Plan,
+    finding: Finding,
+    codes: NDArray[np.int16],
+    positions: FindingPositions,
+    request: Request | None = None,
+    always: NDArray[np.int16] | None = None,
 ) -> PlanRows:
-    """Repeat moving windows over their positions and add up the ids."""
+    """Repeat moving windows over their positions and add up the ids.
+
+    A sample is drawn here; it holds the rows of ``always``, the baseline if none are given.
+    """
     window = codes[:, AXES.index("window")]
     count = np.array([positions.counts.get(c, 1) for c in range(int(window.max()) + 1)])[window]
     source = np.repeat(np.arange(codes.shape[0]), count)
     start = np.cumsum(count) - count
     position = (np.arange(source.size) - start[source]).astype(np.int32)
     if isinstance(plan.document.sweep.design, Table):
-        keep = _stratified(plan, finding, codes, source)
+        if always is None:
+            axes = plan.finding_axes[finding.number]
+            always = np.array([[axes[a].baseline for a in AXES]], np.int16)
+        keep = _stratified(plan, finding, codes, source, always, request)
         source, position = source[keep], position[keep]
     rows = {axis: codes[source, column] for column, axis in enumerate(AXES)}
     high, low = _ids(plan, finding, rows, position, positions)
     which = np.full(source.size, finding.number, np.int16)
-    return PlanRows(which, rows, position, high, low, _ruled(plan, finding, rows))
+    number = np.full(source.size, request.number if request else 0, np.int16)
+    return PlanRows(which, rows, position, high, low, _ruled(plan, finding, rows), number)
 
 
 def _stratified(
-    plan: Plan, finding: Finding, codes: NDArray[np.int16], source: NDArray[np.int64]
+    plan: Plan,
+    finding: Finding,
+    codes: NDArray[np.int16],
+    source: NDArray[np.int64],
+    always: NDArray[np.int16],
+    request: Request | None,
 ) -> NDArray[np.int64]:
-    """Draw equally many rows of every window entry; the baseline is always in."""
+    """Draw equally many rows of every window entry; those of ``always`` are in whatever comes."""
     wanted = plan.document.sweep.design.sample
-    axes = plan.finding_axes[finding.number]
     window = codes[source, AXES.index("window")]
-    entries = axes["window"].codes
-    seed = np.random.SeedSequence([plan.document.seed, *digest_text(finding.name)])
+    entries = list(dict.fromkeys(codes[:, AXES.index("window")].tolist()))
+    purpose = digest_text(f"{finding.name}\0{request.name}" if request else finding.name)
+    seed = np.random.SeedSequence([plan.document.seed, *purpose])
     generator = np.random.default_rng(seed)
     each = -(-wanted // len(entries))
     kept = []
@@ -162,8 +265,8 @@ def _stratified(
         members = np.flatnonzero(window == entry)
         size = min(each, members.size)
         kept.append(generator.choice(members, size=size, replace=False, shuffle=False))
-    baseline = np.array([axes[a].baseline for a in AXES])
-    kept.append(np.flatnonzero((codes[source] == baseline).all(axis=1)))
+    for row in always:
+        kept.append(np.flatnonzero((codes[source] == row).all(axis=1)))
     return np.unique(np.concatenate(kept))
 
 

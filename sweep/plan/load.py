@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import re
-import tomllib
+from dataclasses import replace
 from pathlib import Path
 from typing import Any
 
@@ -12,6 +12,7 @@ from pydantic import ValidationError
 from sweep.errors import Fault, InputFault
 from sweep.plan.axes import build_plan
 from sweep.plan.document import PlanDocument
+from sweep.plan.extends import Written, read_text, resolve
 from sweep.plan.model import Plan
 from sweep.plan.suggest import suggestion
 
@@ -36,19 +37,7 @@ def load_plan(path: str | Path) -> Plan:
         With every fault of the file, each with its path and a suggestion.
     """
     path = Path(path)
-    try:
-        text = path.read_text(encoding="utf-8")
-    except FileNotFoundError:
-        raise InputFault(_no_file(path)) from None
-    except IsADirectoryError:
-        raise InputFault(Fault(str(path), "this is a folder, not a plan file")) from None
-    except UnicodeDecodeError:
-        mend = "Save it as UTF-8 text."
-        raise InputFault(Fault(str(path), "the plan file is not UTF-8 text", mend)) from None
-    except OSError as error:
-        reason = error.strerror or "unknown reason"
-        raise InputFault(Fault(str(path), f"the plan file cannot be read ({reason})")) from None
-    return plan_from_text(text, path)
+    return plan_from_text(read_text(path), path)
 
 
 def plan_from_text(text: str, path: Path) -> Plan:
@@ -59,23 +48,24 @@ def plan_from_text(text: str, path: Path) -> Plan:
     InputFault
         With every fault found.
     """
+    written = resolve(text, path)
     try:
-        content = tomllib.loads(text)
-    except tomllib.TOMLDecodeError as error:
-        mend = "Check quotes, brackets and commas there."
-        raise InputFault(Fault(path.name, f"not valid TOML: {error}", mend)) from None
-    try:
-        document = PlanDocument.model_validate(content)
+        document = PlanDocument.model_validate(written.content)
     except ValidationError as error:
         raise InputFault(*(_fault(item) for item in error.errors())) from None
-    return build_plan(document, text, path)
+    if len(written.files) == 1:
+        return build_plan(document, text, path)
+    plan = build_plan(document, _resolved_text(written), path)
+    return replace(plan, origin=written.files[-1], replaced=written.replaced)
 
 
-def _no_file(path: Path) -> Fault:
-    near = [p.name for p in path.parent.glob("*.toml")] if path.parent.is_dir() else []
-    mend = suggestion(path.name, near).removeprefix("; ")
-    mend = mend[:1].upper() + mend[1:] if mend else 'Write one with "crosswind new DATA".'
-    return Fault(str(path), "there is no such plan file", mend)
+def _resolved_text(written: Written) -> str:
+    """Write out a plan that extends others, so that it can be read without them."""
+    import tomli_w
+
+    names = [path.name for path in written.files]
+    words = f"# {names[0]}, which starts from " + ", which starts from ".join(names[1:])
+    return f"{words}; written out whole.\n\n{tomli_w.dumps(written.content)}"
 
 
 def _fault(item: Any) -> Fault:

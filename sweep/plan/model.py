@@ -11,7 +11,7 @@ from sweep.plan.canonical import Token, add_tokens, digest_text, token
 from sweep.plan.choices import AXES, Choice, MeasureChoice, TransformationChoice
 from sweep.plan.document import PlanDocument
 
-__all__ = ["Exogenous", "Finding", "FindingAxis", "Plan", "Rule"]
+__all__ = ["Exogenous", "Finding", "FindingAxis", "Plan", "Request", "Rule"]
 
 
 @dataclass(frozen=True, slots=True)
@@ -76,10 +76,18 @@ class FindingAxis:
         Codes into ``Plan.axes[axis]``, plan order.
     baseline : int
         Code of the baseline's choice.
+    added : tuple of int
+        Further codes that requests brought, in the order of the requests.
     """
 
     codes: tuple[int, ...]
     baseline: int
+    added: tuple[int, ...] = ()
+
+    @property
+    def every(self) -> tuple[int, ...]:
+        """Codes of the plan and of its requests."""
+        return (*self.codes, *self.added)
 
 
 @dataclass(frozen=True, slots=True)
@@ -97,6 +105,31 @@ class Rule:
     codes: Mapping[str, frozenset[int]]
     because: str
     finding: int | None
+
+
+@dataclass(frozen=True, slots=True)
+class Request:
+    """A referee's question, answered by further choices.
+
+    Attributes
+    ----------
+    number : int
+        Position in the plan, from 1; 0 stands for what was planned.
+    name, asked_by, asks : str
+        Words of the plan.
+    together : tuple of int
+        Numbers of the earlier requests whose choices it is crossed with.
+    codes : tuple of mapping of axis to tuple of int, one a finding
+        The choices that it names on each axis, planned ones included; empty for a finding
+        that it does not ask about.
+    """
+
+    number: int
+    name: str
+    asked_by: str
+    asks: str
+    together: tuple[int, ...]
+    codes: tuple[Mapping[str, tuple[int, ...]], ...]
 
 
 @dataclass(frozen=True, slots=True)
@@ -120,6 +153,11 @@ class Plan:
     rules : tuple of Rule
     notes : tuple of str
         Choices that give the same numbers by construction, in words.
+    requests : tuple of Request
+    origin : Path or None
+        The first plan of a chain of ``extends``; None for a plan that extends none.
+    replaced : tuple of str
+        Keys of the plans it extends that it says anew.
     """
 
     path: Path
@@ -131,6 +169,9 @@ class Plan:
     finding_axes: tuple[Mapping[str, FindingAxis], ...]
     rules: tuple[Rule, ...]
     notes: tuple[str, ...]
+    requests: tuple[Request, ...] = ()
+    origin: Path | None = None
+    replaced: tuple[str, ...] = ()
 
     @property
     def title(self) -> str:
@@ -149,8 +190,13 @@ class Plan:
 
     @property
     def store_path(self) -> Path:
-        """The store's default place, beside the plan."""
-        return self.path.with_suffix(".duckdb")
+        """The store's default place: beside the plan, or beside the one that it extends."""
+        return (self.origin or self.path).with_suffix(".duckdb")
+
+    @property
+    def report_path(self) -> Path:
+        """The report's default place, beside the plan."""
+        return self.path.with_suffix(".html")
 
     @property
     def digest(self) -> str:
@@ -168,11 +214,21 @@ class Plan:
         """Return every data column that the plan reads, first use first."""
         names: dict[str, None] = {}
         for finding, axes in zip(self.findings, self.finding_axes, strict=True):
-            for code in axes["measures"].codes:
+            for code in axes["measures"].every:
                 measure = self.axes["measures"][code]
                 assert isinstance(measure, MeasureChoice)
                 names.update(dict.fromkeys(self.columns(finding, measure)))
         return tuple(names)
+
+    def first_request(self, finding: Finding, axis: str, code: int) -> int:
+        """Return the number of the request that first brought a choice, 0 for a planned one."""
+        if code in self.finding_axes[finding.number][axis].codes:
+            return 0
+        return next(
+            request.number
+            for request in self.requests
+            if code in request.codes[finding.number].get(axis, ())
+        )
 
     def baseline_id(self, finding: Finding) -> Token:
         """Return the id of the baseline specification (fixed window)."""

@@ -9,7 +9,13 @@ from typing import Any
 import numpy as np
 
 from store.database import Database
-from store.records import ChoiceRecord, FindingRecord, SweepChoiceRecord, SweepRecord
+from store.records import (
+    ChoiceRecord,
+    FindingRecord,
+    RequestRecord,
+    SweepChoiceRecord,
+    SweepRecord,
+)
 from store.schema import AXES
 from store.write import SweepWriter
 
@@ -88,6 +94,7 @@ def sample(
             for i, entry in enumerate(entries):
                 positions = entry.get("positions", 1)
                 weight = 1 / positions if axis == "window" else 1 / entry.get("group", 1)
+                data = (f.data_high, f.data_low + i) if axis == "measures" else (0, 0)
                 choices.append(
                     SweepChoiceRecord(
                         f.finding,
@@ -103,6 +110,8 @@ def sample(
                         positions,
                         entry.get("scale_group", ""),
                         entry.get("length", 0),
+                        0,
+                        *data,
                     )
                 )
                 if axis == "window":
@@ -219,8 +228,10 @@ def fill(db: Database, seed: int, significance: float = 0.05) -> Filled:
         for i, (claim, sign, reverse) in enumerate(RULES)
     ]
     content = sample(writer, rules, significance=significance)
-    sweep = writer.begin(content.sweep, content.findings, content.choices, content.positions)
-    writer.register_request(sweep, 1, "longer lags", "referee 2", "What about 12 lags?")
+    requests = [RequestRecord(1, "longer lags", "referee 2", "What about 12 lags?")]
+    sweep = writer.begin(
+        content.sweep, content.findings, content.choices, content.positions, requests
+    )
     for record in rules:
         rows = planned(content, record.finding, record.finding)
         size = len(rows["row"])

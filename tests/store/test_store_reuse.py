@@ -46,12 +46,21 @@ class Shared:
             },
         }
 
-    def begin(self, changes: dict[str, Any] | None = None, **sweep: Any) -> int:
+    def begin(
+        self,
+        changes: dict[str, Any] | None = None,
+        measures: dict[str, dict[str, Any]] | None = None,
+        **sweep: Any,
+    ) -> int:
+        """Begin another sweep; ``measures`` changes the records of choices by their label."""
         number = (changes or {}).get("finding", 0)
         findings: list[FindingRecord] = [
             dataclasses.replace(self.content.findings[0], **(changes or {}))
         ]
-        choices = [dataclasses.replace(c, finding=number) for c in self.content.choices]
+        choices = [
+            dataclasses.replace(c, finding=number, **(measures or {}).get(c.label, {}))
+            for c in self.content.choices
+        ]
         positions = self.content.positions | {
             "finding": np.full(len(self.content.positions["position"]), number)
         }
@@ -116,9 +125,19 @@ def test_a_row_of_several_sweeps_is_copied_once(shared: Shared, db: Database) ->
 def test_other_data_or_numerics_share_nothing(
     shared: Shared, db: Database, changes: dict[str, Any], sweep: dict[str, Any]
 ) -> None:
-    second = shared.begin(changes, plan_digest="other", **sweep)
+    every = dict.fromkeys(("as named", "freight: tonnes"), changes)
+    second = shared.begin(changes, every, plan_digest="other", **sweep)
     assert not shared.writer.reuse(second, shared.rows).any()
     assert db.scalar("SELECT count(*) FROM outcome WHERE sweep = ?", [second]) == 0
+
+
+def test_rows_are_shared_by_the_data_of_their_own_measures(shared: Shared, db: Database) -> None:
+    changed = {"freight: tonnes": {"data_low": 99}}
+    second = shared.begin({"data_low": 99}, changed, plan_digest="other")
+    filled = shared.writer.reuse(second, shared.rows)
+    kept = shared.rows["measures"] == shared.content.codes["measures"][0]
+    assert (filled == (shared.shareable & kept)).all()
+    assert filled.sum() > 0
 
 
 def test_unknown_specifications_are_left(shared: Shared) -> None:
