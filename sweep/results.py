@@ -115,6 +115,7 @@ class Results:
         """Return a stability chart of one finding (the first if none is named)."""
         from sweep.charts import CHARTS, chart
         from sweep.charts.context import context_of
+        from sweep.charts.render import altair_chart
 
         if name not in CHARTS:
             raise InputFault(
@@ -127,7 +128,7 @@ class Results:
             self._record(number), frames["survival"], significance=float(self.info["significance"]),
             title=str(self.info["title"]), design=str(self.info["design"]),
         )  # fmt: skip
-        return module.build(frames, context, width)
+        return altair_chart(module.build(frames, context, width))
 
     def table(self, name: str, finding: str | int | None = None) -> Table:
         """Return a table of one finding (the first if none is named)."""
@@ -186,7 +187,6 @@ class Results:
         self,
         path: str | Path | None = None,
         *,
-        jobs: int | None = None,
         content: ReportContent | None = None,
         library: Library | None = None,
     ) -> Path:
@@ -196,20 +196,15 @@ class Results:
         ----------
         path : str, Path or None
             Where; beside the store if none is given.
-        jobs : int or None
-            Worker processes that draw; None for one a core.
         content : ReportContent or None
             What :meth:`content` returned, where it is at hand; read anew if None.
         library : Library or None
             The drawing library, where it is being fetched already.
         """
-        from sweep.engine.check import default_jobs
         from sweep.report.page import page
 
         target = Path(path) if path is not None else self.store.with_suffix(".html")
-        text = page(
-            content or self.content(), jobs=jobs or default_jobs(), library=library
-        )
+        text = page(content or self.content(), library=library)
         partial = target.with_name(target.name + ".part")
         try:
             partial.write_text(text, encoding="utf-8")

@@ -14,10 +14,10 @@ from typing import TYPE_CHECKING, Protocol, cast
 if TYPE_CHECKING:
     from collections.abc import Mapping
 
-    import altair
     import pandas
 
     from .context import Context
+    from .marks import Specification
 
 __all__ = ["CHARTS", "ChartModule", "chart"]
 
@@ -31,8 +31,8 @@ class ChartModule(Protocol):
 
     def build(
         self, frames: Mapping[str, pandas.DataFrame], context: Context, width: str = "wide"
-    ) -> altair.LayerChart:
-        """Draw the figure at a named print width (``narrow`` 85 mm, ``wide`` 175 mm)."""
+    ) -> Specification:
+        """Return the figure at a named print width (``narrow`` 85 mm, ``wide`` 175 mm)."""
 
     def describe(self, frames: Mapping[str, pandas.DataFrame], context: Context) -> str:
         """Return the text alternative, made from the same numbers."""

@@ -5,10 +5,14 @@ from __future__ import annotations
 import re
 from typing import TYPE_CHECKING, Any
 
+from .drawing import NotDrawn, draw
+
 if TYPE_CHECKING:
     import altair
 
-__all__ = ["language_version", "pdf", "png", "specification", "svg"]
+    Chart = altair.LayerChart | dict[str, Any]
+
+__all__ = ["altair_chart", "language_version", "pdf", "png", "specification", "svg"]
 
 
 def language_version() -> str:
@@ -18,30 +22,45 @@ def language_version() -> str:
     return ".".join(altair.SCHEMA_VERSION.removeprefix("v").split(".")[:2])
 
 
-def specification(chart: altair.LayerChart) -> dict[str, Any]:
+def altair_chart(plain: dict[str, Any]) -> altair.LayerChart:
+    """Return a chart as the object of the drawing library's Python side."""
+    import altair
+    from altair.utils.schemapi import debug_mode
+
+    with debug_mode(False):  # the tests hold every chart against the language's schema
+        chart: altair.LayerChart = altair.LayerChart.from_dict(plain, validate=False)
+    return chart
+
+
+def specification(chart: Chart) -> dict[str, Any]:
     """Return a chart as plain JSON values.
 
     The charts of this package are checked against the language's schema in the tests; doing
     so for every drawing would double its time.
     """
+    if isinstance(chart, dict):
+        return chart
     plain: dict[str, Any] = chart.to_dict(validate=False)
     return plain
 
 
-def svg(chart: altair.LayerChart | dict[str, Any]) -> str:
+def svg(chart: Chart) -> str:
     """Draw a chart, or its specification, as SVG text."""
-    import vl_convert
+    plain = specification(chart)
+    try:
+        return draw(plain)
+    except (NotDrawn, KeyError):  # a chart that was put together or changed by other means
+        import vl_convert
 
-    plain = chart if isinstance(chart, dict) else specification(chart)
-    return str(vl_convert.vegalite_to_svg(plain, vl_version=language_version()))
+        return str(vl_convert.vegalite_to_svg(plain, vl_version=language_version()))
 
 
-def png(chart: altair.LayerChart, dots_per_inch: float = 300) -> bytes:
+def png(chart: Chart, dots_per_inch: float = 300) -> bytes:
     """Draw a chart as PNG at its print size.
 
     Parameters
     ----------
-    chart : altair.LayerChart
+    chart : altair.LayerChart or dict
         A chart of this package; its lengths are pixels at 96 to the inch.
     dots_per_inch : float
         Resolution of the picture.
@@ -49,16 +68,15 @@ def png(chart: altair.LayerChart, dots_per_inch: float = 300) -> bytes:
     import vl_convert
 
     return bytes(
-        vl_convert.vegalite_to_png(
-            specification(chart),
-            vl_version=language_version(),
+        vl_convert.svg_to_png(
+            svg(chart),
             scale=72 / 96,  # the drawer takes a pixel for a point at this resolution
             ppi=dots_per_inch,
         )
     )
 
 
-def pdf(chart: altair.LayerChart) -> bytes:
+def pdf(chart: Chart) -> bytes:
     """Draw a chart as PDF at its print size (a pixel is 1/96 of an inch, a point 1/72)."""
     import vl_convert
 

@@ -5,7 +5,6 @@ from __future__ import annotations
 from collections.abc import Mapping
 from typing import Any
 
-import altair as alt
 import pandas as pd
 
 from sweep.verdicts.flips import single_sentence
@@ -15,6 +14,7 @@ from . import marks
 from .arrangement import Arrangement, Row, arrange, by_axis, label_room
 from .context import Context, baseline_record
 from .layout import shortened, text_width
+from .marks import Layers, Scale, Specification
 from .theme import ABSENT, BASELINE, FAILS, HAIRLINE, INK, PALE, QUIET, SURVIVES, WIDTHS
 
 __all__ = ["NAME", "NEEDS", "QUESTION", "build", "describe"]
@@ -115,7 +115,7 @@ def _subtitle(context: Context, baseline: Mapping[str, Any], arranged: Arrangeme
 
 def build(
     frames: Mapping[str, pd.DataFrame], context: Context, width: str = "wide"
-) -> alt.LayerChart:
+) -> Specification:
     """Draw the single changes from the baseline.
 
     Parameters
@@ -158,9 +158,8 @@ def build(
     )
 
 
-def _scale(name: str, track: tuple[float, float]) -> alt.X:
-    scale = alt.Scale(type="log", domain=[_END, 1], range=list(track), nice=False)
-    return alt.X(f"{name}:Q", scale=scale, axis=None)
+def _scale(name: str, track: tuple[float, float]) -> Scale:
+    return Scale(name, (_END, 1), track, log=True)
 
 
 def _ground(
@@ -169,7 +168,7 @@ def _ground(
     track: tuple[float, float],
     context: Context,
     across: float,
-) -> list[alt.Chart]:
+) -> Layers:
     """Draw ticks, the edge where small values are gathered, the level and the group names."""
     x = _scale("p", track)
     bottom = arranged.height
@@ -199,7 +198,7 @@ def _ground(
     return layers + marks.strokes(lines, height, 1, across - 1, colour=HAIRLINE, width=0.6)
 
 
-def _labels(arranged: Arrangement, height: float) -> list[alt.Chart]:
+def _labels(arranged: Arrangement, height: float) -> Layers:
     names = [line for row in arranged.choices for line in row.label_rows()]
     others = [line for row in arranged.rows if row.hidden for line in row.label_rows()]
     return marks.texts(names, height, 4) + marks.texts(others, height, 4, colour=QUIET)
@@ -207,7 +206,7 @@ def _labels(arranged: Arrangement, height: float) -> list[alt.Chart]:
 
 def _baseline(
     baseline: Mapping[str, Any], height: float, track: tuple[float, float]
-) -> list[alt.Chart]:
+) -> Layers:
     place = _placed(baseline["p_value"])
     if place is None:
         return []
@@ -220,7 +219,7 @@ def _baseline(
 
 def _strokes(
     drawn: list[dict[str, Any]], height: float, track: tuple[float, float]
-) -> list[alt.Chart]:
+) -> Layers:
     """Draw the bands of moving windows and the strokes, heavy where the finding turns."""
     bands = [
         {"y": one["y"] - 3, "y2": one["y"] + 3, "low": one["low"], "high": one["high"]}
@@ -246,10 +245,10 @@ def _strokes(
 
 def _ends(
     drawn: list[dict[str, Any]], height: float, track: tuple[float, float]
-) -> list[alt.Chart]:
+) -> Layers:
     """Draw the mark at the end of each stroke; its shape says what became of the finding."""
     x = _scale("place", track)
-    layers: list[alt.Chart] = []
+    layers: Layers = []
     looks = (
         (True, SURVIVES, "circle", True),
         (False, FAILS, "square", True),
@@ -269,7 +268,7 @@ def _ends(
     return layers + marks.dots(absent, height, track[1] + 6, colour=ABSENT, area=7)
 
 
-def _nothing(arranged: Arrangement, height: float) -> list[alt.Chart]:
+def _nothing(arranged: Arrangement, height: float) -> Layers:
     """Say so where no choice differs from the baseline on one axis only."""
     if arranged.total:
         return []
@@ -282,7 +281,7 @@ def _outcomes(
     height: float,
     across: float,
     words: float,
-) -> list[alt.Chart]:
+) -> Layers:
     head = [{"y": _TOP - 13, "text": "p-value"}]
     layers = marks.texts(head, height, across - words, colour=QUIET)
     for turns in (False, True):

@@ -5,7 +5,6 @@ from __future__ import annotations
 from collections.abc import Mapping
 from typing import Any, Literal
 
-import altair as alt
 import pandas as pd
 
 from sweep.verdicts.survival import OVERALL, Counts, axis_sentences, counts_of, headline
@@ -15,6 +14,7 @@ from . import marks
 from .arrangement import Arrangement, Row, arrange, by_axis, held_fixed, label_room
 from .context import Context
 from .layout import text_width
+from .marks import Layers, Scale, Specification
 from .theme import ABSENT, BASELINE, FAILS, HAIRLINE, INK, QUIET, SURVIVES, WIDTHS
 
 __all__ = ["NAME", "NEEDS", "QUESTION", "build", "describe"]
@@ -120,7 +120,7 @@ def _columns(rows: list[dict[str, Any]], width: str) -> list[tuple[float, str, s
 
 def build(
     frames: Mapping[str, pd.DataFrame], context: Context, width: str = "wide"
-) -> alt.LayerChart:
+) -> Specification:
     """Draw survival by choice.
 
     Parameters
@@ -161,9 +161,8 @@ def build(
     )
 
 
-def _scale(name: str, track: tuple[float, float]) -> alt.X:
-    scale = alt.Scale(domain=[0, 1], range=list(track), nice=False, zero=False)
-    return alt.X(f"{name}:Q", scale=scale, axis=None)
+def _scale(name: str, track: tuple[float, float]) -> Scale:
+    return Scale(name, (0, 1), track)
 
 
 def _ground(
@@ -172,7 +171,7 @@ def _ground(
     height: float,
     track: tuple[float, float],
     across: float,
-) -> list[alt.Chart]:
+) -> Layers:
     """Draw what stands behind the rows: group names, the share's ticks, the overall line."""
     x = _scale("share", track)
     ticks: list[dict[str, Any]] = [
@@ -205,7 +204,7 @@ def _overall(counts: Counts) -> str:
     return f"overall {percent(counts.headline)}"
 
 
-def _labels(arranged: Arrangement, drawn: list[dict[str, Any]], height: float) -> list[alt.Chart]:
+def _labels(arranged: Arrangement, drawn: list[dict[str, Any]], height: float) -> Layers:
     names = [line for row in arranged.choices for line in row.label_rows()]
     others = [line for row in arranged.rows if row.hidden for line in row.label_rows()]
     layers = marks.texts(names, height, _INDENT)
@@ -219,7 +218,7 @@ def _shares(
     rest: list[dict[str, Any]],
     height: float,
     track: tuple[float, float],
-) -> list[alt.Chart]:
+) -> Layers:
     """Draw the tracks and the dots: survived to the left of the dot, not survived to its right."""
     counted_rows = [
         {"y": record["y"], "share": record["share"]}
@@ -246,7 +245,7 @@ def _shares(
 
 def _counts(
     rows: list[dict[str, Any]], height: float, columns: list[tuple[float, str, str, str]]
-) -> list[alt.Chart]:
+) -> Layers:
     """Write the counts at the right, with the names of their columns."""
     layers = []
     for place, name, first, second in columns:

@@ -5,7 +5,6 @@ from __future__ import annotations
 from collections.abc import Mapping
 from typing import Any
 
-import altair as alt
 import pandas as pd
 
 from sweep.verdicts.words import counted, missing, p_text, percent, period_text, share_text
@@ -13,6 +12,7 @@ from sweep.verdicts.words import counted, missing, p_text, percent, period_text,
 from . import marks
 from .context import Context
 from .layout import shortened, text_width
+from .marks import Layers, Scale, Specification
 from .strips import Strip, place_strips, year_ticks
 from .theme import ABSENT, BODY, INK, QUIET, SMALL, TINTS, WASH, WIDTHS, tint
 
@@ -103,7 +103,7 @@ def _subtitle(context: Context, strips: list[Strip], total: int) -> str:
 
 def build(
     frames: Mapping[str, pd.DataFrame], context: Context, width: str = "wide"
-) -> alt.LayerChart:
+) -> Specification:
     """Draw survival over time.
 
     Parameters
@@ -138,19 +138,18 @@ def build(
     )
 
 
-def _scale(name: str, strips: list[Strip], track: tuple[float, float]) -> alt.X:
+def _scale(name: str, strips: list[Strip], track: tuple[float, float]) -> Scale:
     spans = [span for strip in strips for span in strip.spans]
     low = min((start for start, _ in spans), default=0.0)
     high = max((end for _, end in spans), default=1.0)
-    scale = alt.Scale(domain=[low, high], range=list(track), nice=False, zero=False)
-    return alt.X(f"{name}:Q", scale=scale, axis=None)
+    return Scale(name, (low, high), track)
 
 
-def _legend(height: float, across: float) -> list[alt.Chart]:
+def _legend(height: float, across: float) -> Layers:
     """Explain the tints in place: swatches from 0% to 100%."""
     size, step = 16.0, 1.0 / (len(TINTS) - 1)
     start = across - 32 - size * len(TINTS)
-    layers: list[alt.Chart] = []
+    layers: Layers = []
     for number in range(len(TINTS)):
         box = [{"y": 2, "y2": 12, "fill": tint(number * step)}]
         left = start + number * size
@@ -164,11 +163,11 @@ def _legend(height: float, across: float) -> list[alt.Chart]:
 
 def _ground(
     strips: list[Strip], height: float, track: tuple[float, float], width: str
-) -> list[alt.Chart]:
+) -> Layers:
     """Draw the years and what stands behind the strips."""
     x = _scale("day", strips, track)
     spans = [span for strip in strips for span in strip.spans]
-    layers: list[alt.Chart] = []
+    layers: Layers = []
     if spans:
         low, high = min(s for s, _ in spans), max(e for _, e in spans)
         ticks = year_ticks(low, high, _TICKS[width])
@@ -193,7 +192,7 @@ def _ground(
     return layers + marks.areas(ground, height, x, "to", colour=WASH)
 
 
-def _strips(strips: list[Strip], height: float, track: tuple[float, float]) -> list[alt.Chart]:
+def _strips(strips: list[Strip], height: float, track: tuple[float, float]) -> Layers:
     x = _scale("day", strips, track)
     cells = [cell for strip in strips for cell in _cells(strip)]
     empty = [dot for strip in strips for dot in _empty(strip)]
@@ -207,7 +206,7 @@ def _strips(strips: list[Strip], height: float, track: tuple[float, float]) -> l
     ]
 
 
-def _left_out(strips: list[Strip], height: float, track: tuple[float, float]) -> list[alt.Chart]:
+def _left_out(strips: list[Strip], height: float, track: tuple[float, float]) -> Layers:
     """Hatch the episodes that a window leaves out."""
     spans = [span for strip in strips for span in strip.spans]
     if not spans:
@@ -232,7 +231,7 @@ def _left_out(strips: list[Strip], height: float, track: tuple[float, float]) ->
     ]
 
 
-def _names(strips: list[Strip], height: float, across: float) -> list[alt.Chart]:
+def _names(strips: list[Strip], height: float, across: float) -> Layers:
     """Write each window entry's name above its strip, with its counts at the right."""
     names, numbers = [], []
     for strip in strips:
@@ -257,7 +256,7 @@ def _numbers(strip: Strip) -> str:
 
 def _values(
     strips: list[Strip], height: float, track: tuple[float, float], context: Context
-) -> list[alt.Chart]:
+) -> Layers:
     """Draw the median p-value and its quartiles below the strips that have room for them."""
     panels = [strip for strip in strips if strip.panel]
     x = _scale("day", strips, track)

@@ -64,7 +64,7 @@ def _run(
     content = results.content()
     path = None
     if library is not None:
-        path = results.report(jobs=jobs, content=content, library=library)
+        path = results.report(content=content, library=library)
     print_summary(results, content=content)
     if path is not None and not quiet:
         click.echo(f"\nReport: {_short(path)}", err=True)

@@ -7,11 +7,13 @@ from collections.abc import Mapping, Sequence
 from dataclasses import dataclass, field
 from typing import TYPE_CHECKING, Any
 
+from sweep.charts import CHARTS, chart
 from sweep.charts.context import Context, baseline_record, context_of
 from sweep.verdicts import directions, effects, flips, reproduction, survival
 from sweep.verdicts.words import joined, missing, percent
 
 from .notes import CAUTIONS, METHOD_NOTES, Note
+from .tables import TABLES
 
 if TYPE_CHECKING:
     import pandas as pd
@@ -26,18 +28,21 @@ __all__ = [
     "summary",
 ]
 
+# What the sentences of a report are made from.
+_SENTENCES = (
+    "survival", "baseline", "attrition", "single_changes", "shortest_flips", "directions",
+    "effects", "effects_overall",
+)  # fmt: skip
+
 # Every frame that a report reads, named as the functions of ``store.read``.
-FRAMES = (
-    "survival",
-    "baseline",
-    "attrition",
-    "single_changes",
-    "shortest_flips",
-    "flip_distances",
-    "windows",
-    "directions",
-    "effects",
-    "effects_overall",
+FRAMES = tuple(
+    dict.fromkeys(
+        [
+            *_SENTENCES,
+            *(frame for name in CHARTS for frame in chart(name).NEEDS),
+            *(frame for module in TABLES.values() for frame in module.NEEDS),
+        ]
+    )
 )
 
 

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import itertools
 import json
 import re
 from dataclasses import dataclass
@@ -12,7 +13,7 @@ import jinja2
 from markupsafe import Markup
 
 from sweep.charts import CHARTS, chart
-from sweep.charts.render import specification, svg
+from sweep.charts.render import svg
 from sweep.verdicts.survival import axis_sentences
 from sweep.verdicts.words import level_text
 
@@ -78,11 +79,8 @@ def still(drawing: str, number: int) -> Markup:
 
 def _figure(finding: FindingContent, name: str, number: int) -> Figure:
     """Draw one chart of one finding."""
-    from altair.utils.schemapi import debug_mode
-
     module = chart(name)
-    with debug_mode(False):  # the tests hold every chart against the language's schema
-        plain = specification(module.build(finding.frames, finding.context, "wide"))
+    plain = module.build(finding.frames, finding.context, "wide")
     return Figure(
         number,
         name,
@@ -93,22 +91,16 @@ def _figure(finding: FindingContent, name: str, number: int) -> Figure:
     )
 
 
-def _figures(report: ReportContent, jobs: int) -> list[list[Figure]]:
-    """Draw every figure, in workers where there are several."""
-    wanted = [(finding, name) for finding in report.findings for name in CHARTS]
-    if jobs == 1 or len(wanted) <= len(CHARTS):
-        drawn = [_figure(*item, number) for number, item in enumerate(wanted, start=1)]
-    else:
-        from joblib import Parallel, delayed
-
-        drawn = Parallel(n_jobs=jobs, batch_size=1)(
-            delayed(_figure)(*item, number) for number, item in enumerate(wanted, start=1)
-        )
-    size = len(CHARTS)
-    return [drawn[start : start + size] for start in range(0, len(drawn), size)]
+def _figures(report: ReportContent) -> list[dict[str, Figure]]:
+    """Draw every figure: for each finding, its figures by name."""
+    number = itertools.count(1)
+    return [
+        {name: _figure(finding, name, next(number)) for name in CHARTS}
+        for finding in report.findings
+    ]
 
 
-def _sections(report: ReportContent, drawn: list[list[Figure]]) -> list[dict[str, Any]]:
+def _sections(report: ReportContent, drawn: list[dict[str, Figure]]) -> list[dict[str, Any]]:
     sections = []
     for number, (finding, figures) in enumerate(
         zip(report.findings, drawn, strict=True), start=1
@@ -133,15 +125,13 @@ def _sections(report: ReportContent, drawn: list[list[Figure]]) -> list[dict[str
     return sections
 
 
-def page(report: ReportContent, *, jobs: int = 1, library: Library | None = None) -> str:
+def page(report: ReportContent, *, library: Library | None = None) -> str:
     """Write the whole report as one HTML document.
 
     Parameters
     ----------
     report : ReportContent
         What to show; every string in it may come from a user's files and is escaped.
-    jobs : int
-        Worker processes that draw the figures.
     library : Library or None
         The drawing library, where it is being fetched already.
 
@@ -159,7 +149,7 @@ def page(report: ReportContent, *, jobs: int = 1, library: Library | None = None
         loader=jinja2.FunctionLoader(lambda name: (folder / name).read_text(encoding="utf-8")),
     )
     style = Markup((folder / "page.css").read_text(encoding="utf-8"))
-    drawn = _figures(report, jobs)
+    drawn = _figures(report)
     script = Markup((folder / "page.js").read_text(encoding="utf-8"))
     return environment.get_template("template.html.j2").render(
         report=report,
