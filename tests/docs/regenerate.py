@@ -38,6 +38,7 @@ TABLES = {
     "WhenTable": "`when` of `[[rule_out]]`",
     "ScreensTable": "`[screens]`",
     "SweepTable": "`[sweep]`",
+    "RequestTable": "`[[requests]]`",
 }
 # Small tables that are written out where they are used.
 INLINE = {"SampleTable": "{ common = … }", "SampleDesign": "{ sample = … }"}
@@ -88,6 +89,8 @@ def plan_keys() -> str:
             parts.append(f"**{heading}**: {keys}, each a list of choices or of their names.")
             continue
         required = set(table.get("required", ()))
+        if name == schema["title"]:  # needed unless the plan extends one that has them
+            required = set(schema["anyOf"][-1]["required"])
         lines = [f"**{heading}**", "", "| key | value | default | meaning |", "|---|---|---|---|"]
         for key in order[name]:
             value = table["properties"][key]
