@@ -6,6 +6,7 @@ The functions live in modules by subject; this one is the place to import them f
 from __future__ import annotations
 
 from store.read_changes import flip_distances, shortest_flips, single_changes
+from store.read_cube import cube, cube_windows
 from store.read_outcomes import baseline, details, outcomes, specification
 from store.read_shares import (
     attrition,
@@ -21,6 +22,8 @@ __all__ = [
     "attrition",
     "baseline",
     "choices",
+    "cube",
+    "cube_windows",
     "details",
     "directions",
     "effects",
