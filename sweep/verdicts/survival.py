@@ -11,7 +11,7 @@ import math
 from dataclasses import dataclass
 from typing import TYPE_CHECKING, Any
 
-from .words import counted, joined, level_text, missing, percent, share_text
+from .words import counted, joined, level_text, missing, percent
 
 if TYPE_CHECKING:
     import pandas as pd
@@ -220,11 +220,14 @@ def sampling_interval(survival: pd.DataFrame) -> tuple[float, float] | None:
 
 
 def axis_sentences(survival: pd.DataFrame) -> list[str]:
-    """Say, for each axis with several choices, where survival is lowest and highest."""
+    """Say, for each axis with several choices, where the weighted share is lowest and highest.
+
+    Designs that change few choices at a time have no weighted share, hence no such sentence.
+    """
     sentences = []
-    parts = survival[survival["axis"] != OVERALL]
+    parts = survival[(survival["axis"] != OVERALL) & survival["headline_share"].notna()]
     for axis in parts["axis"].drop_duplicates():
-        rows = parts[(parts["axis"] == axis) & (parts["admissible"] > 0)]
+        rows = parts[parts["axis"] == axis]
         if len(rows) < 2:
             continue
         low = rows.loc[rows["headline_share"].astype(float).idxmin()]
@@ -232,17 +235,18 @@ def axis_sentences(survival: pd.DataFrame) -> list[str]:
         spread = float(high["headline_share"]) - float(low["headline_share"])
         if spread < _FLAT:
             sentences.append(
-                f"By {axis}: {percent(float(low['headline_share']))} for every one of "
-                f"{counted(len(rows), 'choice')}."
+                f"By {axis}, the weighted share is {percent(float(low['headline_share']))} under "
+                f"every one of {counted(len(rows), 'choice')}."
             )
             continue
-        sentences.append(
-            f"By {axis}: from {percent(float(low['headline_share']))} under {low['choice']} "
-            f"({_rows(low)}) to {percent(float(high['headline_share']))} under {high['choice']} "
-            f"({_rows(high)})."
-        )
+        sentences.append(f"By {axis}, the weighted share runs from {_end(low)} to {_end(high)}.")
     return sentences
 
 
-def _rows(row: Any) -> str:
-    return share_text(_whole(row["survived"]), _whole(row["admissible"])).split(" (")[0]
+def _end(row: Any) -> str:
+    """Write one end of a range: weighted share and choice, the counts with their own share."""
+    counts = counts_of(row)
+    return (
+        f"{percent(counts.headline)} under {row['choice']} ({counts.survived:,} of "
+        f"{counted(counts.admissible, 'row')}, unweighted {percent(counts.raw)})"
+    )

@@ -61,6 +61,18 @@ def test_axis_sentences_name_lowest_and_highest(frames):
     rows = frames["survival"].query("axis == 'test'").sort_values("headline_share")
     assert f"under {rows['choice'].iloc[0]} (" in sentence
     assert f"under {rows['choice'].iloc[-1]} (" in sentence
+    assert "the weighted share runs from" in sentence
+    for row in (rows.iloc[0], rows.iloc[-1]):
+        share = row["survived"] / row["admissible"]
+        assert (
+            f"({row['survived']:,} of {row['admissible']:,} rows, unweighted "
+            f"{survival.percent(share)})"
+        ) in sentence
+
+
+def test_without_a_weighted_share_there_is_no_sentence_on_axes(frames):
+    frame = frames["survival"].assign(headline_share=float("nan"))
+    assert survival.axis_sentences(frame) == []
 
 
 def test_verdicts_count_each_admissible_row_once(frames):
