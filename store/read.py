@@ -8,6 +8,7 @@ from __future__ import annotations
 from store.read_changes import flip_distances, shortest_flips, single_changes
 from store.read_cube import cube, cube_windows
 from store.read_outcomes import baseline, details, outcomes, specification
+from store.read_requests import answers, requests
 from store.read_shares import (
     attrition,
     directions,
@@ -19,6 +20,7 @@ from store.read_shares import (
 from store.read_sweeps import choices, findings, latest_sweep, sweep_info, sweeps
 
 __all__ = [
+    "answers",
     "attrition",
     "baseline",
     "choices",
@@ -32,6 +34,7 @@ __all__ = [
     "flip_distances",
     "latest_sweep",
     "outcomes",
+    "requests",
     "shortest_flips",
     "single_changes",
     "specification",

@@ -176,10 +176,13 @@ class Results:
         content : ReportContent or None
             What :meth:`content` returned, where it is at hand; read anew if None.
         """
-        from sweep.report.content import summary
+        from sweep.report.content import answered, summary
 
         return [
-            (found.context.statement, [found.reproduction.sentence, *summary(found)])
+            (
+                found.context.statement,
+                [found.reproduction.sentence, *summary(found), *answered(found)],
+            )
             for found in (content or self.content()).findings
         ]
 

@@ -12,6 +12,7 @@ from sweep.cli.common import plan_argument, print_rows
 
 if TYPE_CHECKING:
     from sweep.engine.check import Check
+    from sweep.plan.model import Plan
 
 
 @click.command()
@@ -40,6 +41,16 @@ def command(plan: Path, jobs: int | None, form: str) -> None:
             [[a.axis, len(a.choices), a.baseline, a.positions if a.axis == "window" else ""]
              for a in axes],
         )  # fmt: skip
+    if found.plan.origin is not None:
+        click.echo(f"\n{_starts_from(found.plan)}")
+    if found.requests:
+        click.echo("\nRequests:")
+        for asked in found.requests:
+            who = ", ".join(filter(None, (asked.asked_by, asked.request)))
+            adds = "adds nothing that is not already there"
+            if asked.added:
+                adds = f"adds {asked.added:,} specifications"
+            click.echo(f"  {who}, on “{asked.finding}”: {adds}")
     if found.ruled_out:
         click.echo("\nRuled out:")
         for item in found.ruled_out:
@@ -49,8 +60,19 @@ def command(plan: Path, jobs: int | None, form: str) -> None:
         click.echo("\nSame numbers by construction:")
         for note in found.notes:
             click.echo(f"  {note}")
-    click.echo(f"\n{found.planned:,} specifications in all; about {_duration(found.seconds)} with "
+    added = f", {found.added:,} of them for requests" if found.added else ""
+    every = found.planned + found.added
+    click.echo(f"\n{every:,} specifications in all{added}; about {_duration(found.seconds)} with "
                f"{found.jobs} worker{'s' if found.jobs > 1 else ''}.")  # fmt: skip
+
+
+def _starts_from(plan: Plan) -> str:
+    """Say which plan this one starts from and what it says anew."""
+    assert plan.origin is not None
+    words = f"Starts from {plan.origin.name}; its store is {plan.store_path.name}."
+    if plan.replaced:
+        words += f" Replaces there: {', '.join(plan.replaced)}."
+    return words
 
 
 def _duration(seconds: float) -> str:
@@ -67,6 +89,11 @@ def _plain(found: Check) -> dict[str, Any]:
         "first": found.first,
         "last": found.last,
         "specifications": found.planned,
+        "added": found.added,
+        "requests": [
+            {"name": a.request, "from": a.asked_by, "finding": a.finding, "added": a.added}
+            for a in found.requests
+        ],
         "seconds": round(found.seconds, 1),
         "jobs": found.jobs,
         "findings": [

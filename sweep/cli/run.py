@@ -64,7 +64,9 @@ def _run(
     content = results.content()
     path = None
     if library is not None:
-        path = results.report(content=content, library=library)
+        # A plan that extends another shares its store, but its report is its own.
+        place = plan.report_path if store is None and plan.origin is not None else None
+        path = results.report(place, content=content, library=library)
     print_summary(results, content=content)
     if path is not None and not quiet:
         click.echo(f"\nReport: {_short(path)}", err=True)
@@ -85,7 +87,7 @@ def _did(results: Results) -> str:
         parts.append(f"{done.ruled:,} are ruled out by the plan")
     if done.failed:
         parts.append(f"{done.failed:,} failed (the store's log says how)")
-    words = (f"{done.planned:,} specifications planned: {', '.join(parts)}; {done.seconds:.1f} s. "
+    words = (f"{done.words}: {', '.join(parts)}; {done.seconds:.1f} s. "
              f"Store: {_short(done.store)}")  # fmt: skip
     if done.other_data is not None:
         words += (

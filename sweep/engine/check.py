@@ -13,7 +13,7 @@ from sweep.engine.prepare import Prepared, prepare
 from sweep.plan.choices import AXES, WindowChoice
 from sweep.plan.model import Plan
 
-__all__ = ["AxisSize", "Check", "RuledOut", "check_plan", "default_jobs"]
+__all__ = ["Asked", "AxisSize", "Check", "RuledOut", "check_plan", "default_jobs"]
 
 
 @dataclass(frozen=True, slots=True)
@@ -48,6 +48,16 @@ class RuledOut:
 
 
 @dataclass(frozen=True, slots=True)
+class Asked:
+    """A request, and the specifications that it adds for one finding."""
+
+    request: str
+    asked_by: str
+    finding: str
+    added: int
+
+
+@dataclass(frozen=True, slots=True)
 class Check:
     """A plan found sound, and its size.
 
@@ -65,6 +75,8 @@ class Check:
     jobs : int
     first, last : str
         First and last period of the data.
+    requests : tuple of Asked
+        What each request adds; these specifications are not among the planned ones.
     """
 
     plan: Plan
@@ -76,11 +88,17 @@ class Check:
     jobs: int
     first: str
     last: str
+    requests: tuple[Asked, ...] = ()
 
     @property
     def planned(self) -> int:
         """Planned specifications of all findings."""
         return sum(planned for _, planned, _ in self.findings)
+
+    @property
+    def added(self) -> int:
+        """Specifications that requests add to the planned ones."""
+        return sum(asked.added for asked in self.requests)
 
 
 def default_jobs() -> int:
@@ -104,7 +122,7 @@ def check_plan(plan: Plan, *, jobs: int | None = None) -> Check:
     rows = prepared.rows
     counts = []
     for finding in plan.findings:
-        mine = rows.finding == finding.number
+        mine = (rows.finding == finding.number) & (rows.request == 0)
         counts.append((finding.name, int(mine.sum()), int((mine & (rows.rule < 0)).sum())))
     return Check(
         plan,
@@ -116,7 +134,24 @@ def check_plan(plan: Plan, *, jobs: int | None = None) -> Check:
         jobs,
         calendar.label(0),
         calendar.label(len(calendar) - 1),
+        tuple(_asked(prepared)),
     )
+
+
+def _asked(prepared: Prepared) -> list[Asked]:
+    """Count what each request adds, for the findings that it asks about."""
+    rows = prepared.rows
+    return [
+        Asked(
+            request.name,
+            request.asked_by,
+            finding.name,
+            int(((rows.finding == finding.number) & (rows.request == request.number)).sum()),
+        )
+        for request in prepared.plan.requests
+        for finding in prepared.plan.findings
+        if request.codes[finding.number]
+    ]
 
 
 def _axes(prepared: Prepared) -> list[AxisSize]:

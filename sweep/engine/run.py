@@ -61,11 +61,13 @@ class RunReport:
     sweep : int
         Number of the sweep in its store.
     planned, stored, reused, ruled, computed, failed : int
-        Specifications: planned in all; there before; taken over from another sweep; ruled
-        out by the plan; computed now; of these, failed.
+        Specifications: in all, those of requests included; there before; taken over from
+        another sweep; ruled out by the plan; computed now; of these, failed.
     seconds : float
     other_data : int or None
         Latest earlier sweep of the same plan on data that have changed since.
+    added : int
+        Of the specifications, those that requests added.
     """
 
     store: Path
@@ -78,6 +80,17 @@ class RunReport:
     failed: int
     seconds: float
     other_data: int | None = None
+    added: int = 0
+
+    @property
+    def words(self) -> str:
+        """Say how many specifications there are and how many of them requests added."""
+        if not self.added:
+            return f"{self.planned:,} specifications planned"
+        return (
+            f"{self.planned:,} specifications, {self.planned - self.added:,} planned and "
+            f"{self.added:,} added by requests"
+        )
 
 
 def run_prepared(
@@ -126,7 +139,7 @@ def run_prepared(
         ruled = int((prepared.rows.rule >= 0).sum())
         report = RunReport(
             store, sink.sweep, prepared.rows.count, stored, reused, ruled, int(missing.size),
-            failed, seconds, sink.data_changed_since(),
+            failed, seconds, sink.data_changed_since(), int((prepared.rows.request > 0).sum()),
         )  # fmt: skip
         sink.finish(
             seconds,

@@ -10,6 +10,7 @@ from typing import TYPE_CHECKING, Any
 from sweep.charts import CHARTS, chart
 from sweep.charts.context import Context, baseline_record, context_of
 from sweep.verdicts import directions, effects, flips, reproduction, survival
+from sweep.verdicts.answers import answer_sentences
 from sweep.verdicts.words import joined, missing, percent
 
 from .notes import CAUTIONS, METHOD_NOTES, Note
@@ -22,6 +23,7 @@ __all__ = [
     "FRAMES",
     "FindingContent",
     "ReportContent",
+    "answered",
     "content_of",
     "first_lines",
     "sizes",
@@ -31,7 +33,7 @@ __all__ = [
 # What the sentences of a report are made from.
 _SENTENCES = (
     "survival", "baseline", "attrition", "single_changes", "shortest_flips", "directions",
-    "effects", "effects_overall",
+    "effects", "effects_overall", "requests", "answers",
 )  # fmt: skip
 
 # Every frame that a report reads, named as the functions of ``store.read``.
@@ -162,6 +164,11 @@ def summary(finding: FindingContent) -> list[str]:
         directions.sentence(frames["directions"]),
     ]
     return [sentence for sentence in sentences if sentence]
+
+
+def answered(finding: FindingContent) -> list[str]:
+    """Return the answers to the requests that concern a finding, one paragraph each."""
+    return answer_sentences(finding.frames["requests"], finding.frames["answers"])
 
 
 def sizes(finding: FindingContent) -> list[str]:

@@ -17,7 +17,7 @@ from sweep.charts.render import svg
 from sweep.verdicts.survival import axis_sentences
 from sweep.verdicts.words import level_text
 
-from .content import FindingContent, ReportContent, first_lines, sizes, summary
+from .content import FindingContent, ReportContent, answered, first_lines, sizes, summary
 from .library import Library
 from .tables import TABLES
 from .tables.writers import as_html
@@ -117,6 +117,7 @@ def _sections(report: ReportContent, drawn: list[dict[str, Figure]]) -> list[dic
                 "summary": summary(finding),
                 "by_axis": axis_sentences(finding.frames["survival"]),
                 "sizes": sizes(finding),
+                "answers": answered(finding),
                 "figures": figures,
                 "tables": tables,
                 "redundancies": finding.redundancies,

@@ -15,6 +15,7 @@ from . import (
     directions,
     effects,
     effects_overall,
+    requests,
     shortest_flips,
     single_changes,
     survival,
@@ -56,6 +57,7 @@ _MODULES: tuple[TableModule, ...] = (
     effects_overall,
     effects,
     attrition,
+    requests,
 )
 
 # Name of the table and its module, in the order of the report.
