@@ -12,6 +12,7 @@ from statistics import NormalDist
 
 import numpy as np
 import pandas as pd
+from counted_requests import answers_frame, requests_frame
 
 AXES = ("lags", "deterministics", "window", "transformation", "test", "conditioning", "measures")
 STATUS = {"na": "not applicable", "infeasible": "infeasible", "failed": "failed"}
@@ -455,7 +456,10 @@ def frames_of(sweep: Sweep) -> dict[str, pd.DataFrame]:
         "effects_overall": effects_overall_frame,
         "attrition": attrition_frame,
     }
-    return {name: make(sweep, rows) for name, make in makers.items()}
+    frames = {name: make(sweep, rows) for name, make in makers.items()}
+    frames["requests"] = requests_frame(frames["survival"])
+    frames["answers"] = answers_frame(frames["single_changes"])
+    return frames
 
 
 def finding_of(sweep: Sweep) -> dict[str, object]:

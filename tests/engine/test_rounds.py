@@ -107,7 +107,7 @@ def test_answers_are_the_rows_beside_the_baseline(rounds: tuple[Results, Results
         near = outcomes
         for axis in axes:
             near = near[near[axis].isin([home[axis], *choices.get(axis, [])])]
-        groups = near.astype({axis: str for axis in axes}).groupby(axes, observed=True)
+        groups = near.astype(dict.fromkeys(axes, str)).groupby(axes, observed=True)
         expected = {
             tuple(key[axes.index(axis)] for axis in axes): rows for key, rows in groups
         }
