@@ -107,7 +107,8 @@ def planned_frame(planned: Arrays, required: Sequence[str]) -> pd.DataFrame:
     Parameters
     ----------
     planned : dict of arrays, each (rows,)
-        At least the required columns; ``request`` is taken along or set to 0.
+        At least the required columns; ``request`` is taken along or set to 0, ``details``
+        (whether the row's details are wanted) likewise or set to False.
     required : sequence of str
         Names of columns of ``outcome``.
     """
@@ -119,6 +120,7 @@ def planned_frame(planned: Arrays, required: Sequence[str]) -> pd.DataFrame:
     size = len(columns[required[0]])
     columns["row"] = np.arange(size)
     columns["request"] = np.asarray(planned.get("request", np.zeros(size, dtype=np.int16)))
+    columns["details"] = np.asarray(planned.get("details", np.zeros(size, dtype=np.bool_)))
     return pd.DataFrame(columns, copy=False)
 
 

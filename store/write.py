@@ -194,9 +194,10 @@ class SweepWriter:
     def reuse(self, sweep: int, planned: Arrays) -> npt.NDArray[np.bool_]:
         """Copy rows (and their details) that other sweeps of this store already have.
 
-        A row is copied if specification, data key of the finding and numerics are equal,
-        neither direction failed, and it was not ruled out by the other plan's author.  Rows
-        that this sweep has already are left alone.
+        A row is copied if specification, data key of its measures and numerics are equal,
+        neither direction failed, it was not ruled out by the other plan's author, and its
+        details are stored if they are wanted and it has numbers.  Rows that this sweep has
+        already are left alone.
 
         Parameters
         ----------
@@ -204,7 +205,8 @@ class SweepWriter:
             Number of the sweep.
         planned : dict of arrays, each (rows,)
             ``finding``, ``spec_high``, ``spec_low`` (uint64), ``position`` and, optionally,
-            ``request`` (0 where not given): these are what the copies carry.
+            ``request`` (0 where not given): these are what the copies carry.  Optionally
+            ``details`` (bool): rows whose details are wanted and copied.
 
         Returns
         -------

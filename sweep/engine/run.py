@@ -128,8 +128,9 @@ def run_prepared(
     with open_writing(store) as database:
         try:
             sink = StoreSink(database, prepared)
-            missing, stored, reused = sink.missing()
-            tasks = make_tasks(prepared, missing, _wants_lags(prepared))
+            details = _wants_lags(prepared)
+            missing, stored, reused = sink.missing(details)
+            tasks = make_tasks(prepared, missing, details)
             failed = _compute(sink, tasks, jobs, int(missing.size), progress)
         except KeyboardInterrupt:
             raise Interrupted(

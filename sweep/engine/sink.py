@@ -65,17 +65,23 @@ class StoreSink:
         earlier = same[same["sweep"] < self.sweep]["sweep"]
         return int(earlier.max()) if len(earlier) else None
 
-    def missing(self) -> tuple[Ints, int, int]:
+    def missing(self, details: NDArray[np.bool_]) -> tuple[Ints, int, int]:
         """Return the rows to compute, and how many were stored before or taken over.
 
         Rows that the plan's rules exclude are written here, as ``not applicable``.
+
+        Parameters
+        ----------
+        details : ndarray of bool, shape (rows,)
+            Rows whose single lag coefficients are kept.
         """
         rows = self.prepared.rows
         have = self._writer.stored(self.sweep, self._planned(np.arange(rows.count)))
         ruled = np.flatnonzero(~have & (rows.rule >= 0))
         self._write_ruled(ruled)
         open_ = np.flatnonzero(~have & (rows.rule < 0))
-        taken = self._writer.reuse(self.sweep, self._planned(open_)) if open_.size else open_ > 0
+        wanted = self._planned(open_) | {"details": details[open_]}
+        taken = self._writer.reuse(self.sweep, wanted) if open_.size else open_ > 0
         return open_[~taken], int(have.sum()), int(taken.sum())
 
     def write(self, outcomes: Sequence[Outcome]) -> None:

@@ -25,7 +25,8 @@ class Shared:
             writer.register_reason(2, "too few observations"),
         )
         self.content: Sample = sample(writer, [finding(0)])
-        self.rows = planned(self.content, 0)
+        rows = planned(self.content, 0)
+        self.rows = rows | {"details": np.ones(len(rows["row"]), dtype=bool)}
         self.batch = outcomes(self.rows, np.random.default_rng(0), (reasons[1], reasons[2]))
         ruled = (self.batch["status"] == 1) & (np.arange(len(self.rows["row"])) % 2 == 0)
         self.batch["reason"][ruled] = reasons[0]
@@ -98,6 +99,24 @@ def test_rows_are_copied_and_renumbered(shared: Shared, db: Database) -> None:
     copied = db.frame("SELECT finding, position FROM details WHERE sweep = ?", [second])
     assert sorted(copied["position"]) == sorted(np.arange(size)[order][filled])
     assert set(copied["finding"]) == {4}
+
+
+def test_rows_whose_details_are_wanted_come_from_a_sweep_that_kept_them(
+    shared: Shared, db: Database
+) -> None:
+    second = shared.begin(plan_digest="other")
+    plain = {name: column for name, column in shared.rows.items() if name != "details"}
+    assert (shared.writer.reuse(second, plain) == shared.shareable).all()
+    assert db.scalar("SELECT count(*) FROM details WHERE sweep = ?", [second]) == 0
+    db.execute("DELETE FROM details WHERE sweep = ? AND position % 3 > 0", [shared.first])
+    third = shared.begin(plan_digest="third")
+    kept = np.arange(len(shared.rows["row"])) % 3 == 0
+    bare = (shared.batch["status"] > 0) & (shared.batch["reverse_status"] > 0)
+    filled = shared.writer.reuse(third, shared.rows)
+    assert (filled == shared.shareable & (kept | bare)).all()
+    assert (shared.shareable & bare & ~kept).any()
+    count = db.scalar("SELECT count(*) FROM details WHERE sweep = ?", [third])
+    assert count == (shared.shareable & kept & ~bare).sum()
 
 
 def test_reuse_twice_adds_nothing(shared: Shared, db: Database) -> None:
