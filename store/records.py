@@ -54,8 +54,10 @@ class FindingRecord:
         Bits of the screens that an admissible row must pass.
     baseline_high, baseline_low : int
         Specification of the baseline, as unsigned halves.
-    reported_statistic, reported_p_value, reported_observations, reported_tolerance : float or None
-        Numbers printed in the paper, where the plan gives them.
+    reported_statistic, reported_p_value : str or None
+        Numbers printed in the paper, where the plan gives them, in their printed digits.
+    reported_observations, reported_tolerance : float or None
+        Printed number of rows; difference that the plan allows, None for the rounding of each.
     """
 
     finding: int
@@ -72,8 +74,8 @@ class FindingRecord:
     required_mask: int
     baseline_high: int
     baseline_low: int
-    reported_statistic: float | None = None
-    reported_p_value: float | None = None
+    reported_statistic: str | None = None
+    reported_p_value: str | None = None
     reported_observations: float | None = None
     reported_tolerance: float | None = None
 

@@ -46,10 +46,10 @@ CREATE TABLE finding (
     required_mask INTEGER,  -- bits of the screens that an admissible row must pass
     baseline_high UBIGINT,  -- specification of the baseline, upper half
     baseline_low UBIGINT,  -- the same, lower half
-    reported_statistic DOUBLE,  -- printed statistic of the baseline; NULL where not given
-    reported_p_value DOUBLE,  -- printed p-value; NULL where not given
+    reported_statistic VARCHAR,  -- printed statistic of the baseline, in its digits; NULL where not given
+    reported_p_value VARCHAR,  -- printed p-value, in its digits; NULL where not given
     reported_observations DOUBLE,  -- printed number of observations; NULL where not given
-    reported_tolerance DOUBLE  -- allowed difference from the printed numbers; NULL where not given
+    reported_tolerance DOUBLE  -- difference allowed in both; NULL for half a last digit of each
 );
 
 CREATE TABLE choice (

@@ -53,7 +53,7 @@ class Sweep:
     seed: int = 7
     weak: tuple[str, ...] = ("F, HC3 covariance", "pairwise")
     not_applicable: tuple[str, ...] = ()
-    reported: tuple[float | None, float | None, int | None] = (None, None, None)
+    reported: tuple[str | None, str | None, int | None] = (None, None, None)
 
     @property
     def axes(self) -> dict[str, list[str]]:

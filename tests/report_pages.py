@@ -41,7 +41,7 @@ def content(hostile: bool = False, **changes: object):
         moving=moving,
         transformation=["log difference", "log"],
         not_applicable=("log",),
-        reported=(3.42, None, 355),
+        reported=("3.42", None, 355),
     )
     sweeps = [friendly]
     if hostile:

@@ -27,6 +27,7 @@ from sweep.engine.reasons import REASONS, RULED, Reason, Status
 from sweep.engine.task import ROW_FIELDS, LagCoefficients, Outcome
 from sweep.plan.canonical import canonical_json, token
 from sweep.plan.choices import AXES, Choice, MeasureChoice, ProcedureChoice, WindowChoice
+from sweep.plan.document import ReportedTable
 from sweep.plan.model import Finding
 from sweep.plan.tables import Table
 from sweep.procedures import numerics
@@ -35,7 +36,6 @@ from sweep.screens import SCREENS, mask_of
 __all__ = ["StoreSink", "package_versions"]
 
 Ints = NDArray[np.int64]
-NOT_REPORTED = (None, None, None, None)
 
 
 class StoreSink:
@@ -148,10 +148,9 @@ class StoreSink:
         plan = self.prepared.plan
         data = self.prepared.data_keys[finding.number]
         baseline = plan.baseline_id(finding)
-        reported: tuple[float | None, ...] = NOT_REPORTED
         table = plan.document.baseline.reported
-        if table is not None and (table.finding or plan.findings[0].name) == finding.name:
-            reported = (table.statistic, table.p_value, table.observations, table.tolerance)
+        if table is None or (table.finding or plan.findings[0].name) != finding.name:
+            table = ReportedTable()
         return FindingRecord(
             finding.number,
             finding.name,
@@ -165,7 +164,10 @@ class StoreSink:
             *data,
             mask_of(plan.document.screens.require),
             *baseline,
-            *reported,
+            table.statistic,
+            table.p_value,
+            table.observations,
+            table.tolerance,
         )
 
     def _choices(self, finding: Finding) -> list[SweepChoiceRecord]:

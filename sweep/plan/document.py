@@ -7,6 +7,7 @@ from typing import Annotated, Any, Literal, get_args
 from pydantic import AfterValidator, Field, StrictInt, StrictStr, WithJsonSchema, model_validator
 from pydantic.json_schema import SkipJsonSchema
 
+from sweep.plan.printed import PrintedNumber, PrintedProbability
 from sweep.plan.suggest import suggestion
 from sweep.plan.tables import (
     CRITERIA,
@@ -24,7 +25,7 @@ from sweep.plan.tables import (
     anything_of,
 )
 
-__all__ = ["AXIS_KEYS", "PlanDocument"]
+__all__ = ["AXIS_KEYS", "PlanDocument", "ReportedTable"]
 
 # Store name → key in [axes] (plural) and in [baseline] and rules (singular).
 AXIS_KEYS = {
@@ -117,11 +118,14 @@ class FindingTable(Table):
 class ReportedTable(Table):
     """The numbers that are in print."""
 
-    statistic: float | None = Field(default=None, description="Printed statistic.")
-    p_value: float | None = Field(default=None, ge=0, le=1, description="Printed p-value.")
+    statistic: PrintedNumber | None = Field(default=None, description="Printed statistic.")
+    p_value: PrintedProbability | None = Field(default=None, description="Printed p-value.")
     observations: StrictInt | None = Field(default=None, ge=1, description="Printed rows T.")
-    tolerance: float = Field(
-        default=0.0005, gt=0, description="Largest difference that counts as reproduced."
+    tolerance: float | None = Field(
+        default=None,
+        gt=0,
+        description="Largest difference of statistic and p-value that counts as reproduced; half "
+        "a unit of each one's last printed digit if left out.",
     )
     finding: StrictStr | None = Field(
         default=None, description="Finding the numbers belong to; the first if left out."

@@ -9,6 +9,7 @@ from pathlib import Path
 from typing import Any
 
 from sweep.errors import Fault, InputFault
+from sweep.plan.printed import WrittenFloat
 from sweep.plan.suggest import suggestion
 
 __all__ = ["Written", "read_text", "resolve"]
@@ -81,7 +82,8 @@ def resolve(text: str, path: Path, later: tuple[Path, ...] = ()) -> Written:
         circle.
     """
     try:
-        content = tomllib.loads(text)
+        # Floats keep their text: a printed 0.020 is good to other digits than a printed 0.02.
+        content = tomllib.loads(text, parse_float=WrittenFloat)
     except tomllib.TOMLDecodeError as error:
         mend = "Check quotes, brackets and commas there."
         raise InputFault(Fault(path.name, f"not valid TOML: {error}", mend)) from None

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import math
+import sys
 from collections.abc import Mapping
 from dataclasses import dataclass
 from decimal import Decimal
@@ -12,7 +13,6 @@ from .words import given_number, joined, missing, number, reason_text
 
 __all__ = ["Difference", "Reproduction", "compare", "rounding"]
 
-
 @dataclass(frozen=True, slots=True)
 class Difference:
     """One printed number beside the computed one.
@@ -21,21 +21,28 @@ class Difference:
     ----------
     quantity : str
         ``statistic``, ``p-value`` or ``observations``.
-    reported, computed : float
-        In the unit of the quantity.
+    printed : str
+        The reported number in the digits in which it was printed.
+    computed : float
+        In the unit of the quantity; NaN where there is none.
     allowed : float
         Largest absolute difference that still counts as the same number.
     """
 
     quantity: str
-    reported: float
+    printed: str
     computed: float
     allowed: float
 
     @property
+    def reported(self) -> float:
+        """The reported number."""
+        return float(self.printed)
+
+    @property
     def agrees(self) -> bool:
         """Whether the difference is within what is allowed (up to binary rounding)."""
-        slack = 1e-9 * max(1.0, abs(self.reported))
+        slack = 1e-9 * self.allowed + 4 * sys.float_info.epsilon * abs(self.reported)
         return abs(self.computed - self.reported) <= self.allowed + slack
 
 
@@ -58,18 +65,16 @@ class Reproduction:
     differences: tuple[Difference, ...] = ()
 
 
-def rounding(reported: float) -> float:
-    """Return half a unit of the last decimal in which a number is given.
-
-    At least two decimals are taken as printed, since 4.00 arrives as 4.
+def rounding(printed: str) -> float:
+    """Return half a unit of the last digit in which a number is printed.
 
     Examples
     --------
-    >>> rounding(3.42), rounding(0.1), rounding(0.0336)
-    (0.005, 0.005, 5e-05)
+    >>> rounding("3.42"), rounding("0.0190"), rounding("4"), rounding("2.81e-08")
+    (0.005, 5e-05, 0.5, 5e-11)
     """
-    exponent = Decimal(repr(float(reported))).normalize().as_tuple().exponent
-    return float(Decimal(5).scaleb(min(int(exponent), -2) - 1))
+    exponent = Decimal(printed).as_tuple().exponent
+    return float(Decimal(5).scaleb(int(exponent) - 1))
 
 
 def _differences(baseline: Mapping[str, Any], finding: Mapping[str, Any]) -> list[Difference]:
@@ -82,18 +87,16 @@ def _differences(baseline: Mapping[str, Any], finding: Mapping[str, Any]) -> lis
         reported = finding.get(reported_name)
         if missing(reported):
             continue
-        given = float(str(reported))
-        allowed = rounding(given)
-        if not missing(tolerance):
-            allowed = max(allowed, float(str(tolerance)))
+        printed = str(reported)
+        allowed = rounding(printed) if missing(tolerance) else float(str(tolerance))
         computed = baseline[computed_name]
         value = math.nan if missing(computed) else float(computed)
-        found.append(Difference(quantity, given, value, allowed))
+        found.append(Difference(quantity, printed, value, allowed))
     rows = finding.get("reported_observations")
     if not missing(rows):
         computed = baseline["observations"]
         value = math.nan if missing(computed) else float(computed)
-        found.append(Difference("observations", float(str(rows)), value, 0.0))
+        found.append(Difference("observations", f"{float(str(rows)):.0f}", value, 0.0))
     return found
 
 
@@ -105,10 +108,10 @@ def compare(baseline: Mapping[str, Any], finding: Mapping[str, Any]) -> Reproduc
     baseline : mapping
         The baseline's row with the columns of the view ``outcomes``.
     finding : mapping
-        The finding with ``reported_statistic``, ``reported_p_value``,
-        ``reported_observations`` and ``reported_tolerance``, any of them None.  The tolerance
-        is absolute and holds for statistic and p-value; a number that rounds to the printed
-        one agrees in any case.  Observations must be equal.
+        The finding with ``reported_statistic``, ``reported_p_value`` (texts),
+        ``reported_observations`` and ``reported_tolerance``, any of them None.  A tolerance is
+        absolute and holds for statistic and p-value; without one, a number agrees that rounds
+        to the printed one.  Observations must be equal.
     """
     differences = _differences(baseline, finding)
     if not differences:
@@ -133,14 +136,15 @@ def compare(baseline: Mapping[str, Any], finding: Mapping[str, Any]) -> Reproduc
 
 
 def _words(difference: Difference) -> str:
-    reported, quantity = given_number(difference.reported), difference.quantity
+    reported, quantity = difference.printed.replace("-", "−"), difference.quantity
     if missing(difference.computed):
         return f"{quantity} {reported} reported, none computed"
     computed = number(difference.computed, 6)
     if quantity == "observations":
         computed = f"{difference.computed:.0f}"
     if quantity == "p-value" and difference.computed < 1e-4:
-        computed = f"{difference.computed:.2e}".replace("-", "−")
+        digits = max(3, 1 + len(Decimal(difference.printed).as_tuple().digits))
+        computed = f"{difference.computed:.{digits - 1}e}".replace("-", "−")
     if difference.agrees:
         return f"{quantity} {reported} reported, {computed} computed"
     gap = difference.computed - difference.reported

@@ -64,6 +64,10 @@ FAULTS: dict[str, tuple[str, str, str]] = {
     "given twice": ("", 'exogenous = [{ series = "z" }]', 'findings[1].given: "z" stands twice. Leave one of them out.'),
     "cause as exogenous": ("", 'exogenous = [{ series = "x" }]', 'findings[1].given: "x" is already the cause or the effect.'),
     "unknown series in scale": ('[axes]\ntransformations = [{ default = "level", series = { q = "log" } }]', "", 'axes.transformations: "level; q: log" names the series "q", which no finding uses'),
+    "reported in words": ('[baseline.reported]\np_value = "< 0.01"', "", 'baseline.reported.p_value: a printed number is needed here, such as 3.42, 0.0190 or "0.0190".'),
+    "reported not a number": ("[baseline.reported]\nstatistic = nan", "", 'baseline.reported.statistic: a printed number is needed here, such as 3.42, 0.0190 or "0.0190".'),
+    "reported no probability": ("[baseline.reported]\np_value = 1.3", "", "baseline.reported.p_value: 1.3 is no probability; a p-value lies between 0 and 1."),
+    "reported tolerance": ("[baseline.reported]\nstatistic = 3.1\ntolerance = 0.0", "", "baseline.reported.tolerance: 0.0 is out of range. It should be greater than 0."),
     "reported nothing": ("[baseline.reported]\ntolerance = 0.1", "", "baseline.reported: holds no number. Give a statistic or a p_value."),
     "too many": ("[axes]\nlags = [" + ", ".join(str(n) for n in range(1, 31)) + "]\nwindows = [" + ", ".join(f"{{ rolling = {n} }}" for n in range(100, 152)) + '] \ntransformations = ["level", "log", "difference", "log difference", "yearly growth", "seasonal difference", "inverse hyperbolic sine"]\ndeterministics = ["none", "constant", "linear trend", "quadratic trend", { seasonal = true }]\ntests = ["F", "Wald", "LR", "LM", { test = "F", covariance = "HC0" }, { test = "F", covariance = "HC1" }, { test = "F", covariance = "HC2" }, { test = "F", covariance = "HC3" }]\nconditioning = ["given", "pairwise"]', "", "axes: the full cross has "),
 }  # fmt: skip
