@@ -5,7 +5,13 @@ The functions live in modules by subject; this one is the place to import them f
 
 from __future__ import annotations
 
-from store.read_changes import flip_distances, shortest_flips, single_changes
+from store.read_changes import (
+    flip_counts,
+    flip_distances,
+    flips,
+    shortest_flips,
+    single_changes,
+)
 from store.read_cube import cube, cube_windows
 from store.read_outcomes import baseline, details, outcomes, specification
 from store.read_requests import answers, requests
@@ -31,7 +37,9 @@ __all__ = [
     "effects",
     "effects_overall",
     "findings",
+    "flip_counts",
     "flip_distances",
+    "flips",
     "latest_sweep",
     "outcomes",
     "requests",

@@ -10,6 +10,7 @@ import itertools
 from dataclasses import dataclass, field
 from statistics import NormalDist
 
+import counted_flips
 import numpy as np
 import pandas as pd
 from counted_requests import answers_frame, requests_frame
@@ -115,8 +116,14 @@ def rows_of(sweep: Sweep) -> pd.DataFrame:
     a = sweep.significance
     rows["admissible"] = (rows["status"] == "ok") & ~(rows["specification"].str[-1] == "7")
     rows["screened_out"] = (rows["status"] == "ok") & ~rows["admissible"]
-    rows["survives"] = (rows["p_value"] <= a) & rows["admissible"]
     forward, backward = rows["p_value"] <= a, rows["reverse_p_value"] <= a
+    holds = {
+        "leads": forward,
+        "leads one way": forward & ~backward,
+        "leads both ways": forward & backward,
+        "does not lead": ~forward,
+    }[sweep.claim]
+    rows["survives"] = holds & rows["admissible"]
     rows["verdict"] = np.select(
         [rows["status"] != "ok", forward & backward, forward, backward],
         ["undetermined", "both ways", "one way", "reverse"],
@@ -228,107 +235,6 @@ def baseline_frame(sweep: Sweep, rows: pd.DataFrame) -> pd.DataFrame:
             }
         ]
     )
-
-
-def _z(p: object) -> float | None:
-    return (
-        None
-        if p is None or p != p
-        else min(37.0, NormalDist().inv_cdf(1 - min(max(float(p), 1e-15), 0.99999)))
-    )
-
-
-def single_changes_frame(sweep: Sweep, rows: pd.DataFrame) -> pd.DataFrame:
-    base = rows[rows["is_baseline"]].iloc[0]
-    found = []
-    for place, (axis, choices) in enumerate(sweep.axes.items()):
-        for position, choice in enumerate(choices[1:], start=1):
-            same = np.logical_and.reduce(
-                [rows[other] == (choice if other == axis else base[other]) for other in AXES]
-            )
-            own = rows[same]
-            good = own[own["admissible"]]
-            ok = own[own["status"] == "ok"]
-            differs = (
-                good["survives"] != base["survives"]
-                if base["admissible"]
-                else good["survives"] & False
-            )
-            z = [_z(p) for p in ok["p_value"]]
-            z_base = _z(base["p_value"])
-            found.append(
-                {
-                    "axis": axis,
-                    "choice": choice,
-                    "entry_kind": own["entry_kind"].iloc[0] if axis == "window" else "fixed",
-                    "positions": len(own),
-                    "rows_ok": len(ok),
-                    "admissible": len(good),
-                    "survived": int(good["survives"].sum()),
-                    "flips": int(differs.sum()),
-                    "p_value": ok["p_value"].median() if len(ok) else None,
-                    "p_low": ok["p_value"].min() if len(ok) else None,
-                    "p_high": ok["p_value"].max() if len(ok) else None,
-                    "reverse_p_value": ok["reverse_p_value"].median() if len(ok) else None,
-                    "z_change": float(np.median(z)) - z_base if z and z_base is not None else None,
-                    "coefficient_sum": ok["coefficient_sum"].median() if len(ok) else None,
-                    "status": "ok" if len(ok) else own["status"].iloc[0],
-                    "reason": None if len(ok) else own["reason"].iloc[0],
-                    "specification": own["specification"].iloc[0],
-                    "baseline_p_value": base["p_value"],
-                    "baseline_survives": bool(base["survives"]) if base["admissible"] else None,
-                    "axis_position": place,
-                    "choice_position": position,
-                }
-            )
-    columns = (
-        list(found[0])
-        if found
-        else [
-            "axis",
-            "choice",
-            "entry_kind",
-            "positions",
-            "rows_ok",
-            "admissible",
-            "survived",
-            "flips",
-            "p_value",
-            "p_low",
-            "p_high",
-            "reverse_p_value",
-            "z_change",
-            "coefficient_sum",
-            "status",
-            "reason",
-            "specification",
-            "baseline_p_value",
-            "baseline_survives",
-            "axis_position",
-            "choice_position",
-        ]
-    )
-    return pd.DataFrame(found, columns=columns)
-
-
-def shortest_flips_frame(sweep: Sweep, rows: pd.DataFrame, limit: int = 20) -> pd.DataFrame:
-    base = rows[rows["is_baseline"]].iloc[0]
-    good = rows[rows["admissible"] & (rows["survives"] != base["survives"])].copy()
-    good["changes"] = sum((good[axis] != base[axis]).astype(int) for axis in AXES)
-    good["changed"] = [
-        "; ".join(f"{axis}: {base[axis]} → {row[axis]}" for axis in AXES if row[axis] != base[axis])
-        for _, row in good.iterrows()
-    ]
-    columns = ["changes", "specification", "changed", "p_value", "window_start", "window_end"]
-    return good.sort_values(["changes", "p_value"])[columns].head(limit).reset_index(drop=True)
-
-
-def flip_distances_frame(sweep: Sweep, rows: pd.DataFrame) -> pd.DataFrame:
-    base = rows[rows["is_baseline"]].iloc[0]
-    good = rows[rows["admissible"]].copy()
-    good["changes"] = sum((good[axis] != base[axis]).astype(int) for axis in AXES)
-    good["flip"] = good["survives"] != base["survives"]
-    return good.groupby("changes", as_index=False).agg(rows=("flip", "size"), flips=("flip", "sum"))
 
 
 def windows_frame(sweep: Sweep, rows: pd.DataFrame) -> pd.DataFrame:
@@ -447,9 +353,7 @@ def frames_of(sweep: Sweep) -> dict[str, pd.DataFrame]:
     makers = {
         "survival": survival_frame,
         "baseline": baseline_frame,
-        "single_changes": single_changes_frame,
-        "shortest_flips": shortest_flips_frame,
-        "flip_distances": flip_distances_frame,
+        **counted_flips.MAKERS,
         "windows": windows_frame,
         "directions": directions_frame,
         "effects": effects_frame,

@@ -1,11 +1,34 @@
--- Admissible rows whose answer differs from the baseline's, fewest changes first; among equals
--- the p-value nearest to the baseline's comes first.
-, flipped AS (
-    SELECT c.*, abs(c.p_value - b.baseline_p_value) AS distance
-    FROM changed AS c, base AS b
-    WHERE c.admissible AND c.changes > 0 AND c.survives <> b.baseline_survives
-    ORDER BY c.changes, distance, c.spec_high, c.spec_low
-    LIMIT $limit
+-- Sets of changed choices under which the finding turns, fewest changes first; the positions of a
+-- moving window are one set.  Among equals comes first what turns in the larger part of its
+-- positions, then the p-value nearest to the baseline's.
+, sets AS (
+    SELECT
+        c.changes,
+        c.lags, c.deterministics, c."window", c.transformation, c.test, c.conditioning, c.measures,
+        count(*) AS positions,
+        count(*) FILTER (c.admissible) AS admissible,
+        count(*) FILTER (c.turns) AS flips,
+        median(c.p_value) FILTER (c.counted_status = 0) AS p_value,
+        median(c.reverse_p_value) FILTER (c.counted_status = 0) AS reverse_p_value,
+        min(c.position) FILTER (c.turns) AS first_position,
+        max(c.position) FILTER (c.turns) AS last_position,
+        min(c.spec_high) AS spec_high, min(c.spec_low) AS spec_low,
+        any_value(c.baseline_p_value) AS baseline_p_value
+    FROM changed AS c
+    WHERE c.changes > 0
+    GROUP BY ALL
+),
+nearest AS (
+    SELECT
+        *, row_number() OVER () AS number
+    FROM (
+        SELECT * FROM sets
+        WHERE flips > 0
+        ORDER BY
+            changes, flips / admissible DESC, abs(p_value - baseline_p_value),
+            lags, deterministics, "window", transformation, test, conditioning, measures
+        LIMIT $limit
+    )
 ),
 labels AS (
     SELECT axis, code, label, is_baseline FROM sweep_choice
@@ -13,11 +36,11 @@ labels AS (
 ),
 steps AS (
     SELECT
-        f.spec_high, f.spec_low,
+        f.number,
         string_agg(h.axis || ': ' || h.label || ' → ' || n.label, '; ' ORDER BY
             list_position(['lags', 'deterministics', 'window', 'transformation', 'test',
                            'conditioning', 'measures'], h.axis)) AS changed
-    FROM flipped AS f
+    FROM nearest AS f
     JOIN labels AS h ON h.is_baseline
     JOIN labels AS n
         ON n.axis = h.axis AND n.code <> h.code
@@ -29,19 +52,22 @@ steps AS (
             WHEN 'test' THEN f.test
             WHEN 'conditioning' THEN f.conditioning
             ELSE f.measures END
-    GROUP BY f.spec_high, f.spec_low
+    GROUP BY f.number
+),
+places AS (
+    SELECT "window", position, window_start, window_end FROM window_position
+    WHERE sweep = $sweep AND finding = $finding
 )
 SELECT
     f.changes,
-    printf('%016x%016x', f.spec_high, f.spec_low) AS specification,
     s.changed,
-    f.p_value,
-    f.reverse_p_value,
-    p.window_start,
-    p.window_end
-FROM flipped AS f
-JOIN steps AS s ON s.spec_high = f.spec_high AND s.spec_low = f.spec_low
-LEFT JOIN window_position AS p
-    ON p.sweep = f.sweep AND p.finding = f.finding AND p."window" = f."window"
-    AND p.position = f.position
-ORDER BY f.changes, f.distance, f.spec_high, f.spec_low;
+    f.positions, f.admissible, f.flips,
+    f.p_value, f.reverse_p_value,
+    a.window_start, z.window_end,
+    CASE WHEN f.positions = 1 THEN printf('%016x%016x', f.spec_high, f.spec_low) END
+        AS specification
+FROM nearest AS f
+JOIN steps AS s ON s.number = f.number
+LEFT JOIN places AS a ON a."window" = f."window" AND a.position = f.first_position
+LEFT JOIN places AS z ON z."window" = f."window" AND z.position = f.last_position
+ORDER BY f.number;

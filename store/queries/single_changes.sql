@@ -1,6 +1,6 @@
 -- One row for each choice that differs from the baseline on its axis alone.
 -- p_middle_low and p_middle_high are the two middle values, from which the reader takes the
--- median of z; p_value is their mean, the median.
+-- median of z; p_value is their mean, the median.  So for the reverse.
 , singles AS (
     SELECT
         *,
@@ -23,14 +23,18 @@ summed AS (
         count(*) FILTER (counted_status = 0) AS rows_ok,
         count(*) FILTER (admissible) AS admissible,
         count(*) FILTER (admissible AND survives) AS survived,
-        count(*) FILTER (
-            admissible AND survives <> (SELECT baseline_survives FROM base)) AS flips,
+        count(*) FILTER (turns) AS flips,
+        count(*) FILTER (turns_forward) AS flips_forward,
+        count(*) FILTER (turns_reverse) AS flips_reverse,
+        count(*) FILTER (turns_sign) AS flips_sign,
         median(p_value) FILTER (counted_status = 0) AS p_value,
         min(p_value) FILTER (counted_status = 0) AS p_low,
         max(p_value) FILTER (counted_status = 0) AS p_high,
         quantile_disc(p_value, 0.5) FILTER (counted_status = 0) AS p_middle_low,
         -quantile_disc(-p_value, 0.5) FILTER (counted_status = 0) AS p_middle_high,
         median(reverse_p_value) FILTER (counted_status = 0) AS reverse_p_value,
+        quantile_disc(reverse_p_value, 0.5) FILTER (counted_status = 0) AS reverse_middle_low,
+        -quantile_disc(-reverse_p_value, 0.5) FILTER (counted_status = 0) AS reverse_middle_high,
         median(coefficient_sum) FILTER (counted_status = 0) AS coefficient_sum,
         min(loss) AS loss,
         arg_min(reason, loss) AS reason,
@@ -46,13 +50,15 @@ SELECT
     CASE WHEN c.entry_kind = '' THEN 'fixed' ELSE c.entry_kind END AS entry_kind,
     s.rows AS positions,
     s.rows_ok, s.admissible, s.survived, s.flips,
-    s.p_value, s.p_low, s.p_high, s.p_middle_low, s.p_middle_high, s.reverse_p_value,
+    s.flips_forward, s.flips_reverse, s.flips_sign,
+    s.p_value, s.p_low, s.p_high, s.p_middle_low, s.p_middle_high,
+    s.reverse_p_value, s.reverse_middle_low, s.reverse_middle_high,
     s.coefficient_sum,
     ['ok', 'screened out', 'not applicable', 'infeasible', 'failed'][s.loss + 1] AS status,
     CASE WHEN s.lacks_sign AND s.loss = 2 THEN 'the claim has a sign and this test gives none'
          ELSE coalesce(r.text, '') END AS reason,
     CASE WHEN s.rows = 1 THEN printf('%016x%016x', s.spec_high, s.spec_low) END AS specification,
-    b.baseline_p_value, b.baseline_survives,
+    b.baseline_p_value, b.baseline_reverse_p_value, b.baseline_survives,
     list_position(['lags', 'deterministics', 'window', 'transformation', 'test', 'conditioning',
                    'measures'], s.axis) - 1 AS axis_position,
     c.position AS choice_position

@@ -42,6 +42,7 @@ class ChartModule(Protocol):
 CHARTS: dict[str, str] = {
     "survival by choice": "survival_by_choice",
     "single changes": "single_changes",
+    "flips": "flips",
     "windows": "windows",
 }
 

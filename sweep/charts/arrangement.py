@@ -11,6 +11,8 @@ from collections.abc import Callable, Mapping, Sequence
 from dataclasses import dataclass
 from typing import TYPE_CHECKING, Any
 
+from sweep.verdicts.words import counted
+
 from .layout import spread_evenly, text_width, wrapped
 from .theme import SMALL
 
@@ -27,7 +29,7 @@ _GAP = 2.8
 _HEAD = SMALL * 1.3 + 5
 _BETWEEN = 9.0
 
-Record = Mapping[str, Any]
+Record = Mapping[Any, Any]
 
 
 @dataclass(frozen=True, slots=True)
@@ -138,7 +140,12 @@ def held_fixed(
 def label_room(groups: Sequence[tuple[str, list[Record]]], most: float) -> float:
     """Return the pixels that the labels need, at most ``most`` (they are wrapped beyond)."""
     widest = max(
-        (text_width(str(record["choice"])) for _, records in groups for record in records),
+        (
+            text_width(str(line))
+            for _, records in groups
+            for record in records
+            for line in record.get("lines", (record["choice"],))
+        ),
         default=0.0,
     )
     return min(most, max(widest + 2, 40.0))
@@ -161,13 +168,17 @@ def arrange(
     keep: Callable[[Record], bool],
     top: float,
     limit: int = PAGE,
+    *,
+    rooms: Sequence[int] | None = None,
+    noun: str = "choice",
 ) -> Arrangement:
     """Place the rows of all axes below each other.
 
     Parameters
     ----------
     groups : sequence of (axis, records)
-        Choices by axis in plan order; a record has the key ``choice``.
+        Choices by axis in plan order; a record has the key ``choice``, and may have ``lines``
+        (a tuple of str, each to stand on a line of its own).
     label_width : float
         Pixels for a label, which is wrapped to at most two lines.
     keep : callable
@@ -176,6 +187,11 @@ def arrange(
         Pixels above the first group.
     limit : int
         Most choices to draw in all.
+    rooms : sequence of int or None
+        Most rows of each group, of which the first are drawn; None to share the limit among
+        the groups and thin them evenly.
+    noun : str
+        What a row stands for.
 
     Returns
     -------
@@ -185,7 +201,7 @@ def arrange(
     rows: list[Row] = []
     heads: list[Group] = []
     height = top
-    given = _shares([len(records) for _, records in groups], limit)
+    given = rooms or _shares([len(records) for _, records in groups], limit)
     total = sum(len(records) for _, records in groups)
     shown = 0
     for (axis, records), room in zip(groups, given, strict=True):
@@ -194,22 +210,33 @@ def arrange(
         most = max(1, room // 2)
         must = [must[place] for place in spread_evenly(len(must), most)]
         chosen = spread_evenly(len(records), room, must)
+        if rooms:
+            chosen = list(range(min(room, len(records))))
         shown += len(chosen)
         text = axis
         if len(chosen) < len(records):
-            text = f"{axis} ({len(chosen):,} of {len(records):,} choices)"
+            text = f"{axis} ({len(chosen):,} of {counted(len(records), noun)})"
         heads.append(Group(axis, text, height + _HEAD / 2 - 1, height + _HEAD))
         height += _HEAD
         for place in chosen:
-            label = wrapped(str(records[place]["choice"]), label_width, SMALL, lines=2)
+            label = _label(records[place], label_width)
             rows.append(_row(records[place], label, height))
             height = rows[-1].bottom
         hidden = tuple(record for place, record in enumerate(records) if place not in set(chosen))
         if hidden:
-            rows.append(_row({}, [f"{len(hidden):,} other choices"], height, hidden))
+            rest = counted(len(hidden), f"other {noun}")
+            rows.append(_row({}, [rest], height, hidden))
             height = rows[-1].bottom
         height += _BETWEEN
     return Arrangement(tuple(rows), tuple(heads), height - _BETWEEN, shown, total)
+
+
+def _label(record: Record, width: float) -> list[str]:
+    """Return the lines of a label, each of its texts wrapped to two at the most."""
+    found = []
+    for text in record.get("lines", (record["choice"],)):
+        found += wrapped(str(text), width, SMALL, lines=2)
+    return found
 
 
 def _row(record: Record, lines: list[str], top: float, hidden: tuple[Record, ...] = ()) -> Row:

@@ -133,7 +133,9 @@ def summary(finding: FindingContent) -> list[str]:
     """Return the sentences that sum up a finding, in the order in which they are read."""
     context, frames = finding.context, finding.frames
     counts = context.counts
-    holds = baseline_record(frames["baseline"])["survives"]
+    baseline = baseline_record(frames["baseline"])
+    # Nothing can turn away from a baseline that is not admissible.
+    holds = baseline["survives"] if baseline["admissible"] else None
     sentences = [f"The finding survives in {survival.headline(counts, context.design)}."]
     if not counts.admissible:
         sentences = [f"Nothing can be said: {survival.headline(counts, context.design)}."]
@@ -160,6 +162,7 @@ def summary(finding: FindingContent) -> list[str]:
         )
     sentences += [
         flips.single_sentence(frames["single_changes"], holds),
+        flips.pair_sentence(frames["flip_counts"], holds),
         flips.path_sentence(frames["shortest_flips"], holds),
         directions.sentence(frames["directions"]),
     ]

@@ -9,7 +9,19 @@ from .words import counted, joined, missing, p_text
 if TYPE_CHECKING:
     import pandas as pd
 
-__all__ = ["change_words", "path_sentence", "single_sentence", "turned"]
+__all__ = [
+    "TWO_WAY",
+    "change_words",
+    "pair_sentence",
+    "path_sentence",
+    "single_sentence",
+    "step_words",
+    "turned",
+    "turned_by",
+]
+
+# Claims that look at both directions.
+TWO_WAY = ("leads one way", "leads both ways")
 
 
 def turned(single_changes: pd.DataFrame) -> pd.DataFrame:
@@ -29,7 +41,7 @@ def change_words(row: Any) -> str:
     """Write one single change with what it does, e.g. ``test HC3 (p 0.107)``."""
     flips, rows = int(row["flips"]), int(row["admissible"])
     where = f"{row['axis']} {row['choice']}"
-    if rows > 1:
+    if int(row["positions"]) > 1:
         return f"{where} ({flips:,} of {rows:,} positions; median p {p_text(row['p_value'])})"
     return f"{where} (p {p_text(row['p_value'])})"
 
@@ -71,6 +83,67 @@ def single_sentence(single_changes: pd.DataFrame, baseline_survives: Any, limit:
     )
 
 
+def turned_by(row: Any, claim: str) -> str:
+    """Say which part of a claim made rows turn: a direction, or the sign of the sum.
+
+    Parameters
+    ----------
+    row : mapping
+        A row of the store's ``single_changes`` or ``flips`` with its counts
+        ``flips_forward, flips_reverse, flips_sign``.
+    claim : str
+        The claim's kind; one that looks at one direction need not say which.
+
+    Examples
+    --------
+    >>> row = {"flips": 3, "flips_forward": 3, "flips_reverse": 1, "flips_sign": 0}
+    >>> turned_by(row, "leads one way"), turned_by(row, "leads")
+    ('cause to effect and reverse', 'cause to effect')
+    >>> turned_by({"flips": 0}, "leads")
+    ''
+    """
+    if not int(row["flips"]):
+        return ""
+    parts = [("cause to effect", "flips_forward"), ("sign of the sum", "flips_sign")]
+    if claim in TWO_WAY:
+        parts.insert(1, ("reverse", "flips_reverse"))
+    return joined(words for words, name in parts if int(row[name]))
+
+
+def step_words(row: Any, which: str) -> str:
+    """Write one changed choice of a row of ``flips``, e.g. ``lags: 4 → 8``; empty without one."""
+    if missing(row[f"{which}_axis"]):
+        return ""
+    return f"{row[f'{which}_axis']}: {row[f'{which}_from']} → {row[f'{which}_to']}"
+
+
+def pair_sentence(flip_counts: pd.DataFrame, baseline_survives: Any) -> str:
+    """Say how many pairs of changes turn the finding, and in how many neither does so alone.
+
+    Parameters
+    ----------
+    flip_counts : DataFrame
+        The store's frame of that name.
+    baseline_survives : bool or None
+        Whether the finding holds at the baseline; None if the baseline is not admissible.
+    """
+    pairs = flip_counts[flip_counts["changes"] == 2]
+    if missing(baseline_survives) or pairs.empty or not int(pairs["admissible"].iloc[0]):
+        return ""
+    counts = {str(name): int(value) for name, value in pairs.iloc[0].items()}
+    verb = "break" if baseline_survives else "restore"
+    tried, turning, joint = counts["admissible"], counts["turning"], counts["joint"]
+    start = f"{turning:,} of {counted(tried, 'pair')} of changes {verb} the finding"
+    if turning == 1:
+        start = f"1 of {counted(tried, 'pair')} of changes {verb}s the finding"
+    if not turning:
+        return f"None of {counted(tried, 'pair')} of changes {verb}s the finding."
+    if not joint:
+        return f"{start}; in each of them a single change does so alone, or could not be judged."
+    part = f"in {joint:,} of them, " if joint < turning else "in all of them, "
+    return f"{start}; {part if turning > 1 else ''}neither change does so alone."
+
+
 def path_sentence(shortest_flips: pd.DataFrame, baseline_survives: Any) -> str:
     """Say how few changed choices turn the finding, with the nearest example."""
     if missing(baseline_survives):
@@ -79,7 +152,11 @@ def path_sentence(shortest_flips: pd.DataFrame, baseline_survives: Any) -> str:
     if shortest_flips.empty:
         return f"In no specification of this sweep the finding {state}."
     first = shortest_flips.iloc[0]
+    p_value = p_text(first["p_value"])
+    found = f"p {p_value}"
+    if int(first["positions"]) > 1:
+        found = f"{int(first['flips']):,} of {int(first['admissible']):,} positions; median {found}"
     return (
         f"The finding {state} after {counted(int(first['changes']), 'changed choice')} at the "
-        f"fewest: {first['changed']} (p {p_text(first['p_value'])})."
+        f"fewest: {first['changed']} ({found})."
     )

@@ -213,8 +213,16 @@ class Filled:
     content: Sample
 
 
-def fill(db: Database, seed: int, significance: float = 0.05) -> Filled:
-    """Write one random sweep: all claims, signs, statuses, screens, windows and requests."""
+def fill(
+    db: Database,
+    seed: int,
+    significance: float = 0.05,
+    labels: dict[str, list[dict[str, Any]]] = LABELS,
+) -> Filled:
+    """Write one random sweep: all claims, signs, statuses, screens, windows and requests.
+
+    The first label of each axis is the baseline's; of a moving window the last position.
+    """
     writer = SweepWriter(db)
     rng = np.random.default_rng(seed)
     for bit, name in enumerate(("enough observations", "stable roots", "normality")):
@@ -227,7 +235,8 @@ def fill(db: Database, seed: int, significance: float = 0.05) -> Filled:
         finding(i, claim=claim, sign=sign, reverse_sign=reverse, required_mask=(0, 3, 5)[i % 3])
         for i, (claim, sign, reverse) in enumerate(RULES)
     ]
-    content = sample(writer, rules, significance=significance)
+    content = sample(writer, rules, labels, significance=significance)
+    home = labels["window"][0].get("positions", 1) - 1
     requests = [RequestRecord(1, "longer lags", "referee 2", "What about 12 lags?")]
     sweep = writer.begin(
         content.sweep, content.findings, content.choices, content.positions, requests
@@ -237,19 +246,19 @@ def fill(db: Database, seed: int, significance: float = 0.05) -> Filled:
         size = len(rows["row"])
         rows["request"] = (rng.random(size) < 0.1).astype(np.int16)
         # The baseline is always planned.
-        rows["request"][0] = 0
+        rows["request"][home] = 0
         batch = outcomes(rows, rng, reasons)
         if record.finding != 8:
-            _make_baseline_ok(batch)
+            _make_baseline_ok(batch, home)
         writer.write(sweep, batch)
     return Filled(db, sweep, content)
 
 
-def _make_baseline_ok(batch: dict[str, np.ndarray]) -> None:
-    """Give the baseline, the first row, numbers in both directions."""
+def _make_baseline_ok(batch: dict[str, np.ndarray], home: int) -> None:
+    """Give the baseline numbers in both directions."""
     for name in ("status", "reverse_status", "reason", "failed_mask", "reverse_failed_mask"):
-        batch[name][0] = 0
+        batch[name][home] = 0
     for name, value in (("p_value", 0.03), ("reverse_p_value", 0.4)):
-        batch[name][0] = value
+        batch[name][home] = value
     for name in ("statistic", "reverse_statistic", "coefficient_sum", "reverse_coefficient_sum"):
-        batch[name][0] = 1.5
+        batch[name][home] = 1.5

@@ -1,8 +1,8 @@
 """The tables: one file each and the dictionary that names them.
 
-A table is a module with ``NAME``, ``NEEDS`` (the frames it reads, named as the functions
-of ``store.read``) and ``build(frames, context)``, which returns the plain model that the
-writers turn into HTML, Markdown or CSV.
+A table is a module with ``NAME``, ``SHOWS`` (what, in a few words), ``NEEDS`` (the frames it
+reads, named as the functions of ``store.read``) and ``build(frames, context)``, which returns
+the plain model that the writers turn into HTML, LaTeX, Markdown or CSV.
 """
 
 from __future__ import annotations
@@ -15,6 +15,7 @@ from . import (
     directions,
     effects,
     effects_overall,
+    flips,
     requests,
     shortest_flips,
     single_changes,
@@ -44,6 +45,10 @@ class TableModule(Protocol):
     def NEEDS(self) -> tuple[str, ...]:  # noqa: N802 - a constant of the module
         """Frames that it reads."""
 
+    @property
+    def SHOWS(self) -> str:  # noqa: N802 - a constant of the module
+        """What it shows, in a few words."""
+
     def build(self, frames: Mapping[str, pd.DataFrame], context: Context) -> Table:
         """Return the table of one finding."""
 
@@ -52,6 +57,7 @@ _MODULES: tuple[TableModule, ...] = (
     baseline,
     survival,
     single_changes,
+    flips,
     shortest_flips,
     directions,
     effects_overall,

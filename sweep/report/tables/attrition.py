@@ -12,10 +12,11 @@ if TYPE_CHECKING:
 
     from sweep.charts.context import Context
 
-__all__ = ["NAME", "NEEDS", "build"]
+__all__ = ["NAME", "NEEDS", "SHOWS", "build"]
 
 NAME = "attrition"
 NEEDS = ("attrition",)
+SHOWS = "what was planned and not counted, with reasons"
 
 
 def build(frames: Mapping[str, pd.DataFrame], context: Context) -> Table:
@@ -39,10 +40,10 @@ def build(frames: Mapping[str, pd.DataFrame], context: Context) -> Table:
         Column("Share of planned", "share"),
     )
     notes = (
-        f"{context.losses} Not applicable: the choice makes no sense there or the plan rules it "
-        "out. Infeasible: too few observations. Failed: the computation broke down. Screened out: "
-        "a required precondition does not hold; a row that misses several is counted under each "
-        "set of them once."
+        f"{context.lead} {context.losses} Not applicable: the choice makes no sense there or the "
+        "plan rules it out. Infeasible: too few observations. Failed: the computation broke "
+        "down. Screened out: a required precondition does not hold; a row that misses "
+        "several is counted under each set of them once."
     )
     return Table(
         NAME,

@@ -15,10 +15,11 @@ if TYPE_CHECKING:
 
     from sweep.charts.context import Context
 
-__all__ = ["NAME", "NEEDS", "build"]
+__all__ = ["NAME", "NEEDS", "SHOWS", "build"]
 
 NAME = "baseline"
 NEEDS = ("baseline",)
+SHOWS = "the baseline specification and its numbers"
 
 
 def _law(row: Mapping[str, Any]) -> str:
@@ -70,5 +71,8 @@ def build(frames: Mapping[str, pd.DataFrame], context: Context) -> Table:
         f"The baseline specification: {context.statement}.",
         (Column("Item"), Column("Value")),
         tuple((label, "" if missing(value) else str(value)) for label, value in lines),
-        (f"{context.lead} Rows, statistic and order are those of this specification alone.",),
+        (
+            f"{context.lead} Rows, statistic and order are those of this specification alone. "
+            f"{context.losses}",
+        ),
     )

@@ -15,10 +15,11 @@ if TYPE_CHECKING:
 
     from sweep.charts.context import Context
 
-__all__ = ["NAME", "NEEDS", "build"]
+__all__ = ["NAME", "NEEDS", "SHOWS", "build"]
 
 NAME = "directions"
 NEEDS = ("directions",)
+SHOWS = "which way each specification points, by choice"
 
 
 def build(frames: Mapping[str, pd.DataFrame], context: Context) -> Table:
@@ -36,10 +37,10 @@ def build(frames: Mapping[str, pd.DataFrame], context: Context) -> Table:
         total = sum(every)
         rows.append((axis, choice, total, *every, every[0] / total if total else None))
     notes = (
-        f"Admissible rows, level {context.level}. One way: cause to effect is "
+        f"{context.lead} Admissible rows. One way: cause to effect is "
         "significant and the reverse is not. "
         "Neither rejected is not evidence of independence. Undetermined: a direction could not "
-        "be estimated."
+        f"be estimated. {context.losses}"
     )
     columns = (
         Column("Axis"),

@@ -12,10 +12,11 @@ if TYPE_CHECKING:
 
     from sweep.charts.context import Context
 
-__all__ = ["NAME", "NEEDS", "build"]
+__all__ = ["NAME", "NEEDS", "SHOWS", "build"]
 
 NAME = "effects within scales"
 NEEDS = ("effects",)
+SHOWS = "range of the sum of coefficients within each scale"
 
 _COLUMNS = (
     Column("Scale"),
@@ -39,9 +40,9 @@ def build(frames: Mapping[str, pd.DataFrame], context: Context) -> Table:
         )
         rows.append((scale, *(record[column.field] for column in _COLUMNS[1:])))
     notes = (
-        "Sum of the tested lag coefficients in units of the effect per unit of the cause on that "
-        "scale. A scale is one transformation, measure and form of the test; sums of different "
-        "scales must not be compared."
+        f"{context.lead} Sum of the tested lag coefficients in units of the effect per unit of the "
+        "cause on that scale. A scale is one transformation, measure and form of the test; sums of "
+        f"different scales must not be compared; rows admissible only. {context.losses}"
     )
     return Table(
         NAME,

@@ -12,10 +12,11 @@ if TYPE_CHECKING:
 
     from sweep.charts.context import Context
 
-__all__ = ["NAME", "NEEDS", "build"]
+__all__ = ["NAME", "NEEDS", "SHOWS", "build"]
 
 NAME = "effects across scales"
 NEEDS = ("effects_overall",)
+SHOWS = "range of the effect in quantities without a unit"
 
 _COLUMNS = (
     Column("Quantity"),
@@ -36,10 +37,10 @@ def build(frames: Mapping[str, pd.DataFrame], context: Context) -> Table:
         for record in frames["effects_overall"].to_dict("records")
     )
     notes = (
-        "Signed partial R²: the share of the effect's remaining variation that the tested lags "
-        "explain, with the sign of their sum. Standardised sum: the sum of the coefficients times "
-        "the ratio of the standard deviations of cause and effect. Both can be compared across "
-        "transformations and measures; rows admissible only."
+        f"{context.lead} Signed partial R²: the share of the effect's remaining variation that the "
+        "tested lags explain, with the sign of their sum. Standardised sum: the sum of the "
+        "coefficients times the ratio of the standard deviations of cause and effect. "
+        f"Both can be compared across transformations and measures; rows admissible only. {context.losses}"
     )
     return Table(
         NAME,

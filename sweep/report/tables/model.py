@@ -2,14 +2,18 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from typing import Any, Literal
 
 from sweep.verdicts.words import MISSING, missing, number, p_text, percent, period_text
 
-__all__ = ["Column", "Table", "cell_text"]
+__all__ = ["Column", "Table", "Target", "cell_text"]
 
 Kind = Literal["text", "count", "share", "p", "number", "date", "mark"]
+
+# Where a column appears: on the page, in print (LaTeX, Markdown), in data files (CSV).
+Target = Literal["page", "print", "data"]
+_EVERYWHERE: tuple[Target, ...] = ("page", "print", "data")
 
 
 @dataclass(frozen=True, slots=True)
@@ -25,11 +29,15 @@ class Column:
         number (three significant digits), date, or mark (a diamond where true).
     name : str
         Its name in data files, lower case with underscores.
+    within : tuple of str
+        Where it appears: ``page``, ``print``, ``data``.  Print has less room than a page that
+        scrolls, and a data file wants parts that print puts into one cell.
     """
 
     heading: str
     kind: Kind = "text"
     name: str = ""
+    within: tuple[Target, ...] = _EVERYWHERE
 
     @property
     def field(self) -> str:
@@ -76,6 +84,17 @@ class Table:
                     f"table {self.name}: a row has {len(row)} values for "
                     f"{len(self.columns)} columns"
                 )
+
+    def only(self, target: Target) -> Table:
+        """Return the table with the columns that appear in one place."""
+        kept = [place for place, column in enumerate(self.columns) if target in column.within]
+        if len(kept) == len(self.columns):
+            return self
+        return replace(
+            self,
+            columns=tuple(self.columns[place] for place in kept),
+            rows=tuple(tuple(row[place] for place in kept) for row in self.rows),
+        )
 
 
 def cell_text(value: Any, kind: Kind) -> str:

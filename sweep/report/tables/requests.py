@@ -16,10 +16,11 @@ if TYPE_CHECKING:
 
     from sweep.charts.context import Context
 
-__all__ = ["NAME", "NEEDS", "build"]
+__all__ = ["NAME", "NEEDS", "SHOWS", "build"]
 
 NAME = "requests"
 NEEDS = ("requests", "answers", "baseline")
+SHOWS = "the baseline beside the answer to each request"
 
 _COLUMNS = (
     Column("Request"),
@@ -82,7 +83,7 @@ def build(frames: Mapping[str, pd.DataFrame], context: Context) -> Table:
     notes = [
         f"{context.lead} Each row is the baseline with the named choices put in, all others kept. "
         "For moving windows p and the sum are medians over positions. Rows that a request added "
-        "do not count in the headline share."
+        f"do not count in the headline share. {context.losses}"
     ]
     notes += [f"{'; '.join(part)}." for part in (added,) if part]
     notes += asked

@@ -6,6 +6,7 @@ from collections.abc import Mapping
 from typing import TYPE_CHECKING
 
 from sweep.charts.context import baseline_record
+from sweep.verdicts.flips import TWO_WAY, turned_by
 from sweep.verdicts.words import p_text, reason_text
 
 from .model import Column, Table
@@ -15,10 +16,11 @@ if TYPE_CHECKING:
 
     from sweep.charts.context import Context
 
-__all__ = ["NAME", "NEEDS", "build"]
+__all__ = ["NAME", "NEEDS", "SHOWS", "build"]
 
 NAME = "single changes"
 NEEDS = ("single_changes", "baseline")
+SHOWS = "what each choice does that differs from the baseline on one axis"
 
 _COLUMNS = (
     Column("Axis"),
@@ -27,11 +29,13 @@ _COLUMNS = (
     Column("Admissible", "count"),
     Column("Survived", "count"),
     Column("Turned", "count", "flips"),
+    Column("Turned by", name="turned_by"),
     Column("p after", "p", "p_value"),
     Column("lowest p", "p", "p_low"),
     Column("highest p", "p", "p_high"),
     Column("Reverse p", "p", "reverse_p_value"),
     Column("Change in z", "number", "z_change"),
+    Column("Change in reverse z", "number", "reverse_z_change", within=("page", "data")),
     Column("Sum of coefficients", "number", "coefficient_sum"),
     Column("Status"),
 )
@@ -41,16 +45,19 @@ def build(frames: Mapping[str, pd.DataFrame], context: Context) -> Table:
     """Return the single changes of one finding in plan order."""
     rows = []
     for record in frames["single_changes"].to_dict("records"):
+        record["turned_by"] = turned_by(record, context.claim)
         fields = (column.field for column in _COLUMNS[:-1])
         status = reason_text(record["status"], record["reason"])
         rows.append((*(record[field] for field in fields), status))
     baseline = baseline_record(frames["baseline"])
+    reverse = f", reverse {p_text(baseline['reverse_p_value'])}"
     notes = (
-        f"{context.lead} Baseline: p {p_text(baseline['p_value'])}. Turned: rows in which the "
+        f"{context.lead} Baseline: p {p_text(baseline['p_value'])}"
+        f"{reverse if context.claim in TWO_WAY else ''}. Turned: rows in which the "
         "finding holds where it does not at the baseline, or the other way round. For moving "
         "windows p, z and the sum are medians over positions. z is the inverse normal survival "
         "function of p, capped at 37; a change in z says how far the evidence moved, whether or "
-        "not the level was crossed."
+        f"not the level was crossed. {context.losses}"
     )
     return Table(
         NAME,

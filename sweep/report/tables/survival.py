@@ -14,10 +14,11 @@ if TYPE_CHECKING:
 
     from sweep.charts.context import Context
 
-__all__ = ["NAME", "NEEDS", "build"]
+__all__ = ["NAME", "NEEDS", "SHOWS", "build"]
 
 NAME = "survival"
 NEEDS = ("survival",)
+SHOWS = "survival by axis and choice, with every count"
 
 _COLUMNS = (
     ("axis", Column("Axis")),
@@ -54,7 +55,7 @@ def build(frames: Mapping[str, pd.DataFrame], context: Context) -> Table:
         "admissible. Distinct: distinct computations among the admissible rows. Weighted share: "
         "each row weighs 1 / (positions of its window entry) / (size of its test group). Other "
         "sign: significant, but not with the claimed sign. The columns at 1, 5 and 10% are the "
-        "weighted share were that the level."
+        f"weighted share were that the level. {context.losses}"
     )
     return Table(
         NAME,

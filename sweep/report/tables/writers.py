@@ -21,6 +21,7 @@ _FORMULA = ("=", "+", "-", "@", "\t", "\r")
 
 def as_html(table: Table) -> str:
     """Write a table as an HTML ``table`` with caption, scopes and notes; all text escaped."""
+    table = table.only("page")
     columns = table.columns[1:] if table.grouped else table.columns
     parts = [f"<table><caption>{escape(table.title)}</caption>", "<thead><tr>"]
     parts += [f'<th scope="col"{_side(one)}>{escape(one.heading)}</th>' for one in columns]
@@ -62,6 +63,7 @@ def _html_row(row: tuple[Any, ...], columns: tuple[Column, ...]) -> str:
 
 def as_markdown(table: Table) -> str:
     """Write a table as Markdown, with characters that would be read as markup escaped."""
+    table = table.only("print")
 
     def line(cells: list[str]) -> str:
         return "| " + " | ".join(_plain(cell) for cell in cells) + " |"
@@ -91,6 +93,7 @@ def as_csv(table: Table) -> str:
 
     Text that a spreadsheet would run as a formula gets an apostrophe in front.
     """
+    table = table.only("data")
     buffer = io.StringIO()
     writer = csv.writer(buffer, lineterminator="\n")
     writer.writerow([column.field for column in table.columns])
