@@ -24,6 +24,9 @@ from .tables.writers import as_html
 
 __all__ = ["Figure", "page", "script_json", "still"]
 
+# Most rows of a table on the page; data files hold them all.
+_MOST_ROWS = 200
+
 
 @dataclass(frozen=True, slots=True)
 class Figure:
@@ -106,7 +109,9 @@ def _sections(report: ReportContent, drawn: list[dict[str, Figure]]) -> list[dic
         zip(report.findings, drawn, strict=True), start=1
     ):
         tables = {
-            name: Markup(as_html(module.build(finding.frames, finding.context)))
+            name: Markup(
+                as_html(module.build(finding.frames, finding.context).first(_MOST_ROWS))
+            )
             for name, module in TABLES.items()
         }
         sections.append(

@@ -56,7 +56,11 @@ def test_every_table_is_written_in_every_format(case, name):
     table = module.build({need: frames[need] for need in module.NEEDS}, context)
     assert table.name == module.NAME == name
     assert context.statement in table.title
-    assert table.notes
+    # The notes stand alone: finding, level, what was planned, what was left out.
+    notes = " ".join(table.notes)
+    assert context.lead in notes
+    assert context.losses in notes
+    assert module.SHOWS
     page = Cells()
     page.feed(WRITERS["html"](table))
     assert page.tags.count("table") == page.tags.count("caption") == 1
@@ -147,3 +151,21 @@ def test_csv_keeps_full_precision_and_starts_no_formula():
 def test_ragged_rows_are_refused():
     with pytest.raises(ValueError, match="a row has 1 values for 2 columns"):
         Table("t", "T", (Column("A"), Column("B")), (("only",),))
+
+
+def test_the_first_rows_say_how_many_follow():
+    some = SMALL.first(1)
+    assert some.rows == SMALL.rows[:1]
+    assert some.notes[-1] == "The first 1 of 2 rows are shown; 1 left out."
+    assert SMALL.first(2) is SMALL
+    assert SMALL.first(None) is SMALL
+
+
+def test_columns_appear_where_they_are_wanted():
+    table = Table(
+        "t", "T", (Column("A"), Column("B", within=("data",)), Column("C", within=("print",))),
+        (("a", "b", "c"),),
+    )  # fmt: skip
+    assert "b" not in WRITERS["markdown"](table).splitlines()[4]
+    assert WRITERS["csv"](table) == "a,b\na,b\n"
+    assert ">c<" not in WRITERS["html"](table)

@@ -125,3 +125,53 @@ def test_effect_sentences(frames):
     assert found[1].startswith("The standardised sum ")
     assert "keeps one sign throughout" in found[2]
     assert effects.sentences(frames["effects_overall"].iloc[:0], frames["effects"].iloc[:0]) == []
+
+
+def counts_of_pairs(admissible, turning, joint):
+    import pandas as pd
+
+    return pd.DataFrame(
+        [{"changes": 2, "admissible": admissible, "turning": turning, "joint": joint}]
+    )
+
+
+@pytest.mark.parametrize(
+    ("numbers", "holds", "expected"),
+    [
+        ((9, 0, 0), True, "None of 9 pairs of changes breaks the finding."),
+        (
+            (1, 1, 1),
+            True,
+            "1 of 1 pair of changes breaks the finding; neither change does so alone.",
+        ),
+        (
+            (9, 3, 3),
+            False,
+            "3 of 9 pairs of changes restore the finding; in all of them, neither change does so "
+            "alone.",
+        ),
+        (
+            (9, 3, 1),
+            True,
+            "3 of 9 pairs of changes break the finding; in 1 of them, neither change does so "
+            "alone.",
+        ),
+        (
+            (9, 3, 0),
+            True,
+            "3 of 9 pairs of changes break the finding; in each of them a single change does so "
+            "alone, or could not be judged.",
+        ),
+        ((0, 0, 0), True, ""),
+        ((9, 3, 1), None, ""),
+    ],
+)
+def test_pairs_are_counted_by_what_they_hold(numbers, holds, expected):
+    assert flips.pair_sentence(counts_of_pairs(*numbers), holds) == expected
+
+
+def test_what_turned_is_named_for_claims_on_both_directions():
+    row = {"flips": 2, "flips_forward": 0, "flips_reverse": 2, "flips_sign": 1}
+    assert flips.turned_by(row, "leads one way") == "reverse and sign of the sum"
+    assert flips.turned_by(row, "leads") == "sign of the sum"
+    assert flips.turned_by(row | {"flips": 0}, "leads") == ""

@@ -40,7 +40,8 @@ def build(frames: Mapping[str, pd.DataFrame], context: Context) -> Table:
         f"{context.lead} Signed partial R²: the share of the effect's remaining variation that the "
         "tested lags explain, with the sign of their sum. Standardised sum: the sum of the "
         "coefficients times the ratio of the standard deviations of cause and effect. "
-        f"Both can be compared across transformations and measures; rows admissible only. {context.losses}"
+        "Both can be compared across transformations and measures; rows admissible only. "
+        f"{context.losses}"
     )
     return Table(
         NAME,

@@ -96,6 +96,20 @@ class Table:
             rows=tuple(tuple(row[place] for place in kept) for row in self.rows),
         )
 
+    def first(self, rows: int | None) -> Table:
+        """Return the table with its first rows, the count left out said in the notes.
+
+        Parameters
+        ----------
+        rows : int or None
+            Most rows to keep; None for all.
+        """
+        if rows is None or len(self.rows) <= rows:
+            return self
+        left = len(self.rows) - rows
+        note = f"The first {rows:,} of {len(self.rows):,} rows are shown; {left:,} left out."
+        return replace(self, rows=self.rows[:rows], notes=(*self.notes, note))
+
 
 def cell_text(value: Any, kind: Kind) -> str:
     """Write one value the way people read it."""
