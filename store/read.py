@@ -15,6 +15,7 @@ from store.read_changes import (
 from store.read_cube import cube, cube_windows
 from store.read_outcomes import baseline, details, outcomes, specification
 from store.read_requests import answers, requests
+from store.read_sample import sample, sample_details, sample_strata
 from store.read_shares import (
     attrition,
     directions,
@@ -43,6 +44,9 @@ __all__ = [
     "latest_sweep",
     "outcomes",
     "requests",
+    "sample",
+    "sample_details",
+    "sample_strata",
     "shortest_flips",
     "single_changes",
     "specification",

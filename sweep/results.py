@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import html
 import json
-from collections.abc import Iterator, Sequence
+from collections.abc import Callable, Iterator, Sequence
 from contextlib import contextmanager
 from dataclasses import replace
 from pathlib import Path
@@ -24,6 +24,7 @@ if TYPE_CHECKING:
 
     from sweep.engine.explain import Explanation
     from sweep.engine.run import RunReport
+    from sweep.engine.verify import Verification
     from sweep.report.content import ReportContent
     from sweep.report.library import Library
     from sweep.report.tables import Table
@@ -290,6 +291,39 @@ class Results:
         from sweep.engine.explain import explain
 
         return explain(self, specification, finding, None if data is None else Path(data))
+
+    def verify(
+        self,
+        rows: int = 200,
+        seed: int = 0,
+        data: str | Path | None = None,
+        tolerance: float = 1e-8,
+        progress: Callable[[int, int], None] | None = None,
+    ) -> Verification:
+        """Recompute a sample of rows by least squares on their rows and by statsmodels.
+
+        Parameters
+        ----------
+        rows : int
+            Rows to check; more where every choice, and every way in which rows end, needs more.
+        seed : int
+            The same seed draws the same rows.
+        data : str, Path or None
+            Data file, where it is no longer where the plan says.
+        tolerance : float
+            Largest relative difference allowed; see :mod:`sweep.engine.verify`.
+        progress : callable or None
+            Called with the rows done and all rows, now and then.
+
+        Raises
+        ------
+        InputFault
+            If the data are gone or have changed.
+        """
+        from sweep.engine.verify import verify
+
+        path = None if data is None else Path(data)
+        return verify(self, rows, seed, path, tolerance, progress)
 
     def specification(self, prefix: str, finding: str | int | None = None) -> dict[str, Any]:
         """Return the stored row of one specification as a mapping."""

@@ -100,7 +100,11 @@ class OrderBook:
             gram = moments.gram(select, layout, start)
             singular = ~term_space(gram.products[:, columns[:, None], columns])
             reason[failed] = np.where(singular, Reason.TERM, Reason.COLLINEAR)
-        return chosen, reason
+        # A filter that meets an episode leaves no values; that is the reason, not the length.
+        series = [*system.modelled, *(column for column, _ in system.exogenous)]
+        blocked = self._panel.blocked[windows][:, series].any(axis=1)
+        reason[blocked] = Reason.FILTER_EPISODE
+        return np.where(blocked, 0, chosen), reason
 
     def _layout(self, system: System, terms: int, order: int, common: int) -> tuple[Layout, int]:
         """Return the columns of an order's regressions and the rows left out at the start."""

@@ -16,7 +16,7 @@ PROCEDURES: dict[str, Procedure] = {
     module.NAME: cast(Procedure, module) for module in (f_form, wald, likelihood_ratio, score)
 }
 
-ENGINE_NUMERICS = 1
+ENGINE_NUMERICS = 2
 """Raised when the moments, lag choices or samples change a number of every procedure."""
 
 
