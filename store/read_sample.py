@@ -49,8 +49,8 @@ def sample(db: Database, sweep: int, rows: int, seed: int) -> pd.DataFrame:
         ``reason_text`` and ``ruled``; ordered by finding and specification.
     """
     marked = (
-        f"SELECT finding, spec_high, spec_low, status, reverse_status, reason, request, solver, {_CODES}, "
-        "struct_pack(f := finding, h := spec_high, l := spec_low) AS id, "
+        "SELECT finding, spec_high, spec_low, status, reverse_status, reason, request, solver, "
+        f"{_CODES}, struct_pack(f := finding, h := spec_high, l := spec_low) AS id, "
         "md5(concat_ws('/', $seed, finding, spec_high, spec_low)) AS draw "
         "FROM outcome WHERE sweep = $sweep"
     )
