@@ -263,6 +263,56 @@ def windows_frame(sweep: Sweep, rows: pd.DataFrame) -> pd.DataFrame:
     return pd.DataFrame(found)
 
 
+def _at_levels(sweep: Sweep, rows: pd.DataFrame) -> pd.DataFrame:
+    """The rows with one column of zeros and ones for everything that the cube counts."""
+    counted = rows.assign(planned=1, undetermined=rows["verdict"] == "undetermined")
+    for status in ("not applicable", "infeasible", "failed"):
+        counted[status.replace(" ", "_")] = rows["status"] == status
+    counted["undetermined"] &= rows["admissible"]
+    levels = {"": sweep.significance, "_1": 0.01, "_5": 0.05, "_10": 0.10}
+    for tail, level in levels.items():
+        forward = rows["admissible"] & (rows["p_value"] <= level)
+        backward = rows["admissible"] & (rows["reverse_p_value"] <= level)
+        counted[f"survived{tail}"] = forward
+        counted[f"other_sign{tail}"] = False
+        counted[f"one_way{tail}"] = forward & ~backward
+        counted[f"reverse{tail}"] = backward & ~forward
+        counted[f"both_ways{tail}"] = forward & backward
+    for axis, choices in sweep.axes.items():
+        counted[f"{axis}_place"] = (
+            [choices.index(choice) for choice in rows[axis]] if len(choices) > 1 else -1
+        )
+    return counted
+
+
+AT_LEVELS = [
+    f"{name}{tail}"
+    for tail in ("", "_1", "_5", "_10")
+    for name in ("survived", "other_sign", "one_way", "reverse", "both_ways")
+]
+
+
+def cube_frame(sweep: Sweep, rows: pd.DataFrame) -> pd.DataFrame:
+    losses = ["planned", "not_applicable", "infeasible", "failed", "screened_out", "admissible"]
+    keys = [f"{axis}_place" for axis in AXES]
+    counted = _at_levels(sweep, rows).groupby([*keys, "weight"], as_index=False)
+    summed = counted[[*losses, "undetermined", *AT_LEVELS]].sum()
+    return summed.rename(columns=dict(zip(keys, AXES, strict=True)))
+
+
+def cube_windows_frame(sweep: Sweep, rows: pd.DataFrame) -> pd.DataFrame:
+    counted = _at_levels(sweep, rows)
+    counted["window_place"] = [sweep.window.index(name) for name in rows["window"]]
+    counted["pooled"] = 1
+    keys = ["window_place", "entry_kind", "position", "window_start", "window_end", "pooled"]
+    others = [f"{axis}_place" for axis in AXES if axis != "window"]
+    counts = ["admissible", "survived", "survived_1", "survived_5", "survived_10"]
+    summed = counted.groupby([*keys, *others], as_index=False)[counts].sum()
+    return summed.rename(
+        columns={f"{axis}_place": axis for axis in AXES} | {"position": "pool"}
+    )
+
+
 def directions_frame(sweep: Sweep, rows: pd.DataFrame) -> pd.DataFrame:
     found = []
     rows = rows[rows["admissible"]].assign(all="all")
@@ -355,6 +405,8 @@ def frames_of(sweep: Sweep) -> dict[str, pd.DataFrame]:
         "baseline": baseline_frame,
         **counted_flips.MAKERS,
         "windows": windows_frame,
+        "cube": cube_frame,
+        "cube_windows": cube_windows_frame,
         "directions": directions_frame,
         "effects": effects_frame,
         "effects_overall": effects_overall_frame,

@@ -13,7 +13,7 @@ from .layout import spread_evenly
 if TYPE_CHECKING:
     import pandas as pd
 
-__all__ = ["Strip", "day_number", "place_strips", "year_ticks"]
+__all__ = ["Strip", "day_number", "place_strips", "spans", "year_ticks"]
 
 _EPOCH = datetime.date(1970, 1, 1)
 _SMALLEST = 0.0006  # where p-values below 0.001 are gathered
@@ -86,7 +86,7 @@ def day_number(value: Any) -> float:
     return float((day - _EPOCH).days)
 
 
-def _spans(kind: str, records: list[dict[Any, Any]]) -> list[tuple[float, float]]:
+def spans(kind: str, records: list[dict[Any, Any]]) -> list[tuple[float, float]]:
     """Return what each position covers across: the bar itself, or the step to its date.
 
     The step leads up to the last date of a window, so that no cell reaches past the data;
@@ -136,7 +136,7 @@ def place_strips(frame: pd.DataFrame, top: float) -> tuple[list[Strip], float]:
         if kind != "fixed" and (moving <= _MOST_PANELS or number < _MOST_PANELS):
             panel = (end + _GAP, end + _GAP + _PANEL)
         strips.append(
-            Strip(name, kind, tuple(records), tuple(_spans(kind, records)), start, end, panel)
+            Strip(name, kind, tuple(records), tuple(spans(kind, records)), start, end, panel)
         )
         height = (panel[1] if panel else end) + _AFTER
     return strips, height

@@ -13,6 +13,7 @@ from sweep.verdicts import directions, effects, flips, reproduction, survival
 from sweep.verdicts.answers import answer_sentences
 from sweep.verdicts.words import joined, missing, percent
 
+from . import cube
 from .notes import CAUTIONS, METHOD_NOTES, Note
 from .tables import TABLES
 
@@ -41,6 +42,7 @@ FRAMES = tuple(
     dict.fromkeys(
         [
             *_SENTENCES,
+            *cube.NEEDS,
             *(frame for name in CHARTS for frame in chart(name).NEEDS),
             *(frame for module in TABLES.values() for frame in module.NEEDS),
         ]

@@ -7,6 +7,7 @@ import json
 import re
 from dataclasses import dataclass
 from importlib.resources import files
+from importlib.resources.abc import Traversable
 from typing import Any
 
 import jinja2
@@ -14,9 +15,11 @@ from markupsafe import Markup
 
 from sweep.charts import CHARTS, chart
 from sweep.charts.render import svg
+from sweep.charts.theme import ABSENT, FAILS, SURVIVES, WASH
 from sweep.verdicts.survival import axis_sentences
 from sweep.verdicts.words import level_text
 
+from . import cube
 from .content import FindingContent, ReportContent, answered, first_lines, sizes, summary
 from .library import Library
 from .tables import TABLES
@@ -26,6 +29,15 @@ __all__ = ["Figure", "page", "script_json", "still"]
 
 # Most rows of a table on the page; data files hold them all.
 _MOST_ROWS = 200
+
+# The page's own parts, in the order in which they build on each other.
+_STYLES = ("page.css", "chooser/style.css")
+_SCRIPTS = (
+    "page.js", "chooser/cube.js", "chooser/selection.js", "chooser/view.js", "chooser/strips.js",
+    "chooser/address.js",
+)  # fmt: skip
+
+_COLOURS = {"survives": SURVIVES, "fails": FAILS, "absent": ABSENT, "wash": WASH}
 
 
 @dataclass(frozen=True, slots=True)
@@ -105,18 +117,18 @@ def _figures(report: ReportContent) -> list[dict[str, Figure]]:
 
 def _sections(report: ReportContent, drawn: list[dict[str, Figure]]) -> list[dict[str, Any]]:
     sections = []
-    for number, (finding, figures) in enumerate(
-        zip(report.findings, drawn, strict=True), start=1
-    ):
+    for number, (finding, figures) in enumerate(zip(report.findings, drawn, strict=True), start=1):
         tables = {
-            name: Markup(
-                as_html(module.build(finding.frames, finding.context).first(_MOST_ROWS))
-            )
+            name: Markup(as_html(module.build(finding.frames, finding.context).first(_MOST_ROWS)))
             for name, module in TABLES.items()
         }
+        choices = cube.chooser(finding.frames, finding.context)
         sections.append(
             {
                 "anchor": f"finding-{number}",
+                "number": number,
+                "choosing": bool(choices and choices["axes"]) or choices is None,
+                "chooser": script_json(choices) if choices else None,
                 "name": finding.context.finding,
                 "statement": finding.context.statement,
                 "summary": summary(finding),
@@ -129,6 +141,10 @@ def _sections(report: ReportContent, drawn: list[dict[str, Figure]]) -> list[dic
             }
         )
     return sections
+
+
+def _together(folder: Traversable, names: tuple[str, ...]) -> str:
+    return "".join((folder / name).read_text(encoding="utf-8") for name in names)
 
 
 def page(report: ReportContent, *, library: Library | None = None) -> str:
@@ -154,9 +170,10 @@ def page(report: ReportContent, *, library: Library | None = None) -> str:
         lstrip_blocks=True,
         loader=jinja2.FunctionLoader(lambda name: (folder / name).read_text(encoding="utf-8")),
     )
-    style = Markup((folder / "page.css").read_text(encoding="utf-8"))
     drawn = _figures(report)
-    script = Markup((folder / "page.js").read_text(encoding="utf-8"))
+    colours = "".join(f"--{name}:{colour};" for name, colour in _COLOURS.items())
+    style = Markup(f":root{{{colours}}}\n" + _together(folder, _STYLES))
+    script = Markup(_together(folder, _SCRIPTS))
     return environment.get_template("template.html.j2").render(
         report=report,
         first_lines=first_lines(report),

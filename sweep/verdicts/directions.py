@@ -9,12 +9,12 @@ from .words import counted, joined, percent
 if TYPE_CHECKING:
     import pandas as pd
 
-__all__ = ["VERDICTS", "sentence", "totals"]
+__all__ = ["VERDICTS", "WORDS", "sentence", "totals"]
 
 # In the order in which they are always listed.
 VERDICTS = ("one way", "reverse", "both ways", "neither rejected", "undetermined")
 
-_WORDS = {
+WORDS = {
     "one way": "only cause to effect is significant",
     "reverse": "only effect to cause is significant",
     "both ways": "both directions are significant",
@@ -49,7 +49,7 @@ def sentence(directions: pd.DataFrame) -> str:
     if not total:
         return "No specification could be given a direction."
     parts = [
-        f"{_WORDS.get(verdict, verdict)} in {count:,} ({percent(count / total)})"
+        f"{WORDS.get(verdict, verdict)} in {count:,} ({percent(count / total)})"
         for verdict, count in counts.items()
         if count
     ]
