@@ -6,6 +6,7 @@ from importlib import import_module
 from typing import Any
 
 import click
+from click.shell_completion import CompletionItem
 
 from sweep import __version__
 from sweep.cli.guard import guarded
@@ -24,6 +25,7 @@ COMMANDS = {
     "verify": "Recompute a sample of stored rows by two slow paths and compare.",
     "query": "Ask the store a question in SQL, read-only; table, CSV or JSON.",
     "schema": "Write the JSON Schema of the plan file, for editors.",
+    "completion": "Write the script that completes commands in bash, zsh or fish.",
 }
 
 
@@ -49,6 +51,12 @@ class _LazyGroup(click.Group):
             ctx.fail(f'there is no command "{args[0]}"' + suggestion(args[0], COMMANDS))
         return super().resolve_command(ctx, args)
 
+    def shell_complete(self, ctx: click.Context, incomplete: str) -> list[CompletionItem]:
+        """Offer commands from the dictionary, without importing any of them."""
+        names = [name for name in COMMANDS if name.startswith(incomplete)]
+        items = [CompletionItem(name, help=COMMANDS[name]) for name in names]
+        return items + click.Command.shell_complete(self, ctx, incomplete)
+
     def format_commands(self, ctx: click.Context, formatter: click.HelpFormatter) -> None:
         with formatter.section("Commands"):
             formatter.write_dl(list(COMMANDS.items()))
@@ -61,8 +69,8 @@ def group() -> None:
 
     Data go to standard output, messages to standard error.  Exit codes: 0 done, 1 internal
     error, 2 bad usage, plan or data, 3 finished with failed specifications, 4 a rule given
-    with --require was not met, 5 store locked, damaged or of another version, 130 interrupted
-    (run again to go on).
+    with --require was not met or verify found a stored value that does not come out again,
+    5 store locked, damaged or of another version, 130 interrupted (run again to go on).
     """
 
 

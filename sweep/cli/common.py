@@ -3,10 +3,11 @@
 from __future__ import annotations
 
 import json
-from pathlib import Path
 from typing import TYPE_CHECKING, Any
 
 import click
+
+from sweep.cli.paths import PLAN, STORE
 
 if TYPE_CHECKING:
     import pandas as pd
@@ -21,8 +22,8 @@ __all__ = [
 
 FORMATS = ("table", "csv", "json")
 
-plan_argument = click.argument("plan", type=click.Path(path_type=Path))
-store_argument = click.argument("store", type=click.Path(path_type=Path))
+plan_argument = click.argument("plan", type=PLAN)
+store_argument = click.argument("store", type=STORE)
 sweep_option = click.option(
     "--sweep", type=int, default=None, help="Number of the sweep; the latest if left out."
 )

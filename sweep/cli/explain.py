@@ -11,6 +11,7 @@ from typing import TYPE_CHECKING
 import click
 
 from sweep.cli.common import print_rows, store_argument, sweep_option
+from sweep.cli.paths import DATA
 
 if TYPE_CHECKING:
     from sweep.engine.explain import Explanation
@@ -21,7 +22,7 @@ if TYPE_CHECKING:
 @click.argument("spec", default="baseline")
 @sweep_option
 @click.option("--finding", default=None, help="Name of the finding, where several share SPEC.")
-@click.option("--data", type=click.Path(path_type=Path), default=None,
+@click.option("--data", type=DATA, default=None,
               help="Data file, where it is no longer where the plan says.")
 @click.option("--format", "form", type=click.Choice(("table", "json")), default="table",
               show_default=True, help="How it is printed.")  # fmt: skip

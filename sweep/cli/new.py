@@ -6,9 +6,11 @@ from pathlib import Path
 
 import click
 
+from sweep.cli.paths import DATA
+
 
 @click.command()
-@click.argument("data", type=click.Path(path_type=Path), required=False)
+@click.argument("data", type=DATA, required=False)
 @click.option("--example", is_flag=False, flag_value="us_macro", default=None, metavar="[NAME]",
               help="Copy a shipped example instead: us_macro (the default) or harbour.")
 @click.option("--output", type=click.Path(path_type=Path), default=None,

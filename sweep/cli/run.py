@@ -8,6 +8,7 @@ from typing import TYPE_CHECKING
 import click
 
 from sweep.cli.common import plan_argument, print_summary
+from sweep.cli.paths import STORE
 from sweep.errors import RuleNotMet
 
 if TYPE_CHECKING:
@@ -19,7 +20,7 @@ if TYPE_CHECKING:
 
 @click.command()
 @plan_argument
-@click.option("--store", type=click.Path(path_type=Path), default=None,
+@click.option("--store", type=STORE, default=None,
               help="DuckDB file; PLAN with the ending .duckdb if left out.")
 @click.option("--jobs", type=click.IntRange(min=1), default=None,
               help="Worker processes; one a core if left out. Numbers do not depend on it.")

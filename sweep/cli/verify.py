@@ -11,6 +11,7 @@ from typing import TYPE_CHECKING
 import click
 
 from sweep.cli.common import print_rows, store_argument, sweep_option
+from sweep.cli.paths import DATA
 from sweep.errors import RuleNotMet
 
 if TYPE_CHECKING:
@@ -34,7 +35,7 @@ WORDS = {
               help="Rows to check; more where every choice and status needs more.")
 @click.option("--seed", type=int, default=0, show_default=True,
               help="The same seed draws the same rows.")
-@click.option("--data", type=click.Path(path_type=Path), default=None,
+@click.option("--data", type=DATA, default=None,
               help="Data file, where it is no longer where the plan says.")
 @click.option("--tolerance", type=click.FloatRange(0, 1, min_open=True, max_open=True),
               default=1e-8, show_default=True, help="Largest relative difference allowed.")
