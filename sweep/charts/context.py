@@ -26,7 +26,7 @@ class Context:
     finding : str
         Name of the finding.
     statement : str
-        The claim as a sentence without its full stop.
+        The claim as a phrase.
     significance : float
         Level in (0, 1).
     counts : Counts
@@ -69,7 +69,9 @@ def _series(finding: Mapping[str, Any], role: str) -> str:
 
 
 def claim_sentence(finding: Mapping[str, Any]) -> str:
-    """Put a finding's claim into one sentence, without its full stop.
+    """Put a finding's claim into one phrase.
+
+    Names of series are singular or plural ("rents", "freight"); no verb has to agree with them.
 
     Parameters
     ----------
@@ -80,14 +82,14 @@ def claim_sentence(finding: Mapping[str, Any]) -> str:
     --------
     >>> claim_sentence({"cause": "freight", "effect": "rents", "given": "diesel",
     ...                 "claim": "leads", "sign": 1, "reverse_sign": 0})
-    'freight leads rents, given diesel, with a positive sum of coefficients'
+    'a lead from freight to rents, given diesel, with a positive sum of coefficients'
     """
     cause, effect = _series(finding, "cause"), _series(finding, "effect")
     words = {
-        "leads": f"{cause} leads {effect}",
-        "leads one way": f"{cause} leads {effect} and not the reverse",
-        "leads both ways": f"{cause} and {effect} lead each other",
-        "does not lead": f"{cause} does not lead {effect}",
+        "leads": f"a lead from {cause} to {effect}",
+        "leads one way": f"a lead from {cause} to {effect} and none back",
+        "leads both ways": f"a lead from {cause} to {effect} and another back",
+        "does not lead": f"no lead from {cause} to {effect}",
     }[str(finding["claim"])]
     given = str(finding.get("given") or "")
     if given:

@@ -316,17 +316,17 @@ def test_labels_stay_in_their_column(usual):
 @pytest.mark.parametrize(
     ("claim", "sign", "reverse", "expected"),
     [
-        ("leads", 0, 0, "a leads b, given c, d"),
-        ("leads", -1, 0, "a leads b, given c, d, with a negative sum of coefficients"),
-        ("leads one way", 0, 0, "a leads b and not the reverse, given c, d"),
+        ("leads", 0, 0, "a lead from a to b, given c, d"),
+        ("leads", -1, 0, "a lead from a to b, given c, d, with a negative sum of coefficients"),
+        ("leads one way", 0, 0, "a lead from a to b and none back, given c, d"),
         (
             "leads both ways",
             1,
             -1,
-            "a and b lead each other, given c, d, with a positive sum of coefficients, "
+            "a lead from a to b and another back, given c, d, with a positive sum of coefficients, "
             "in reverse a negative one",
         ),
-        ("does not lead", 0, 0, "a does not lead b, given c, d"),
+        ("does not lead", 0, 0, "no lead from a to b, given c, d"),
     ],
 )
 def test_claims_in_words(claim, sign, reverse, expected):
