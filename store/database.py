@@ -183,6 +183,14 @@ class Database:
             raise
         self._connection.execute("COMMIT")
 
+    def attach(self, path: Path, name: str) -> None:
+        """Make the tables and views of another store readable under a name."""
+        quoted = str(path).replace("'", "''")
+        try:
+            self._connection.execute(f"ATTACH '{quoted}' AS {name} (READ_ONLY)")
+        except duckdb.Error as error:
+            raise _explained(path, error) from error
+
     def checkpoint(self) -> None:
         """Write the log into the store file."""
         self._connection.execute("CHECKPOINT")

@@ -12,6 +12,7 @@ from store.read_changes import (
     shortest_flips,
     single_changes,
 )
+from store.read_compare import window_pairs, window_paths
 from store.read_cube import cube, cube_windows
 from store.read_outcomes import baseline, details, outcomes, specification
 from store.read_requests import answers, requests
@@ -53,5 +54,7 @@ __all__ = [
     "survival",
     "sweep_info",
     "sweeps",
+    "window_pairs",
+    "window_paths",
     "windows",
 ]

@@ -22,6 +22,7 @@ if TYPE_CHECKING:
     import altair
     import pandas as pd
 
+    from sweep.comparison import Comparison
     from sweep.engine.explain import Explanation
     from sweep.engine.run import RunReport
     from sweep.engine.verify import Verification
@@ -220,6 +221,28 @@ class Results:
                 Fault(str(target), f"the report cannot be written ({error.strerror})", mend)
             ) from None
         return target
+
+    def compare(self, other: Results | None = None, *, finding: str | None = None) -> Comparison:
+        """Set this sweep beside another one, or its own moving windows side by side.
+
+        Parameters
+        ----------
+        other : Results or None
+            Another sweep, of this store or of another one; None for the moving windows of
+            this sweep, set side by side by their last date.
+        finding : str or None
+            Name of one finding; None for all.
+
+        Raises
+        ------
+        InputFault
+            If there is nothing to compare.
+        """
+        from sweep.comparison import compare_sweeps, compare_windows
+
+        if other is None:
+            return compare_windows(self, finding)
+        return compare_sweeps(self, other, finding)
 
     def export(self, folder: str | Path, formats: Sequence[str] = ("parquet", "csv")) -> list[Path]:
         """Write outcomes, survival, details and choices as Parquet and CSV files."""

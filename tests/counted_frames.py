@@ -14,6 +14,7 @@ import counted_flips
 import numpy as np
 import pandas as pd
 from counted_requests import answers_frame, requests_frame
+from counted_windows import window_paths_frame
 
 AXES = ("lags", "deterministics", "window", "transformation", "test", "conditioning", "measures")
 STATUS = {"na": "not applicable", "infeasible": "infeasible", "failed": "failed"}
@@ -415,6 +416,7 @@ def frames_of(sweep: Sweep) -> dict[str, pd.DataFrame]:
     frames = {name: make(sweep, rows) for name, make in makers.items()}
     frames["requests"] = requests_frame(frames["survival"])
     frames["answers"] = answers_frame(frames["single_changes"])
+    frames["window_paths"] = window_paths_frame(rows)
     return frames
 
 

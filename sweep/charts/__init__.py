@@ -44,6 +44,7 @@ CHARTS: dict[str, str] = {
     "single changes": "single_changes",
     "flips": "flips",
     "windows": "windows",
+    "episodes": "episodes",
 }
 
 

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import json
+from collections.abc import Sequence
 from typing import TYPE_CHECKING, Any
 
 import click
@@ -16,8 +17,8 @@ if TYPE_CHECKING:
     from sweep.results import Results
 
 __all__ = [
-    "FORMATS", "data_format", "plan_argument", "print_frame", "print_summary", "store_argument",
-    "sweep_option",
+    "FORMATS", "data_format", "plan_argument", "print_frame", "print_paragraphs", "print_summary",
+    "store_argument", "sweep_option",
 ]  # fmt: skip
 
 FORMATS = ("table", "csv", "json")
@@ -68,10 +69,6 @@ def print_summary(
     results: Results, finding: str | None = None, content: ReportContent | None = None
 ) -> None:
     """Print the sentences that sum up each finding, wrapped for a terminal."""
-    import shutil
-    import textwrap
-
-    width = min(shutil.get_terminal_size((96, 24)).columns, 110)
     if finding is not None:
         results.survival(finding=finding)  # refuses a finding that is not there
     for name, (statement, sentences) in zip(
@@ -80,6 +77,15 @@ def print_summary(
         if finding is not None and str(name) != finding:
             continue
         click.echo(f"\n{name}: {statement}")
-        for sentence in sentences:
-            click.echo(textwrap.fill(sentence, width, initial_indent="  ",
-                                     subsequent_indent="    "))  # fmt: skip
+        print_paragraphs(sentences)
+
+
+def print_paragraphs(sentences: Sequence[str], indent: str = "  ") -> None:
+    """Print sentences, each a paragraph of its own, wrapped for a terminal."""
+    import shutil
+    import textwrap
+
+    width = min(shutil.get_terminal_size((96, 24)).columns, 110)
+    for sentence in sentences:
+        click.echo(textwrap.fill(sentence, width, initial_indent=indent,
+                                 subsequent_indent=f"{indent}  "))  # fmt: skip

@@ -15,6 +15,7 @@ from . import (
     directions,
     effects,
     effects_overall,
+    episodes,
     flips,
     requests,
     shortest_flips,
@@ -63,6 +64,7 @@ _MODULES: tuple[TableModule, ...] = (
     effects_overall,
     effects,
     attrition,
+    episodes,
     requests,
 )
 
