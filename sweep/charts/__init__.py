@@ -19,7 +19,7 @@ if TYPE_CHECKING:
     from .context import Context
     from .marks import Specification
 
-__all__ = ["CHARTS", "ChartModule", "chart"]
+__all__ = ["CHARTS", "ChartModule", "absent", "chart"]
 
 
 class ChartModule(Protocol):
@@ -46,6 +46,15 @@ CHARTS: dict[str, str] = {
     "windows": "windows",
     "episodes": "episodes",
 }
+
+
+def absent(name: str, frames: Mapping[str, pandas.DataFrame]) -> str:
+    """Say in a sentence why a chart has nothing to show; empty where it has something.
+
+    A chart's module may have a function ``absent(frames)``; others always have something.
+    """
+    said = getattr(chart(name), "absent", None)
+    return str(said(frames)) if said is not None else ""
 
 
 def chart(name: str) -> ChartModule:

@@ -18,7 +18,7 @@ from .marks import Layers, Scale, Specification
 from .strips import day_number, year_ticks
 from .theme import ABSENT, FAILS, INK, QUIET, SMALL, SURVIVES, WASH, WIDTHS
 
-__all__ = ["NAME", "NEEDS", "QUESTION", "build", "describe"]
+__all__ = ["NAME", "NEEDS", "QUESTION", "absent", "build", "describe"]
 
 NAME = "episodes"
 QUESTION = "When does the finding hold under each moving window?"
@@ -74,6 +74,11 @@ def _bars(frame: pd.DataFrame, runs: pd.DataFrame, names: list[str]) -> list[dic
                 }
             )  # fmt: skip
     return bars
+
+
+def absent(frames: Mapping[str, pd.DataFrame]) -> str:
+    """Say that there is nothing to draw where no window moves."""
+    return _NONE if frames["window_paths"].empty else ""
 
 
 def build(

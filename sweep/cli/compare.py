@@ -8,14 +8,15 @@ from typing import TYPE_CHECKING
 import click
 
 from sweep.cli.common import data_format, print_frame, sweep_option
+from sweep.cli.paths import STORE
 
 if TYPE_CHECKING:
     from sweep.comparison import Comparison
 
 
 @click.command()
-@click.argument("store", metavar="A", type=click.Path(path_type=Path))
-@click.argument("other", metavar="[B]", required=False, type=click.Path(path_type=Path))
+@click.argument("store", metavar="A", type=STORE)
+@click.argument("other", metavar="[B]", required=False, type=STORE)
 @sweep_option
 @click.option("--against", type=int, default=None,
               help="Number of the sweep in B; the latest if left out.")

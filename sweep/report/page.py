@@ -13,7 +13,7 @@ from typing import Any
 import jinja2
 from markupsafe import Markup
 
-from sweep.charts import CHARTS, chart
+from sweep.charts import CHARTS, absent, chart
 from sweep.charts.render import svg
 from sweep.charts.theme import ABSENT, FAILS, SURVIVES, WASH
 from sweep.verdicts.survival import axis_sentences
@@ -110,7 +110,11 @@ def _figures(report: ReportContent) -> list[dict[str, Figure]]:
     """Draw every figure: for each finding, its figures by name."""
     number = itertools.count(1)
     return [
-        {name: _figure(finding, name, next(number)) for name in CHARTS}
+        {
+            name: _figure(finding, name, next(number))
+            for name in CHARTS
+            if not absent(name, finding.frames)
+        }
         for finding in report.findings
     ]
 

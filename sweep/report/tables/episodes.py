@@ -14,10 +14,11 @@ if TYPE_CHECKING:
 
     from sweep.charts.context import Context
 
-__all__ = ["NAME", "NEEDS", "build"]
+__all__ = ["NAME", "NEEDS", "SHOWS", "build"]
 
 NAME = "episodes"
 NEEDS = ("window_paths",)
+SHOWS = "when the finding holds under each moving window"
 
 _COLUMNS = (
     Column("Window", "text", "window_name"),
@@ -50,7 +51,7 @@ def build(frames: Mapping[str, pd.DataFrame], context: Context) -> Table:
         "least half of the rows: of all admissible specifications with that window; p-values are "
         "then medians. Still open: the episode reaches the last window. Neighbouring windows "
         "share most of their data, so an episode is not as many pieces of evidence as it has "
-        "positions.",
+        f"positions. {context.losses}",
     )
     return Table(
         NAME,
