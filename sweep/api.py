@@ -4,8 +4,9 @@ from __future__ import annotations
 
 from collections.abc import Callable
 from pathlib import Path
-from typing import TYPE_CHECKING
+from typing import TYPE_CHECKING, Any
 
+from sweep.errors import Fault, InputFault
 from sweep.plan.load import load_plan
 
 if TYPE_CHECKING:
@@ -14,7 +15,65 @@ if TYPE_CHECKING:
     from sweep.plan.model import Plan
     from sweep.results import Results
 
-__all__ = ["check", "load_plan", "open_results", "run"]
+__all__ = ["check", "load_plan", "new", "open_results", "run", "schema"]
+
+
+def new(
+    data: str | Path | None = None,
+    *,
+    example: str | None = None,
+    output: str | Path | None = None,
+    overwrite: bool = False,
+) -> list[Path]:
+    """Write a commented starter plan for a data file, or copy a shipped example.
+
+    Parameters
+    ----------
+    data : str, Path or None
+        CSV, Parquet or Excel file with a column of dates.
+    example : str or None
+        Name of a shipped example, instead of ``data``.
+    output : str, Path or None
+        Plan file to write (with ``example``, the folder); beside the data if None.
+    overwrite : bool
+        Replace files that are there already.
+
+    Returns
+    -------
+    list of Path
+        The files written, the plan first.
+
+    Raises
+    ------
+    InputFault
+        If the data cannot be read or used, there is no such example, or a file is there
+        already.
+    """
+    if (data is None) == (example is None):
+        mend = "Name a data file, or a shipped example instead (--example)."
+        problem = "both a data file and an example" if example else "no data file"
+        raise InputFault(Fault("new", f"{problem} was given", mend))
+    if example is not None:
+        from sweep.examples_shipped import copy_example
+
+        return copy_example(example, Path(output or "."), overwrite=overwrite)
+    from sweep.panel.starter import starter_plan
+    from sweep.writing import write_new
+
+    assert data is not None
+    target = Path(output) if output is not None else Path(data).with_suffix(".toml")
+    write_new(target, starter_plan(Path(data)), overwrite=overwrite)
+    return [target]
+
+
+def schema() -> dict[str, Any]:
+    """Return the JSON Schema of the plan file."""
+    import json
+
+    from sweep.plan.schema import schema_text
+
+    plain: dict[str, Any] = json.loads(schema_text())
+    return plain
 
 
 def check(plan: Plan | str | Path, *, jobs: int | None = None) -> Check:

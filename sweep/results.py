@@ -114,7 +114,11 @@ class Results:
     def chart(
         self, name: str, finding: str | int | None = None, width: str = "wide"
     ) -> altair.LayerChart:
-        """Return a stability chart of one finding (the first if none is named)."""
+        """Return a stability chart of one finding (the first if none is named).
+
+        The chart is an object of altair's: save it, or change it.  A notebook shows it as a
+        picture, without a network.
+        """
         from sweep.charts import CHARTS, chart
         from sweep.charts.context import context_of
         from sweep.charts.render import altair_chart
@@ -130,7 +134,8 @@ class Results:
             self._record(number), frames["survival"], significance=float(self.info["significance"]),
             title=str(self.info["title"]), design=str(self.info["design"]),
         )  # fmt: skip
-        return altair_chart(module.build(frames, context, width))
+        described = {"description": module.describe(frames, context)}
+        return altair_chart({**module.build(frames, context, width), **described})
 
     def table(self, name: str, finding: str | int | None = None) -> Table:
         """Return a table of one finding (the first if none is named)."""
@@ -190,7 +195,7 @@ class Results:
 
     def report(
         self,
-        path: str | Path | None = None,
+        output: str | Path | None = None,
         *,
         content: ReportContent | None = None,
         library: Library | None = None,
@@ -199,8 +204,8 @@ class Results:
 
         Parameters
         ----------
-        path : str, Path or None
-            Where; beside the store if none is given.
+        output : str, Path or None
+            HTML file; beside the store if none is given.
         content : ReportContent or None
             What :meth:`content` returned, where it is at hand; read anew if None.
         library : Library or None
@@ -208,7 +213,7 @@ class Results:
         """
         from sweep.report.page import page
 
-        target = Path(path) if path is not None else self.store.with_suffix(".html")
+        target = Path(output) if output is not None else self.store.with_suffix(".html")
         text = page(content or self.content(), library=library)
         partial = target.with_name(target.name + ".part")
         try:
@@ -244,12 +249,23 @@ class Results:
             return compare_windows(self, finding)
         return compare_sweeps(self, other, finding)
 
-    def export(self, folder: str | Path, formats: Sequence[str] = ("parquet", "csv")) -> list[Path]:
-        """Write outcomes, survival, details and choices as Parquet and CSV files."""
-        from store.export import export
+    def export(self, folder: str | Path, only: str | None = None) -> list[Path]:
+        """Write outcomes, survival, details and choices into a folder; return the files.
 
+        Parameters
+        ----------
+        folder : str or Path
+            Made where it does not exist.
+        only : str or None
+            ``parquet`` or ``csv``; None for both.
+        """
+        from store.export import FORMATS, export
+
+        if only is not None and only not in FORMATS:
+            raise InputFault(Fault("only", f'"{only}" is no format' + suggestion(only, FORMATS)))
+        formats = FORMATS if only is None else (only,)
         with self._open() as database:
-            return [Path(p) for p in export(database, self.sweep, Path(folder), tuple(formats))]
+            return export(database, self.sweep, Path(folder), formats)
 
     def query(self, sql: str) -> pd.DataFrame:
         """Ask the store a question in SQL; nothing else can be read, nothing written.

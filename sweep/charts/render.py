@@ -23,12 +23,13 @@ def language_version() -> str:
 
 
 def altair_chart(plain: dict[str, Any]) -> altair.LayerChart:
-    """Return a chart as the object of the drawing library's Python side."""
-    import altair
+    """Return a chart as an object of the drawing library that shows itself offline."""
     from altair.utils.schemapi import debug_mode
 
+    from .shown import ShownChart
+
     with debug_mode(False):  # the tests hold every chart against the language's schema
-        chart: altair.LayerChart = altair.LayerChart.from_dict(plain, validate=False)
+        chart: altair.LayerChart = ShownChart.from_dict(plain, validate=False)
     return chart
 
 
@@ -49,7 +50,7 @@ def svg(chart: Chart) -> str:
     plain = specification(chart)
     try:
         return draw(plain)
-    except (NotDrawn, KeyError):  # a chart that was put together or changed by other means
+    except (NotDrawn, LookupError, TypeError):  # a chart that was changed by other means
         import vl_convert
 
         return str(vl_convert.vegalite_to_svg(plain, vl_version=language_version()))

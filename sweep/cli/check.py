@@ -60,10 +60,7 @@ def command(plan: Path, jobs: int | None, form: str) -> None:
         click.echo("\nSame numbers by construction:")
         for note in found.notes:
             click.echo(f"  {note}")
-    added = f", {found.added:,} of them for requests" if found.added else ""
-    every = found.planned + found.added
-    click.echo(f"\n{every:,} specifications in all{added}; about {_duration(found.seconds)} with "
-               f"{found.jobs} worker{'s' if found.jobs > 1 else ''}.")  # fmt: skip
+    click.echo(f"\n{found}")
 
 
 def _starts_from(plan: Plan) -> str:
@@ -73,14 +70,6 @@ def _starts_from(plan: Plan) -> str:
     if plan.replaced:
         words += f" Replaces there: {', '.join(plan.replaced)}."
     return words
-
-
-def _duration(seconds: float) -> str:
-    if seconds < 90:
-        return f"{max(round(seconds), 1)} s"
-    if seconds < 5400:
-        return f"{round(seconds / 60)} min"
-    return f"{seconds / 3600:.1f} h"
 
 
 def _plain(found: Check) -> dict[str, Any]:

@@ -19,7 +19,7 @@ if TYPE_CHECKING:
 
 @click.command()
 @store_argument
-@click.argument("spec", default="baseline")
+@click.argument("specification", metavar="[SPEC]", default="baseline")
 @sweep_option
 @click.option("--finding", default=None, help="Name of the finding, where several share SPEC.")
 @click.option("--data", type=DATA, default=None,
@@ -27,8 +27,9 @@ if TYPE_CHECKING:
 @click.option("--format", "form", type=click.Choice(("table", "json")), default="table",
               show_default=True, help="How it is printed.")  # fmt: skip
 def command(
-    store: Path, spec: str, sweep: int | None, finding: str | None, data: Path | None, form: str
-) -> None:
+    store: Path, specification: str, sweep: int | None, finding: str | None,
+    data: Path | None, form: str,
+) -> None:  # fmt: skip
     """Show one specification in full.
 
     SPEC is its id, a unique beginning of it, or "baseline": the data used, the regression, the
@@ -37,7 +38,7 @@ def command(
     """
     from sweep.api import open_results
 
-    found = open_results(store, sweep).explain(spec, finding, data)
+    found = open_results(store, sweep).explain(specification, finding, data)
     if form == "json":
         content = dataclasses.asdict(found)
         click.echo(json.dumps(content, ensure_ascii=False, indent=1, default=_plain))

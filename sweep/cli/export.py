@@ -20,6 +20,5 @@ def command(store: Path, folder: Path, sweep: int | None, only: str | None) -> N
     from sweep.api import open_results
     from sweep.engine.check import shown_path
 
-    formats = ("parquet", "csv") if only is None else (only,)
-    for path in open_results(store, sweep).export(folder, formats):
+    for path in open_results(store, sweep).export(folder, only):
         click.echo(shown_path(path))

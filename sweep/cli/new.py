@@ -23,24 +23,14 @@ def command(
 
     DATA is a CSV, Parquet or Excel file with a column of dates.
     """
-    from sweep.cli.files import write_new
+    from sweep.api import new
     from sweep.engine.check import shown_path
 
+    written = new(data, example=example, output=output, overwrite=overwrite)
+    for path in written:
+        click.echo(f"Wrote {shown_path(path)}", err=True)
+    plan = shown_path(written[0])
     if example is not None:
-        if data is not None:
-            raise click.UsageError("give a data file or --example, not both")
-        from sweep.examples_shipped import copy_example
-
-        for path in copy_example(example, output or Path(), overwrite=overwrite):
-            click.echo(f"Wrote {shown_path(path)}", err=True)
-        plan = (output or Path()) / f"{example}.toml"
         click.echo(f"Next: crosswind run {plan}", err=True)
-        return
-    if data is None:
-        raise click.UsageError("name a data file, or use --example for a shipped example")
-    from sweep.panel.starter import starter_plan
-
-    target = output or data.with_suffix(".toml")
-    write_new(target, starter_plan(data), overwrite=overwrite)
-    click.echo(f"Wrote {shown_path(target)}. Put your finding into it, then: "
-               f"crosswind check {shown_path(target)}", err=True)  # fmt: skip
+    else:
+        click.echo(f"Put your finding into it, then: crosswind check {plan}", err=True)

@@ -18,7 +18,7 @@ def command(output: Path | None) -> None:
     if output is None:
         click.echo(text, nl=False)
     else:
-        from sweep.cli.files import write_new
+        from sweep.writing import write_new
 
         write_new(output, text, overwrite=True)
 

@@ -10,6 +10,7 @@ import numpy as np
 
 from sweep.engine.cost import estimate_seconds
 from sweep.engine.prepare import Prepared, prepare
+from sweep.notebook import check_html, duration
 from sweep.plan.choices import AXES, WindowChoice
 from sweep.plan.model import Plan
 
@@ -99,6 +100,17 @@ class Check:
     def added(self) -> int:
         """Specifications that requests add to the planned ones."""
         return sum(asked.added for asked in self.requests)
+
+    def __str__(self) -> str:
+        added = f", {self.added:,} of them for requests" if self.added else ""
+        workers = f"{self.jobs} worker{'s' if self.jobs > 1 else ''}"
+        return (
+            f"{self.planned + self.added:,} specifications in all{added}; about "
+            f"{duration(self.seconds)} with {workers}."
+        )
+
+    def _repr_html_(self) -> str:
+        return check_html(self)
 
 
 def default_jobs() -> int:

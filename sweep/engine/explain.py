@@ -11,6 +11,7 @@ import numpy as np
 from sweep.engine.prepare import Prepared
 from sweep.engine.recheck import SlowDirection, SlowResult, recheck
 from sweep.engine.stored import prepared_again, row_of
+from sweep.notebook import explanation_html
 from sweep.plan.choices import AXES, LagChoice
 from sweep.procedures import PROCEDURES
 
@@ -75,6 +76,9 @@ class Explanation:
     compared: tuple[Compared, ...]
     coefficients: tuple[tuple[int, float, float], ...]
     verdict: tuple[str, ...]
+
+    def _repr_html_(self) -> str:
+        return explanation_html(self)
 
 
 def explain(

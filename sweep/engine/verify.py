@@ -20,6 +20,7 @@ from store.database import open_reading
 from sweep.engine.stored import prepared_again, row_of
 from sweep.engine.verify_row import EXACT, NUMBERS, Found, verify_row
 from sweep.errors import Fault, InputFault
+from sweep.notebook import verification_html
 
 if TYPE_CHECKING:
     import pandas as pd
@@ -117,6 +118,9 @@ class Verification:
             if value is not None
         ]
         return max(found, default=0.0)
+
+    def _repr_html_(self) -> str:
+        return verification_html(self)
 
 
 def verify(

@@ -6,6 +6,7 @@ from collections.abc import Mapping
 from dataclasses import dataclass
 from pathlib import Path
 
+from sweep.notebook import plan_html
 from sweep.panel.periods import Frequency
 from sweep.plan.canonical import Token, add_tokens, digest_text, token
 from sweep.plan.choices import AXES, Choice, MeasureChoice, TransformationChoice
@@ -229,6 +230,9 @@ class Plan:
             for request in self.requests
             if code in request.codes[finding.number].get(axis, ())
         )
+
+    def _repr_html_(self) -> str:
+        return plan_html(self)
 
     def baseline_id(self, finding: Finding) -> Token:
         """Return the id of the baseline specification (fixed window)."""

@@ -110,6 +110,11 @@ class Table:
         note = f"The first {rows:,} of {len(self.rows):,} rows are shown; {left:,} left out."
         return replace(self, rows=self.rows[:rows], notes=(*self.notes, note))
 
+    def _repr_html_(self) -> str:
+        from .writers import as_html
+
+        return as_html(self)
+
 
 def cell_text(value: Any, kind: Kind) -> str:
     """Write one value the way people read it."""
