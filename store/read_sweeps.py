@@ -11,7 +11,7 @@ from store.database import Database
 from store.errors import NotFound
 from store.schema import query
 
-__all__ = ["choices", "findings", "latest_sweep", "sweep_info", "sweeps"]
+__all__ = ["choices", "findings", "latest_sweep", "stored_rows", "sweep_info", "sweeps"]
 
 
 def sweeps(db: Database) -> pd.DataFrame:
@@ -69,6 +69,11 @@ def choices(db: Database, sweep: int, finding: int | None = None) -> pd.DataFram
     )
 
 
+def stored_rows(db: Database, sweep: int) -> int:
+    """Return how many outcomes of a sweep are stored, those that requests added included."""
+    return int(db.scalar("SELECT count(*) FROM outcome WHERE sweep = ?", [sweep]))
+
+
 def sweep_info(db: Database, sweep: int) -> dict[str, Any]:
     """Return what is recorded about a sweep.
 
@@ -100,5 +105,5 @@ def sweep_info(db: Database, sweep: int) -> dict[str, Any]:
     info["finished"] = ended[0][0] if ended else None
     info["wall_seconds"] = last.get("wall_seconds")
     info["counts"] = last.get("counts", {})
-    info["rows"] = db.scalar("SELECT count(*) FROM outcome WHERE sweep = ?", [sweep])
+    info["rows"] = stored_rows(db, sweep)
     return info

@@ -17,6 +17,8 @@ __all__ = ["Reporter"]
 PLAIN_SECONDS = 5.0
 """Seconds between two lines where standard error is no terminal."""
 
+STOPPING = "Stopping: what is being computed is finished and stored. Ctrl-C again stops at once."
+
 
 class Reporter:
     """Shows how far a run is.
@@ -33,6 +35,7 @@ class Reporter:
         self._bar: Any = None
         self._task: Any = None
         self._last = time.monotonic()
+        self._stopping = False
 
     def __enter__(self) -> Reporter:
         return self
@@ -50,6 +53,9 @@ class Reporter:
         """Show a new state."""
         if self._quiet:
             return
+        if progress.stopping and not self._stopping:
+            self._stopping = True
+            click.echo(STOPPING, err=True)
         if self._terminal:
             self._advance_bar(progress)
         elif time.monotonic() - self._last >= PLAIN_SECONDS:

@@ -32,8 +32,8 @@ Ints = NDArray[np.int64]
 
 LARGEST_TASK = 60_000
 """Rows a task holds at the most."""
-SECONDS = 0.6
-"""Work that a task is cut to, between 0.2 and 1 s."""
+SECONDS = 0.3
+"""Work that a task is cut to: what a stopped run waits for, and more than a task's own cost."""
 
 
 def make_tasks(prepared: Prepared, missing: Ints, details: NDArray[np.bool_]) -> list[Task]:

@@ -1,25 +1,41 @@
-"""Worker processes by joblib, restarted when one dies."""
+"""Worker processes by joblib's executor, begun anew when one dies."""
 
 from __future__ import annotations
 
-from collections.abc import Callable
+import signal
+import time
+from collections import deque
+from collections.abc import Callable, Iterator
+from concurrent.futures import FIRST_COMPLETED, Future, wait
+from typing import Any
 
-from joblib import Parallel, delayed
 from joblib.externals.loky import get_reusable_executor
-from joblib.externals.loky.process_executor import TerminatedWorkerError
+from joblib.externals.loky.process_executor import BrokenProcessPool
 
+from sweep.engine import waves
+from sweep.engine.stop import StopRequest, interrupts_held
 from sweep.engine.task import Outcome, Task
 from sweep.engine.waves import Broken, _guarded
 
 __all__ = ["WorkerPool"]
 
 DIED = "a worker process died twice on this task"
+IN_HAND = 2
+"""Tasks that a worker has at once: one to compute and one so that it need not wait."""
+LOOK_SECONDS = 0.1
+"""Time between two looks at whether the user wants to stop."""
+IDLE_SECONDS = 300
+"""Time after which an idle worker ends."""
+ONE_THREAD = dict.fromkeys(("OMP_NUM_THREADS", "OPENBLAS_NUM_THREADS", "MKL_NUM_THREADS"), "1")
+
+Done = Outcome | Broken
 
 
 class WorkerPool:
     """A pool that survives the death of a worker.
 
-    The workers stay for what comes next (the report's figures) and end with the process.
+    The workers stay for the next run of this process and end with it.  They never hear of a
+    Ctrl-C, which a terminal sends to every process: this one decides what is to be done.
 
     Parameters
     ----------
@@ -31,31 +47,78 @@ class WorkerPool:
 
     def __init__(self, jobs: int, work: Callable[[Task], Outcome]) -> None:
         self._jobs, self._work = jobs, work
-        self._pool = self._open()
+        self._executor = self._open()
 
-    def _open(self) -> Parallel:
-        return Parallel(n_jobs=self._jobs, backend="loky", batch_size=1, pre_dispatch="all")
+    def _open(self) -> Any:
+        with interrupts_held():
+            return get_reusable_executor(
+                max_workers=self._jobs, timeout=IDLE_SECONDS, initializer=_ignore_interrupts,
+                env=ONE_THREAD,
+            )  # fmt: skip
 
-    def wave(self, tasks: list[Task]) -> list[Outcome | Broken]:
-        """Compute one wave; if a worker dies, its wave is retried task by task."""
+    def _submit(self, task: Task) -> Future[Done]:
+        # Workers are begun in here, whenever there are too few of them.
+        with interrupts_held():
+            try:
+                future: Future[Done] = self._executor.submit(_work, self._work, task)
+            except BrokenProcessPool:
+                self._executor = self._open()
+                future = self._executor.submit(_work, self._work, task)
+        return future
+
+    def waves(self, tasks: list[Task], stop: StopRequest) -> Iterator[list[Done]]:
+        """Yield what is finished about once a second; the order is that of finishing."""
+        waiting, flying = deque(tasks), dict[Future[Done], Task]()
+        wave: list[Done] = []
+        began = time.monotonic()
         try:
-            return list(self._pool(delayed(_work)(self._work, task) for task in tasks))
-        except TerminatedWorkerError:
-            return [self._alone(task) for task in tasks]
+            while flying or (waiting and not stop):
+                while waiting and not stop and len(flying) < IN_HAND * self._jobs:
+                    task = waiting.popleft()
+                    flying[self._submit(task)] = task
+                finished, _ = wait(flying, LOOK_SECONDS, FIRST_COMPLETED)
+                wave += self._gathered(finished, flying)
+                if wave and waves.is_full(len(wave), self._jobs, began):
+                    yield wave
+                    wave, began = [], time.monotonic()
+            if wave:
+                yield wave
         except KeyboardInterrupt:
-            get_reusable_executor(max_workers=self._jobs).shutdown(wait=True, kill_workers=True)
+            # A second Ctrl-C: nothing is waited for.  Every task in hand is in the workers'
+            # queue already, so that the executor ends without a complaint.
+            self._executor.shutdown(wait=True, kill_workers=True)
             raise
 
-    def _alone(self, task: Task) -> Outcome | Broken:
-        self._pool = self._open()
+    def _gathered(
+        self, finished: set[Future[Done]], flying: dict[Future[Done], Task]
+    ) -> list[Done]:
+        """Return what came of finished tasks; where a worker died, of all tasks in flight."""
+        done, lost = [], []
+        for future in finished:
+            task = flying.pop(future)
+            try:
+                done.append(future.result())
+            except BrokenProcessPool:
+                lost.append(task)
+        if lost and flying:
+            # The others in flight end with the pool, unless they were finished before.
+            done += self._gathered(set(flying), flying)
+        return done + [self._alone(task) for task in lost]
+
+    def _alone(self, task: Task) -> Done:
+        self._executor = self._open()
         try:
-            done: list[Outcome | Broken] = list(self._pool([delayed(_work)(self._work, task)]))
-        except TerminatedWorkerError:
+            return self._submit(task).result()
+        except BrokenProcessPool:
+            self._executor = self._open()
             return Broken(task, DIED)
-        return done[0]
 
 
-def _work(work: Callable[[Task], Outcome], task: Task) -> Outcome | Broken:
+def _ignore_interrupts() -> None:
+    signal.signal(signal.SIGINT, signal.SIG_IGN)
+
+
+def _work(work: Callable[[Task], Outcome], task: Task) -> Done:
     """Compute in a worker, its linear algebra on one thread as everywhere else."""
     from threadpoolctl import threadpool_limits
 

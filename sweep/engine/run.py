@@ -17,6 +17,7 @@ from sweep.engine.group import make_tasks
 from sweep.engine.prepare import Prepared
 from sweep.engine.reasons import Status
 from sweep.engine.sink import StoreSink
+from sweep.engine.stop import StopRequest
 from sweep.engine.task import Outcome, Task
 from sweep.engine.waves import Broken, compute_in_waves
 from sweep.errors import Interrupted
@@ -34,11 +35,14 @@ class Progress:
         Specifications computed in this run, and to compute.
     seconds : float
         Since computing began.
+    stopping : bool
+        True where the user asked for a stop and only the work in hand is finished.
     """
 
     done: int
     total: int
     seconds: float
+    stopping: bool = False
 
     @property
     def rate(self) -> float:
@@ -124,18 +128,18 @@ def run_prepared(
         If the store is locked, damaged or of another version.
     """
     began = time.monotonic()
-    jobs = jobs or default_jobs()
-    with open_writing(store) as database:
+    stop = StopRequest()
+    with stop.listening(), open_writing(store) as database:
+        sink = StoreSink(database, prepared)
         try:
-            sink = StoreSink(database, prepared)
             details = _wants_lags(prepared)
             missing, stored, reused = sink.missing(details)
             tasks = make_tasks(prepared, missing, details)
-            failed = _compute(sink, tasks, jobs, int(missing.size), progress)
+            done, failed = _compute(sink, tasks, jobs or default_jobs(), progress, stop)
         except KeyboardInterrupt:
-            raise Interrupted(
-                f"Stopped. What was computed is in {store.name}; run the same command to go on."
-            ) from None
+            raise _interrupted(sink, store) from None
+        if done < missing.size:
+            raise _interrupted(sink, store)
         seconds = time.monotonic() - began
         ruled = int((prepared.rows.rule >= 0).sum())
         report = RunReport(
@@ -149,32 +153,43 @@ def run_prepared(
     return report
 
 
+def _interrupted(sink: StoreSink, store: Path) -> Interrupted:
+    kept, planned = sink.kept(), sink.prepared.rows.count
+    if not kept:
+        return Interrupted("Stopped before anything was stored; run the same command to go on.")
+    return Interrupted(
+        f"Stopped. {kept:,} of {planned:,} specifications are stored in {store.name}; run the "
+        "same command to go on."
+    )
+
+
 def _compute(
     sink: StoreSink,
     tasks: list[Task],
     jobs: int,
-    total: int,
     progress: Callable[[Progress], None] | None,
-) -> int:
-    """Compute the tasks; return how many rows failed.
+    stop: StopRequest,
+) -> tuple[int, int]:
+    """Compute the tasks; return how many rows are done, and how many of them failed.
 
     One thread writes a wave while the workers compute the next: at most two are in memory.
     """
     began = time.monotonic()
+    total = sum(task.row.size for task in tasks)
     done = failed = 0
     with ThreadPoolExecutor(max_workers=1) as thread:
         writing: Future[None] | None = None
-        for wave in compute_in_waves(tasks, jobs):
+        for wave in compute_in_waves(tasks, jobs, stop=stop):
             if writing is not None:
                 writing.result()
             writing = thread.submit(_write, sink, wave)
             done += sum(_rows(item) for item in wave)
             failed += sum(_failed(item) for item in wave)
             if progress is not None:
-                progress(Progress(done, total, time.monotonic() - began))
+                progress(Progress(done, total, time.monotonic() - began, bool(stop)))
         if writing is not None:
             writing.result()
-    return failed
+    return done, failed
 
 
 def _write(sink: StoreSink, wave: list[Outcome | Broken]) -> None:

@@ -12,7 +12,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from store.database import Database
-from store.read_sweeps import sweeps
+from store.read_sweeps import stored_rows, sweeps
 from store.records import (
     ChoiceRecord,
     FindingRecord,
@@ -83,6 +83,10 @@ class StoreSink:
         wanted = self._planned(open_) | {"details": details[open_]}
         taken = self._writer.reuse(self.sweep, wanted) if open_.size else open_ > 0
         return open_[~taken], int(have.sum()), int(taken.sum())
+
+    def kept(self) -> int:
+        """Return how many rows of the sweep are stored."""
+        return stored_rows(self._database, self.sweep)
 
     def write(self, outcomes: Sequence[Outcome]) -> None:
         """Append outcomes in one transaction, in the order of the plan's rows."""

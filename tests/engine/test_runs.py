@@ -92,8 +92,8 @@ def test_an_interrupted_run_goes_on_to_the_same_numbers(
     same(table(whole), table(resumed))
 
 
-def _start(plan: Path, store: Path) -> subprocess.Popen[str]:
-    """Start a run in a process of its own that writes after every task, slowly."""
+def _start(plan: Path, store: Path, jobs: int = 1) -> subprocess.Popen[str]:
+    """Start a run in a session of its own that writes after every task, slowly."""
     code = (
         "import sys, time\n"
         "from sweep.engine import waves, compute\n"
@@ -101,29 +101,37 @@ def _start(plan: Path, store: Path) -> subprocess.Popen[str]:
         "    time.sleep(0.3)\n"
         "    return real(task)\n"
         "waves.compute_task = slow\n"
+        "from sweep.engine.sink import StoreSink\n"
+        "def flagged(sink, outcomes, real=StoreSink.write):\n"
+        "    real(sink, outcomes)\n"
+        "    open(sys.argv[4], 'w').close()\n"
+        "StoreSink.write = flagged\n"
         "waves.TASKS_A_WORKER = 1\n"
+        "waves.INLINE_SECONDS = 0.0\n"
         "import sweep.engine.group as group\n"
         "group.LARGEST_TASK = 300\n"
         "from sweep.cli import main\n"
-        "main(['run', sys.argv[1], '--store', sys.argv[2], '--jobs', '1', '--no-report'])\n"
+        "main(['run', sys.argv[1], '--store', sys.argv[2], '--jobs', sys.argv[3], '--no-report'])\n"
     )
     return subprocess.Popen(
-        [sys.executable, "-c", code, str(plan), str(store)],
-        stdout=subprocess.PIPE, stderr=subprocess.PIPE, text=True,
+        [sys.executable, "-c", code, str(plan), str(store), str(jobs), str(_flag(store))],
+        stdout=subprocess.PIPE, stderr=subprocess.PIPE, text=True, start_new_session=True,
     )  # fmt: skip
 
 
-def _wait_for(store: Path) -> None:
-    """Wait until the run has written its first rows (the file and its log have grown)."""
-    log = store.with_name(store.name + ".wal")
+def _wait_for(path: Path) -> None:
+    """Wait until a file is there."""
     deadline = time.monotonic() + 60
     while time.monotonic() < deadline:
-        size = sum(path.stat().st_size for path in (store, log) if path.exists())
-        if size > 300_000:
-            time.sleep(0.5)
+        if path.exists():
             return
-        time.sleep(0.05)
-    raise AssertionError("the run wrote nothing within a minute")
+        time.sleep(0.02)
+    raise AssertionError(f"there is no {path.name} after a minute")
+
+
+def _flag(store: Path) -> Path:
+    """Return the file that appears once rows are stored."""
+    return store.with_suffix(".written")
 
 
 @pytest.mark.parametrize(("by", "code"), [(signal.SIGKILL, -9), (signal.SIGINT, 130)])
@@ -134,7 +142,7 @@ def test_a_stopped_process_leaves_a_resumable_store(
     store = tmp_path / "stopped.duckdb"
     process = _start(plan, store)
     try:
-        _wait_for(store)
+        _wait_for(_flag(store))
         os.kill(process.pid, by)
         _, messages = process.communicate(timeout=60)
     finally:
@@ -152,12 +160,67 @@ def test_a_stopped_process_leaves_a_resumable_store(
     same(table(whole), table(resumed))
 
 
+@pytest.mark.parametrize("seconds", [None, 0.0, 0.1, 0.4])
+def test_ctrl_c_with_workers_leaves_no_traceback_and_goes_on_to_the_same_numbers(
+    tmp_path: Path, seconds: float | None
+) -> None:
+    """As a terminal does it: every process of the group gets the signal, workers included.
+
+    Without ``seconds`` it comes once rows are stored, else that long after the store is there,
+    while the workers start.
+    """
+    plan = small_plans.write_plan(tmp_path, AXES)
+    store = tmp_path / "stopped.duckdb"
+    process = _start(plan, store, jobs=2)
+    try:
+        _wait_for(_flag(store) if seconds is None else store)
+        time.sleep(seconds or 0.0)
+        os.killpg(process.pid, signal.SIGINT)
+        _, messages = process.communicate(timeout=60)
+    finally:
+        process.kill()
+        process.communicate()
+    assert process.returncode == 130
+    assert "Traceback" not in messages
+    assert "Error" not in messages
+    resumed = sweep.run(plan, store=store, jobs=1)
+    report = resumed.run_report
+    assert report is not None
+    if seconds is None:
+        assert report.stored > 0
+    last = messages.strip().splitlines()[-1]
+    kept = f"{report.stored:,} of {report.planned:,} specifications are stored in stopped.duckdb"
+    assert last.startswith("Stopped. " if report.stored else "Stopped before anything was stored")
+    assert not report.stored or kept in last
+    assert last.endswith("run the same command to go on.")
+    whole = sweep.run(plan, store=tmp_path / "whole.duckdb", jobs=1)
+    same(table(whole), table(resumed))
+
+
+def test_a_second_ctrl_c_stops_at_once(tmp_path: Path) -> None:
+    plan = small_plans.write_plan(tmp_path, AXES)
+    store = tmp_path / "stopped.duckdb"
+    process = _start(plan, store, jobs=2)
+    try:
+        _wait_for(_flag(store))
+        os.killpg(process.pid, signal.SIGINT)
+        time.sleep(0.15)  # two signals at one moment would be one
+        os.killpg(process.pid, signal.SIGINT)
+        _, messages = process.communicate(timeout=60)
+    finally:
+        process.kill()
+        process.communicate()
+    assert process.returncode == 130
+    assert "Traceback" not in messages
+    assert sweep.run(plan, store=store, jobs=1).run_report.stored > 0
+
+
 def test_while_a_run_writes_others_are_told_who_holds_the_store(tmp_path: Path) -> None:
     plan = small_plans.write_plan(tmp_path, AXES)
     store = tmp_path / "held.duckdb"
     process = _start(plan, store)
     try:
-        _wait_for(store)
+        _wait_for(_flag(store))
         shown = subprocess.run(
             [sys.executable, "-c", "from sweep.cli import main; main()", "show", str(store)],
             capture_output=True, text=True, check=False,
@@ -247,14 +310,16 @@ def _tasks(folder: Path) -> list[Task]:
     return make_tasks(whole, rows, np.zeros(rows.size, bool))
 
 
-def test_a_dead_worker_costs_its_wave_only(
+def test_a_dead_worker_costs_the_tasks_in_hand_only(
     tmp_path: Path, monkeypatch: pytest.MonkeyPatch
 ) -> None:
     monkeypatch.setattr(waves, "INLINE_SECONDS", 0.0)
     tasks = _tasks(tmp_path)
     work = functools.partial(_dies_once, flag=tmp_path / "flag")
-    (wave,) = waves.compute_in_waves(tasks, 2, work)
-    assert all(isinstance(item, Outcome) for item in wave)
+    done = [item for wave in waves.compute_in_waves(tasks, 2, work) for item in wave]
+    assert all(isinstance(item, Outcome) for item in done)
+    rows = np.concatenate([item.row for item in done])
+    assert np.array_equal(np.sort(rows), np.arange(rows.size))
     (wave,) = waves.compute_in_waves(tasks[:1], 2, _always_dies)
     assert [type(item) for item in wave] == [waves.Broken]
 
