@@ -11,7 +11,7 @@ from sweep.charts import CHARTS, chart
 from sweep.charts.context import Context, baseline_record, context_of
 from sweep.verdicts import directions, effects, flips, reproduction, survival
 from sweep.verdicts.answers import answer_sentences
-from sweep.verdicts.words import joined, missing, percent
+from sweep.verdicts.words import joined, missing, p_text, percent, reason_text
 
 from . import cube
 from .notes import CAUTIONS, METHOD_NOTES, Note
@@ -25,6 +25,7 @@ __all__ = [
     "FindingContent",
     "ReportContent",
     "answered",
+    "baseline_sentence",
     "content_of",
     "first_lines",
     "sizes",
@@ -129,6 +130,28 @@ def first_lines(report: ReportContent) -> list[tuple[str, str]]:
     if others:
         lines.append((joined(name for name, _ in others), others[0][1]))
     return lines if len(report.findings) > 1 else [("", sentence) for _, sentence in lines]
+
+
+def baseline_sentence(finding: FindingContent) -> str:
+    """Name the baseline's choices and say what it gives."""
+    row = baseline_record(finding.frames["baseline"])
+    if missing(row["lags_choice"]):
+        return "The baseline has not been run yet."
+    names = {
+        "lags": "lags_choice", "deterministics": "deterministics", "window": "window_name",
+        "transformation": "transformation", "test": "test", "conditioning": "conditioning",
+        "measures": "measures",
+    }  # fmt: skip
+    choices = ", ".join(f"{axis} {row[name]}" for axis, name in names.items())
+    if row["status"] != "ok":
+        return f"The baseline ({choices}) is {reason_text(row['status'], row['reason'])}."
+    p_values = f"p {p_text(row['p_value'])} from cause to effect"
+    if not missing(row["reverse_p_value"]):
+        p_values += f" and {p_text(row['reverse_p_value'])} back"
+    if missing(row["survives"]) or not row["admissible"]:
+        return f"The baseline ({choices}) is not admissible: {p_values}."
+    holds = "holds" if row["survives"] else "does not hold"
+    return f"In the baseline ({choices}) the finding {holds}: {p_values}."
 
 
 def summary(finding: FindingContent) -> list[str]:

@@ -22,3 +22,18 @@
     }
   });
 })();
+
+// Folded tables are open on paper.
+(function () {
+  "use strict";
+  var opened = [];
+  window.addEventListener("beforeprint", function () {
+    opened = Array.prototype.filter.call(document.querySelectorAll("details.table"),
+      function (one) { return !one.open; });
+    opened.forEach(function (one) { one.open = true; });
+  });
+  window.addEventListener("afterprint", function () {
+    opened.forEach(function (one) { one.open = false; });
+    opened = [];
+  });
+})();

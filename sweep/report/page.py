@@ -5,7 +5,7 @@ from __future__ import annotations
 import itertools
 import json
 import re
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from importlib.resources import files
 from importlib.resources.abc import Traversable
 from typing import Any
@@ -14,21 +14,34 @@ import jinja2
 from markupsafe import Markup
 
 from sweep.charts import CHARTS, absent, chart
+from sweep.charts.context import Context
 from sweep.charts.render import svg
 from sweep.charts.theme import ABSENT, FAILS, SURVIVES, WASH
 from sweep.verdicts.survival import axis_sentences
 from sweep.verdicts.words import level_text
 
 from . import cube
-from .content import FindingContent, ReportContent, answered, first_lines, sizes, summary
+from .content import (
+    FindingContent,
+    ReportContent,
+    answered,
+    baseline_sentence,
+    first_lines,
+    sizes,
+    summary,
+)
+from .contents import with_contents
 from .library import Library
-from .tables import TABLES
+from .tables import TABLES, Table
 from .tables.writers import as_html
 
 __all__ = ["Figure", "page", "script_json", "still"]
 
 # Most rows of a table on the page; data files hold them all.
 _MOST_ROWS = 200
+
+# Rows above which a table is folded away until it is asked for or printed.
+_FOLDED = 14
 
 # The page's own parts, in the order in which they build on each other.
 _STYLES = ("page.css", "chooser/style.css")
@@ -64,6 +77,30 @@ class Figure:
     still: Markup
     json: Markup
     words: str
+
+
+@dataclass(frozen=True, slots=True)
+class Tabled:
+    """A table of the page.
+
+    Attributes
+    ----------
+    title : str
+        What it shows, without the finding's claim.
+    rows : int
+        Rows on the page.
+    html : Markup
+        The table itself.
+    """
+
+    title: str
+    rows: int
+    html: Markup
+
+    @property
+    def long(self) -> bool:
+        """Whether the table is folded away."""
+        return self.rows > _FOLDED
 
 
 def script_json(value: Any) -> Markup:
@@ -106,6 +143,17 @@ def _figure(finding: FindingContent, name: str, number: int) -> Figure:
     )
 
 
+def _tabled(table: Table, context: Context) -> Tabled:
+    """Write one table; claim, level and counts, which a finding says once, are left out."""
+    title = table.title.removesuffix(f": {context.statement}.")
+    notes = " ".join(table.notes)
+    for said in (context.lead, context.losses):
+        notes = notes.replace(said, "")
+    short = replace(table, title=title, notes=tuple(filter(None, [" ".join(notes.split())])))
+    short = short.first(_MOST_ROWS)
+    return Tabled(title, len(short.rows), Markup(as_html(short)))
+
+
 def _figures(report: ReportContent) -> list[dict[str, Figure]]:
     """Draw every figure: for each finding, its figures by name."""
     number = itertools.count(1)
@@ -123,7 +171,7 @@ def _sections(report: ReportContent, drawn: list[dict[str, Figure]]) -> list[dic
     sections = []
     for number, (finding, figures) in enumerate(zip(report.findings, drawn, strict=True), start=1):
         tables = {
-            name: Markup(as_html(module.build(finding.frames, finding.context).first(_MOST_ROWS)))
+            name: _tabled(module.build(finding.frames, finding.context), finding.context)
             for name, module in TABLES.items()
         }
         choices = cube.chooser(finding.frames, finding.context)
@@ -135,6 +183,7 @@ def _sections(report: ReportContent, drawn: list[dict[str, Figure]]) -> list[dic
                 "chooser": script_json(choices) if choices else None,
                 "name": finding.context.finding,
                 "statement": finding.context.statement,
+                "baseline": baseline_sentence(finding),
                 "summary": summary(finding),
                 "by_axis": axis_sentences(finding.frames["survival"]),
                 "sizes": sizes(finding),
@@ -178,7 +227,7 @@ def page(report: ReportContent, *, library: Library | None = None) -> str:
     colours = "".join(f"--{name}:{colour};" for name, colour in _COLOURS.items())
     style = Markup(f":root{{{colours}}}\n" + _together(folder, _STYLES))
     script = Markup(_together(folder, _SCRIPTS))
-    return environment.get_template("template.html.j2").render(
+    text = environment.get_template("template.html.j2").render(
         report=report,
         first_lines=first_lines(report),
         level=level_text(report.significance),
@@ -187,3 +236,6 @@ def page(report: ReportContent, *, library: Library | None = None) -> str:
         script=script,
         bundle=(library or Library()).script(),
     )
+    # Scripts follow the main part; they hold no headings of the page.
+    main, end, scripts = text.partition("</main>")
+    return with_contents(main) + end + scripts

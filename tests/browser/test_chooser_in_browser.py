@@ -421,6 +421,17 @@ def test_print_says_what_is_selected(browser: driven.Browser, address: str, tmp_
         assert "Selected: everything that was planned." in text
 
 
+def test_folded_tables_are_open_on_paper(browser: driven.Browser, address: str) -> None:
+    browser.show(address, READY)
+    count = "document.querySelectorAll('details.table{}').length"
+    folded = browser.run(count.format(""))
+    assert folded > 0 == browser.run(count.format("[open]"))
+    browser.run("window.dispatchEvent(new Event('beforeprint'))")
+    assert browser.run(count.format("[open]")) == folded
+    browser.run("window.dispatchEvent(new Event('afterprint'))")
+    assert browser.run(count.format("[open]")) == 0
+
+
 def test_without_scripts_a_note_stands_instead(browser: driven.Browser, address: str) -> None:
     browser.call("Emulation.setScriptExecutionDisabled", value=True)
     try:

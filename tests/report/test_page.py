@@ -9,7 +9,7 @@ import pytest
 import report_pages
 
 from sweep.charts import CHARTS
-from sweep.report.content import FRAMES, content_of, summary
+from sweep.report.content import FRAMES, baseline_sentence, content_of, summary
 from sweep.report.notes import CAUTIONS, METHOD_NOTES
 from sweep.report.page import script_json, still
 from sweep.report.tables import TABLES
@@ -84,7 +84,60 @@ def test_every_chart_and_table_is_there(friendly, content):
     assert len(friendly.named("table")) == len(TABLES) == len(friendly.named("caption"))
     for module in TABLES.values():
         table = module.build(content.findings[0].frames, content.findings[0].context)
-        assert table.title in friendly.text
+        # The finding says its claim once; captions leave it out.
+        title, _, claim = table.title.partition(": ")
+        assert title in friendly.text
+        assert claim == f"{content.findings[0].context.statement}."
+
+
+def test_long_tables_are_folded(friendly, content):
+    folded = [one for one in friendly.named("details") if one.get("class") == "table"]
+    built = [
+        module.build(content.findings[0].frames, content.findings[0].context)
+        for module in TABLES.values()
+    ]
+    assert len(folded) == sum(len(table.rows) > 14 for table in built) > 0
+    assert not any("open" in one for one in folded)
+    survival = next(table for table in built if table.name == "survival")
+    assert f"Survival by axis and choice ({len(survival.rows)} rows)" in friendly.text
+
+
+def test_every_part_is_in_the_contents(hostile):
+    ids = [one["id"] for _, one in hostile.elements if "id" in one]
+    assert len(ids) == len(set(ids))
+    links = [link["href"].removeprefix("#") for link in hostile.named("a")]
+    for heading in hostile.named("h2"):
+        assert links.count(heading["id"]) == 1
+    for heading in hostile.named("h3"):
+        assert links.count(heading["id"]) == int(heading["id"].startswith("finding"))
+    for number in (1, 2):
+        for part in ("survival-by-choice", "choose-the-specifications", "direction", "windows"):
+            assert f"finding-{number}-name-{part}" in links
+
+
+def test_the_baseline_is_said_in_words(friendly):
+    assert re.search(
+        r"In the baseline \(lags 4, deterministics constant, window full sample, transformation "
+        r"log difference, test F, conditioning given, measures as named\) the finding "
+        r"(holds|does not hold): p [<0-9.]+ from cause to effect and [<0-9.]+ back\.",
+        friendly.text,
+    )
+
+
+@pytest.mark.parametrize(
+    ("changes", "said"),
+    [
+        ({"status": "infeasible", "reason": "too short"}, r"\) is infeasible: too short\.$"),
+        ({"admissible": False}, r"\) is not admissible: p [<0-9.]+ from .* back\.$"),
+        ({"survives": False, "reverse_p_value": None},
+         r"\) the finding does not hold: p [<0-9.]+ from cause to effect\.$"),
+        ({"lags_choice": None}, r"^The baseline has not been run yet\.$"),
+    ],
+)  # fmt: skip
+def test_a_baseline_of_any_fate_is_said_in_words(content, changes, said):
+    finding = content.findings[0]
+    frames = finding.frames | {"baseline": finding.frames["baseline"].assign(**changes)}
+    assert re.search(said, baseline_sentence(dataclasses.replace(finding, frames=frames)))
 
 
 def test_losses_redundancies_and_record_are_there(friendly):

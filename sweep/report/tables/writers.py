@@ -46,6 +46,8 @@ def as_html(table: Table) -> str:
 
 
 def _side(column: Column) -> str:
+    if column.kind == "date":
+        return ' class="d"'
     return ' class="n"' if column.right else ""
 
 
