@@ -14,7 +14,9 @@ from store.read_changes import (
 )
 from store.read_compare import window_pairs, window_paths
 from store.read_cube import cube, cube_windows
+from store.read_curve import curve
 from store.read_outcomes import baseline, details, outcomes, specification
+from store.read_pairs import pair_cells
 from store.read_requests import answers, requests
 from store.read_sample import sample, sample_details, sample_strata
 from store.read_shares import (
@@ -34,6 +36,7 @@ __all__ = [
     "choices",
     "cube",
     "cube_windows",
+    "curve",
     "details",
     "directions",
     "effects",
@@ -44,6 +47,7 @@ __all__ = [
     "flips",
     "latest_sweep",
     "outcomes",
+    "pair_cells",
     "requests",
     "sample",
     "sample_details",

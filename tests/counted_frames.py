@@ -333,6 +333,105 @@ def directions_frame(sweep: Sweep, rows: pd.DataFrame) -> pd.DataFrame:
     return pd.DataFrame(found)
 
 
+def _shared(rows: pd.DataFrame) -> dict[str, object]:
+    good = rows[rows["admissible"]]
+    weight = float(good["weight"].sum())
+    return {
+        "planned": len(rows),
+        "not_applicable": int((rows["status"] == "not applicable").sum()),
+        "screened_out": int(rows["screened_out"].sum()),
+        "admissible": len(good),
+        "survived": int(good["survives"].sum()),
+        "weight": weight,
+        "share": float((good["weight"] * good["survives"]).sum()) / weight if weight else None,
+    }
+
+
+def pair_cells_frame(sweep: Sweep, rows: pd.DataFrame) -> pd.DataFrame:
+    """Cells of every pair of axes, with an additive fit by dummies and least squares."""
+    found: list[dict[str, object]] = []
+    several = [axis for axis in AXES if len(sweep.axes[axis]) > 1]
+    for row_axis, column_axis in itertools.combinations(several, 2):
+        own = []
+        for (row, column), part in rows.groupby([row_axis, column_axis], sort=False):
+            places = sweep.axes[row_axis].index(row), sweep.axes[column_axis].index(column)
+            own.append(
+                {
+                    "row_axis": row_axis,
+                    "column_axis": column_axis,
+                    "row_choice": row,
+                    "column_choice": column,
+                    "row_position": places[0],
+                    "column_position": places[1],
+                    "row_is_baseline": places[0] == 0,
+                    "column_is_baseline": places[1] == 0,
+                    "row_pooled": 1,
+                    "column_pooled": 1,
+                }
+                | _shared(part)
+            )
+        found += _with_fit(own)
+    columns = ["row_axis", "column_axis", "departure"]
+    return pd.DataFrame(found) if found else pd.DataFrame(columns=columns)
+
+
+def _with_fit(cells: list[dict[str, object]]) -> list[dict[str, object]]:
+    cells = sorted(cells, key=lambda one: (one["row_position"], one["column_position"]))
+    counted = [one for one in cells if one["share"] is not None]
+    if not counted:
+        return [one | {"expected": None, "departure": 0.0} for one in cells]
+    rows = pd.get_dummies([one["row_choice"] for one in counted], dtype=float).to_numpy()
+    columns = pd.get_dummies([one["column_choice"] for one in counted], dtype=float).to_numpy()
+    root = np.sqrt([one["weight"] for one in counted])
+    share = np.array([one["share"] for one in counted], dtype=float)
+    design = np.hstack([rows, columns])
+    effects = np.linalg.lstsq(design * root[:, None], share * root, rcond=None)[0]
+    fitted = design @ effects
+    gap = float(np.sqrt((root**2 * (share - fitted) ** 2).sum() / (root**2).sum()))
+    fits = iter(fitted)
+    return [
+        one
+        | {"expected": None if one["share"] is None else float(next(fits)), "departure": gap}
+        for one in cells
+    ]
+
+
+def curve_frame(sweep: Sweep, rows: pd.DataFrame, points: int = 240) -> pd.DataFrame:
+    """Estimates in order over all scales and within each, thinned by rank."""
+    good = rows[rows["admissible"]]
+    base = good[good["is_baseline"]]
+    parts = [("all", good, good["coefficient_sum"] / 4, 0.02)]
+    parts += [
+        (f"{name} · as named", part, part["coefficient_sum"], 0.08)
+        for name, part in good.groupby("transformation", sort=False)
+    ]
+    found = []
+    for scale, part, estimate, error in parts:
+        own = part.assign(estimate=estimate).sort_values(["estimate", "specification"])
+        own = own.assign(rank=np.arange(1, len(own) + 1))
+        whole = {
+            "scale": scale,
+            "standard_error": error,
+            "admissible": len(own),
+            "rows": len(own),
+            "survived": int(own["survives"].sum()),
+            "positive": int((own["estimate"] > 0).sum()),
+            "median": own["estimate"].median(),
+            "baseline_scale": scale.startswith(f"{sweep.transformation[0]} ·"),
+        }
+        kept = np.unique(np.round(np.linspace(0, len(own) - 1, min(points, len(own)))).astype(int))
+        held = own.iloc[kept]
+        if len(base) and scale in ("all", f"{sweep.transformation[0]} · as named"):
+            held = own[own.index.isin([*held.index, base.index[0]])]
+        found.append(held.assign(**whole))
+    columns = [
+        "scale", "rank", "estimate", "standard_error", "p_value", "survives", "is_baseline", *AXES,
+        "specification", "admissible", "rows", "survived", "positive", "median", "baseline_scale",
+    ]  # fmt: skip
+    frames = [frame for frame in found if len(frame)]
+    return pd.concat(frames)[columns] if frames else pd.DataFrame(columns=columns)
+
+
 def _spread(values: pd.Series) -> dict[str, float]:
     return {
         "minimum": values.min(),
@@ -409,6 +508,8 @@ def frames_of(sweep: Sweep) -> dict[str, pd.DataFrame]:
         "cube": cube_frame,
         "cube_windows": cube_windows_frame,
         "directions": directions_frame,
+        "pair_cells": pair_cells_frame,
+        "curve": curve_frame,
         "effects": effects_frame,
         "effects_overall": effects_overall_frame,
         "attrition": attrition_frame,

@@ -41,10 +41,14 @@ class ChartModule(Protocol):
 # Name of the chart and its module, in the order of the report.
 CHARTS: dict[str, str] = {
     "survival by choice": "survival_by_choice",
+    "two axes": "two_axes",
     "single changes": "single_changes",
     "flips": "flips",
     "windows": "windows",
     "episodes": "episodes",
+    "directions": "directions",
+    "specification curve": "specification_curve",
+    "attrition": "attrition",
 }
 
 

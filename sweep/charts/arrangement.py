@@ -19,7 +19,10 @@ from .theme import SMALL
 if TYPE_CHECKING:
     import pandas as pd
 
-__all__ = ["PAGE", "Arrangement", "Group", "Row", "arrange", "by_axis", "held_fixed", "label_room"]
+__all__ = [
+    "PAGE", "Arrangement", "Group", "Record", "Row", "arrange", "by_axis", "held_fixed",
+    "label_room",
+]  # fmt: skip
 
 # Rows that fit on one printed page beside title and caption.
 PAGE = 44
@@ -137,17 +140,22 @@ def held_fixed(
     return varying, f"Held at one choice: {named}."
 
 
-def label_room(groups: Sequence[tuple[str, list[Record]]], most: float) -> float:
-    """Return the pixels that the labels need, at most ``most`` (they are wrapped beyond)."""
-    widest = max(
-        (
-            text_width(str(line))
-            for _, records in groups
-            for record in records
-            for line in record.get("lines", (record["choice"],))
-        ),
-        default=0.0,
-    )
+def label_room(
+    groups: Sequence[tuple[str, list[Record]]], most: float, limit: int = PAGE
+) -> float:
+    """Return the pixels that the labels need, at most ``most`` (they are wrapped beyond).
+
+    Where the choices are more than are drawn, the label of a closing row has room too.
+    """
+    labels = [
+        str(line)
+        for _, records in groups
+        for record in records
+        for line in record.get("lines", (record["choice"],))
+    ]
+    if sum(len(records) for _, records in groups) > limit:
+        labels.append(f"{sum(_stand_for(records) for _, records in groups):,} other choices")
+    widest = max((text_width(label) for label in labels), default=0.0)
     return min(most, max(widest + 2, 40.0))
 
 
@@ -171,6 +179,7 @@ def arrange(
     *,
     rooms: Sequence[int] | None = None,
     noun: str = "choice",
+    least: float = 0,
 ) -> Arrangement:
     """Place the rows of all axes below each other.
 
@@ -192,6 +201,8 @@ def arrange(
         the groups and thin them evenly.
     noun : str
         What a row stands for.
+    least : float
+        Least height of a row, pixels.
 
     Returns
     -------
@@ -202,32 +213,28 @@ def arrange(
     heads: list[Group] = []
     height = top
     given = rooms or _shares([len(records) for _, records in groups], limit)
-    total = sum(len(records) for _, records in groups)
     shown = 0
     for (axis, records), room in zip(groups, given, strict=True):
-        must = [place for place, record in enumerate(records) if keep(record)]
-        # Marked rows may not crowd out the others, or a figure would only show what is rare.
-        most = max(1, room // 2)
-        must = [must[place] for place in spread_evenly(len(must), most)]
-        chosen = spread_evenly(len(records), room, must)
+        chosen = _chosen(records, room, keep)
         if rooms:
             chosen = list(range(min(room, len(records))))
+        hidden = tuple(record for place, record in enumerate(records) if place not in set(chosen))
         shown += len(chosen)
         text = axis
-        if len(chosen) < len(records):
-            text = f"{axis} ({len(chosen):,} of {counted(len(records), noun)})"
+        if hidden:
+            text = f"{axis} ({len(chosen):,} of {counted(_stand_for(records), noun)})"
         heads.append(Group(axis, text, height + _HEAD / 2 - 1, height + _HEAD))
         height += _HEAD
         for place in chosen:
             label = _label(records[place], label_width)
-            rows.append(_row(records[place], label, height))
+            rows.append(_row(records[place], label, height, least))
             height = rows[-1].bottom
-        hidden = tuple(record for place, record in enumerate(records) if place not in set(chosen))
         if hidden:
-            rest = counted(len(hidden), f"other {noun}")
-            rows.append(_row({}, [rest], height, hidden))
+            rest = [counted(_stand_for(hidden), f"other {noun}")]
+            rows.append(_row({}, rest, height, least, hidden))
             height = rows[-1].bottom
         height += _BETWEEN
+    total = sum(_stand_for(records) for _, records in groups)
     return Arrangement(tuple(rows), tuple(heads), height - _BETWEEN, shown, total)
 
 
@@ -239,6 +246,22 @@ def _label(record: Record, width: float) -> list[str]:
     return found
 
 
-def _row(record: Record, lines: list[str], top: float, hidden: tuple[Record, ...] = ()) -> Row:
-    bottom = top + len(lines) * _LINE + _GAP
+def _chosen(records: list[Record], room: int, keep: Callable[[Record], bool]) -> list[int]:
+    """Return which records are drawn; those that pool several choices never are."""
+    alone = [place for place, record in enumerate(records) if record.get("pooled", 1) == 1]
+    must = [number for number, place in enumerate(alone) if keep(records[place])]
+    # Marked rows may not crowd out the others, or a figure would only show what is rare.
+    must = [must[number] for number in spread_evenly(len(must), max(1, room // 2))]
+    return [alone[number] for number in spread_evenly(len(alone), room, must)]
+
+
+def _stand_for(records: Sequence[Record]) -> int:
+    """Return how many choices some records stand for."""
+    return sum(int(record.get("pooled", 1)) for record in records)
+
+
+def _row(
+    record: Record, lines: list[str], top: float, least: float, hidden: tuple[Record, ...] = ()
+) -> Row:
+    bottom = top + max(len(lines) * _LINE + _GAP, least)
     return Row(record, tuple(lines), top, (top + bottom) / 2, bottom, hidden)

@@ -11,7 +11,7 @@ from collections.abc import Sequence
 
 from .theme import SMALL
 
-__all__ = ["shortened", "spread_evenly", "text_width", "wrapped"]
+__all__ = ["apart", "shortened", "spread_evenly", "text_width", "wrapped"]
 
 # Advance widths of the characters from space to tilde.
 _WIDTHS = (
@@ -50,8 +50,8 @@ def text_width(text: str, size: float = SMALL, bold: bool = False) -> float:
             total += _WIDTHS[code - 32]
         elif unicodedata.combining(character):
             continue
-        elif unicodedata.east_asian_width(character) in ("W", "F"):
-            total += 1000
+        elif unicodedata.east_asian_width(character) in ("W", "F") or 0x25A0 <= code < 0x2600:
+            total += 1000  # ideographs and geometric shapes
         else:
             total += 620
     return total / 1000 * size * (_BOLD if bold else 1.0)
@@ -156,3 +156,67 @@ def spread_evenly(count: int, wanted: int, keep: Sequence[int] = ()) -> list[int
     elif free > 1:
         chosen.update(others[round(step * (len(others) - 1) / (free - 1))] for step in range(free))
     return sorted(chosen)
+
+
+def apart(
+    wished: Sequence[float], sizes: Sequence[float], low: float, high: float, gap: float = 6.0
+) -> list[float]:
+    """Place labels near where they are wished without letting them touch.
+
+    Labels that would touch form a block, which is centred on the mean of what its members wish;
+    blocks are joined until none touch, then pushed inside the ends.
+
+    Parameters
+    ----------
+    wished : sequence of float
+        Wished middles in ascending order, pixels.
+    sizes : sequence of float
+        Widths of the labels.
+    low, high : float
+        Ends of the room.
+    gap : float
+        Least distance between two labels.
+
+    Returns
+    -------
+    list of float
+        Middles, in the same order; they overlap only where the room is too small for all.
+
+    Examples
+    --------
+    >>> apart([10, 12, 60], [10, 10, 10], 0, 100, gap=2)
+    [5.0, 17.0, 60.0]
+    """
+    blocks: list[list[int]] = []
+    for number in range(len(wished)):
+        blocks.append([number])
+        while len(blocks) > 1 and _touch(blocks[-2], blocks[-1], wished, sizes, low, high, gap):
+            last = blocks.pop()
+            blocks[-1] += last
+    places = [0.0] * len(wished)
+    for block in blocks:
+        left, _ = _extent(block, wished, sizes, low, high, gap)
+        for number in block:
+            places[number] = left + sizes[number] / 2
+            left += sizes[number] + gap
+    return places
+
+
+def _extent(
+    block: Sequence[int], wished: Sequence[float], sizes: Sequence[float], low: float, high: float,
+    gap: float,
+) -> tuple[float, float]:  # fmt: skip
+    """Return the ends of a block of neighbouring labels."""
+    whole = sum(sizes[number] for number in block) + gap * (len(block) - 1)
+    middle = sum(wished[number] for number in block) / len(block)
+    left = max(low, min(middle - whole / 2, high - whole))
+    return left, left + whole
+
+
+def _touch(
+    before: Sequence[int], after: Sequence[int], wished: Sequence[float], sizes: Sequence[float],
+    low: float, high: float, gap: float,
+) -> bool:  # fmt: skip
+    _, end = _extent(before, wished, sizes, low, high, gap)
+    start, _ = _extent(after, wished, sizes, low, high, gap)
+    return start < end + gap

@@ -15,11 +15,11 @@ from typing import Any, Literal, Protocol
 from sweep.verdicts.words import missing
 
 from .layout import wrapped
-from .theme import BODY, EDGE, INK, SMALL, TITLE, WIDTHS, configure
+from .theme import BODY, EDGE, HAIRLINE, INK, QUIET, SMALL, TITLE, WIDTHS, configure
 
 __all__ = [
-    "Layers", "Rows", "Scale", "Specification", "areas", "dots", "figure", "hit_rows", "paths",
-    "strokes", "texts",
+    "Layers", "Rows", "Scale", "Specification", "areas", "dots", "figure", "hit_areas",
+    "hit_rows", "paths", "strokes", "texts", "without_marks",
 ]  # fmt: skip
 
 Rows = Sequence[Mapping[str, Any]]
@@ -77,13 +77,19 @@ def _plain(value: Any) -> Any:
     return value.item() if hasattr(value, "item") else value
 
 
+def _value(name: str, value: Any) -> Any:
+    """Return a field's value; places down are pixels, which a hundredth is fine enough for."""
+    plain = _plain(value)
+    return round(plain, 2) if name in ("y", "y2") and plain is not None else plain
+
+
 def _layer(mark: dict[str, Any], rows: Rows, encoding: Mapping[str, Any]) -> Layers:
     """Return one layer with the fields of its rows that it reads; nothing without rows."""
     if not rows:
         return []
     drawn = {name: one for name, one in encoding.items() if one is not None}
     read = _fields(drawn)
-    values = [{name: _plain(row[name]) for name in read if name in row} for row in rows]
+    values = [{name: _value(name, row[name]) for name in read if name in row} for row in rows]
     return [{"data": {"values": values}, "mark": mark, "encoding": drawn}]
 
 
@@ -95,7 +101,8 @@ def _fields(encoding: Mapping[str, Any]) -> list[str]:
 
 
 def _y(height: float, name: str = "y") -> dict[str, Any]:
-    scale = {"domain": [0, height], "range": [0, height], "nice": False, "zero": False}
+    ends = [0, round(height, 2)]
+    scale = {"domain": ends, "range": ends, "nice": False, "zero": False}
     return {"axis": None, "field": name, "scale": scale, "type": "quantitative"}
 
 
@@ -230,15 +237,26 @@ def paths(
     return _layer(mark, rows, encoding)
 
 
-def hit_rows(
-    rows: Rows, height: float, width: float, tips: Mapping[str, str], left: float = 0
+def hit_areas(
+    rows: Rows, height: float, x: X, x2: str | float, tips: Mapping[str, str]
 ) -> Layers:
-    """Lay an unseen area over each row (``y`` to ``y2``) that shows its numbers when pointed at."""
+    """Lay an unseen area over each row's place that shows its numbers when pointed at."""
     encoding = {
-        "x": {"value": left}, "x2": {"value": width}, "y": _y(height), "y2": {"field": "y2"},
-        "tooltip": _tips(tips),
+        "x": _x(x), "x2": _end(x2), "y": _y(height), "y2": {"field": "y2"}, "tooltip": _tips(tips),
     }  # fmt: skip
     return _layer({"type": "rect", "opacity": 0, "strokeWidth": 0}, rows, encoding)
+
+
+def hit_rows(rows: Rows, height: float, width: float, tips: Mapping[str, str]) -> Layers:
+    """Lay an unseen area over each row (``y`` to ``y2``) that shows its numbers when pointed at."""
+    return hit_areas(rows, height, 0, width, tips)
+
+
+def without_marks(words: str, width: str, title: str, subtitle: str) -> Specification:
+    """Return a figure that only says, in words, why there is nothing to draw."""
+    rows = [{"y": 2.0, "text": ""}, {"y": 16.0, "text": words}]
+    layers = strokes(rows[:1], 24, 1, WIDTHS[width] - 1, colour=HAIRLINE, width=0.6)
+    return figure(layers + texts(rows[1:], 24, 0, colour=QUIET), width, 24, title, subtitle)
 
 
 def figure(
@@ -261,7 +279,7 @@ def figure(
             "subtitle": wrapped(subtitle, across, BODY),
         },
         "width": across,
-        "height": height,
+        "height": round(height, 2),
         "padding": EDGE,
         "layer": named,
         "datasets": datasets,

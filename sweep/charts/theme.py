@@ -13,18 +13,23 @@ __all__ = [
     "ABSENT",
     "BASELINE",
     "BODY",
+    "BOTH_WAYS",
     "EDGE",
     "FAILS",
     "FONT",
     "HAIRLINE",
     "INK",
+    "NEITHER",
+    "ONE_WAY",
     "PALE",
     "QUIET",
+    "REVERSE",
     "SCREENED",
     "SMALL",
     "SURVIVES",
     "TINTS",
     "TITLE",
+    "UNDETERMINED",
     "WASH",
     "WIDTHS",
     "configure",
@@ -42,6 +47,14 @@ PALE = "#E9EBEA"  # bands that only separate
 WASH = "#F5F3EE"  # ground of a strip with nothing in it
 BASELINE = INK
 ABSENT = "#7D868B"  # the small dot of what does not apply or failed
+
+# Directions of the link, in their own family of hues, so that none is taken for survival.  In the
+# order in which they stand, neighbours differ most in lightness.
+ONE_WAY = "#33417E"
+REVERSE = "#B58BB0"
+BOTH_WAYS = "#6F5A9E"
+NEITHER = "#E3E2EC"
+UNDETERMINED = "#FFFFFF"  # outlined
 
 # Shares as tint run from light to dark in one direction, so that greyscale keeps the order.
 TINTS = ("#F6E7C6", "#C9D3B2", "#86B0A2", "#41858A", "#0B5A5E")

@@ -12,9 +12,10 @@ from sweep.verdicts.words import counted, missing, p_text, percent, period_text,
 from . import marks
 from .context import Context
 from .layout import shortened, text_width
+from .legend import tint_legend
 from .marks import Layers, Scale, Specification
 from .strips import Strip, place_strips, year_ticks
-from .theme import ABSENT, BODY, INK, QUIET, SMALL, TINTS, WASH, WIDTHS, tint
+from .theme import ABSENT, BODY, INK, QUIET, SMALL, WASH, WIDTHS, tint
 
 __all__ = ["NAME", "NEEDS", "QUESTION", "build", "describe"]
 
@@ -124,7 +125,7 @@ def build(
     track = (_LEFT, across - _RIGHT)
     return marks.figure(
         [
-            *_legend(height, across),
+            *tint_legend(height, across),
             *_ground(strips, height, track, width),
             *_strips(strips, height, track),
             *_left_out(strips, height, track),
@@ -143,22 +144,6 @@ def _scale(name: str, strips: list[Strip], track: tuple[float, float]) -> Scale:
     low = min((start for start, _ in spans), default=0.0)
     high = max((end for _, end in spans), default=1.0)
     return Scale(name, (low, high), track)
-
-
-def _legend(height: float, across: float) -> Layers:
-    """Explain the tints in place: swatches from 0% to 100%."""
-    size, step = 16.0, 1.0 / (len(TINTS) - 1)
-    start = across - 32 - size * len(TINTS)
-    layers: Layers = []
-    for number in range(len(TINTS)):
-        box = [{"y": 2, "y2": 12, "fill": tint(number * step)}]
-        left = start + number * size
-        layers += marks.areas(box, height, left, left + size)
-    layers += marks.texts(
-        [{"y": 7, "text": "share surviving  0%"}], height, start - 5, align="right", colour=QUIET
-    )
-    right = start + size * len(TINTS) + 4
-    return layers + marks.texts([{"y": 7, "text": "100%"}], height, right, colour=QUIET)
 
 
 def _ground(

