@@ -7,6 +7,7 @@ reverse p-values, from the hollow diamond, with a dashed stroke: what is drawn i
 
 from __future__ import annotations
 
+import math
 from collections.abc import Mapping, Sequence
 from typing import Any
 
@@ -15,6 +16,7 @@ from sweep.verdicts.words import missing, p_text, reason_text
 
 from . import marks
 from .context import Context
+from .layout import text_width
 from .marks import Layers, Scale
 from .theme import ABSENT, BASELINE, FAILS, INK, PALE, QUIET, SURVIVES
 
@@ -138,10 +140,17 @@ def ground(bottom: float, height: float, track: Track, context: Context) -> Laye
         {"y": TOP - 6, "y2": bottom, "p": p, "text": f"{p:g}"} for p in (0.001, 0.01, 0.1, 1.0)
     ]
     layers += marks.strokes(ticks[1:], height, x, colour="#E3E6E6", tall=True)
-    marked = [tick for tick in ticks if abs(tick["p"] - context.significance) > 1e-12]
+    decade = (track[1] - track[0]) / -math.log10(_END)
+    # A tick under the line of the level would be struck through; the line has its own label.
+    marked = [
+        tick
+        for tick in ticks
+        if abs(math.log10(tick["p"] / context.significance)) * decade
+        > text_width(tick["text"]) / 2 + 2
+    ]
     named = [
         {"y": TOP - 13, "p": _GATHERED, "text": "<0.001"},
-        *({"y": TOP - 13, "p": tick["p"], "text": tick["text"]} for tick in marked[1:]),
+        *(tick | {"y": TOP - 13} for tick in marked if tick["p"] > _EDGE),
     ]
     layers += marks.texts(named, height, x, align="center", colour=QUIET)
     level = [{"y": TOP - 20, "y2": bottom, "p": context.significance}]

@@ -27,7 +27,7 @@ from .marks import Layers, Scale, Specification
 from .theme import BASELINE, FAILS, HAIRLINE, INK, QUIET, SURVIVES, WIDTHS
 from .ticks import round_ticks, tick_texts
 
-__all__ = ["NAME", "NEEDS", "OPTIONS", "QUESTION", "build", "describe", "numbers"]
+__all__ = ["NAME", "NEEDS", "OPTIONS", "QUESTION", "absent", "build", "describe", "numbers"]
 
 NAME = "specification curve"
 QUESTION = "How does the size of the effect vary?"
@@ -217,6 +217,11 @@ def _spread(curve: _Curve) -> str:
         f"Median {number(curve.median)}; positive in {curve.positive:,} of {curve.rows:,} "
         f"({positive})."
     )
+
+
+def absent(frames: Mapping[str, pd.DataFrame]) -> str:
+    """Say that there is nothing to draw where nothing has an estimate."""
+    return _NOTHING if frames["curve"].empty else ""
 
 
 def build(

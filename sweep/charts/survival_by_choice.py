@@ -28,7 +28,7 @@ _INDENT = 12.0
 _LABEL = {"narrow": 112.0, "wide": 210.0}
 _BETWEEN = 14.0
 _TOP = 44.0
-_NEAR = 0.06
+_NEAR = 2.0
 
 _TIPS = {
     "axis": "axis",
@@ -183,7 +183,9 @@ def _ground(
         tick | {"y": _TOP - 15}
         for tick in ticks
         # A tick under the overall line would be struck through; the line has its own label.
-        if counts.headline is None or abs(tick["share"] - counts.headline) > _NEAR
+        if counts.headline is None
+        or abs(tick["share"] - counts.headline) * (track[1] - track[0])
+        > text_width(tick["text"]) / 2 + _NEAR
     ]
     layers += marks.texts(named, height, x, align="center", colour=QUIET)
     heads = [{"y": group.middle, "text": group.text} for group in arranged.groups]

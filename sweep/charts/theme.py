@@ -50,9 +50,9 @@ ABSENT = "#7D868B"  # the small dot of what does not apply or failed
 
 # Directions of the link, in their own family of hues, so that none is taken for survival.  In the
 # order in which they stand, neighbours differ most in lightness.
-ONE_WAY = "#33417E"
-REVERSE = "#B58BB0"
-BOTH_WAYS = "#6F5A9E"
+ONE_WAY = "#4A2E6B"
+REVERSE = "#BC93B8"
+BOTH_WAYS = "#74569A"
 NEITHER = "#E3E2EC"
 UNDETERMINED = "#FFFFFF"  # outlined
 

@@ -22,7 +22,7 @@ from .legend import tint_legend
 from .marks import Layers, Scale, Specification
 from .theme import ABSENT, BASELINE, HAIRLINE, INK, QUIET, SCREENED, SMALL, WIDTHS, tint
 
-__all__ = ["NAME", "NEEDS", "OPTIONS", "QUESTION", "build", "describe", "numbers"]
+__all__ = ["NAME", "NEEDS", "OPTIONS", "QUESTION", "absent", "build", "describe", "numbers"]
 
 NAME = "two axes"
 QUESTION = "Do two choices act together?"
@@ -156,6 +156,11 @@ def _strength_words(pair: Axes, order: list[tuple[float, Axes]]) -> str:
 
 def _named(pair: Axes) -> str:
     return f"{pair[0]} and {pair[1]}"
+
+
+def absent(frames: Mapping[str, pd.DataFrame]) -> str:
+    """Say that there is nothing to draw where fewer than two axes vary."""
+    return _NONE if frames["pair_cells"].empty else ""
 
 
 def build(

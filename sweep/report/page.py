@@ -189,6 +189,9 @@ def _sections(report: ReportContent, drawn: list[dict[str, Figure]]) -> list[dic
                 "sizes": sizes(finding),
                 "answers": answered(finding),
                 "figures": figures,
+                "absent": {
+                    name: absent(name, finding.frames) for name in CHARTS if name not in figures
+                },
                 "tables": tables,
                 "redundancies": finding.redundancies,
             }

@@ -24,6 +24,8 @@ HOSTILE = "<script>alert(1)</script>\"'</script>&"
 def cases(sweeps):
     return {
         "usual": sweeps.Sweep(),
+        "three choices": sweeps.crowded(3),
+        "ten million rows": sweeps.Sweep(),
         "one choice": sweeps.Sweep(
             lags=["4"],
             deterministics=["constant"],
@@ -62,8 +64,24 @@ def cases(sweeps):
     }
 
 
+COUNTS = (
+    "planned", "not_applicable", "infeasible", "failed", "screened_out", "admissible", "survived",
+    "distinct", "rows", "positive",
+)  # fmt: skip
+
+
+def grown(frames, factor):
+    """The same frames with every count of rows that many times as large."""
+    return {
+        name: frame.assign(**{c: frame[c] * factor for c in COUNTS if c in frame and len(frame)})
+        for name, frame in frames.items()
+    }
+
+
 CASES = (
     "usual",
+    "three choices",
+    "ten million rows",
     "one choice",
     "thirty choices",
     "three hundred choices",
@@ -79,6 +97,8 @@ CASES = (
 def case(request, sweeps):
     sweep = cases(sweeps)[request.param]
     frames = sweeps.frames_of(sweep)
+    if request.param == "ten million rows":
+        frames = grown(frames, 1000)
     context = context_of(
         sweeps.finding_of(sweep), frames["survival"], significance=0.05, title="A title"
     )

@@ -77,6 +77,36 @@ def test_survives_and_does_not_differ_in_greyscale():
     assert light["screened"] - light["fails"] > 15
 
 
+DIRECTIONS = (theme.ONE_WAY, theme.REVERSE, theme.BOTH_WAYS, theme.NEITHER, theme.UNDETERMINED)
+
+
+@pytest.mark.parametrize("vision", VISION)
+def test_directions_stay_apart_and_are_not_taken_for_survival(vision):
+    for one, other in itertools.combinations(DIRECTIONS, 2):
+        assert np.linalg.norm(lab(one, vision) - lab(other, vision)) > 9, (one, other)
+    for one in DIRECTIONS:
+        for other in (theme.SURVIVES, theme.FAILS):
+            assert np.linalg.norm(lab(one, vision) - lab(other, vision)) > 15, (one, other)
+
+
+def test_neighbouring_directions_differ_in_greyscale():
+    # The last one has an outline, so that white beside the palest is told apart.
+    light = [lab(colour)[0] for colour in DIRECTIONS[:-1]]
+    assert all(abs(a - b) > 18 for a, b in itertools.pairwise(light))
+    for fill in (theme.ONE_WAY, theme.BOTH_WAYS):
+        assert contrast(fill, "#ffffff") > 4.5
+    for fill in (theme.REVERSE, theme.NEITHER):
+        assert contrast(fill, theme.INK) > 4.5
+
+
+def test_counts_on_tints_can_be_read():
+    from sweep.charts.two_axes import _DARK
+
+    for share in np.linspace(0, 1, 101):
+        ink = "#ffffff" if share > _DARK else theme.INK
+        assert contrast(theme.tint(float(share)), ink) > 3.4
+
+
 def test_tints_darken_steadily_with_the_share():
     light = [lab(theme.tint(share))[0] for share in np.linspace(0, 1, 21)]
     steps = -np.diff(light)

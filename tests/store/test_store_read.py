@@ -41,6 +41,12 @@ COLUMNS = {
     "directions": "axis choice verdict rows share choice_position",
     "effects": "scale transformation measures form rows positive negative minimum "
     "lower_quartile median upper_quartile maximum is_baseline",
+    "pair_cells": "row_axis column_axis row_choice column_choice row_position column_position "
+    "row_is_baseline column_is_baseline planned not_applicable screened_out admissible survived "
+    "weight share expected departure row_pooled column_pooled",
+    "curve": "scale rank estimate standard_error p_value survives is_baseline lags deterministics "
+    "window transformation test conditioning measures specification admissible rows survived "
+    "positive median baseline_scale",
     "effects_overall": "quantity rows positive negative minimum lower_quartile median "
     "upper_quartile maximum",
 }
