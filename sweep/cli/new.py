@@ -23,7 +23,7 @@ def command(
 
     DATA is a CSV, Parquet or Excel file with a column of dates.
     """
-    from sweep.api import new
+    from sweep.api import check, new
     from sweep.engine.check import shown_path
 
     written = new(data, example=example, output=output, overwrite=overwrite)
@@ -32,5 +32,6 @@ def command(
     plan = shown_path(written[0])
     if example is not None:
         click.echo(f"Next: crosswind run {plan}", err=True)
-    else:
-        click.echo(f"Put your finding into it, then: crosswind check {plan}", err=True)
+        return
+    click.echo(f"As it stands, it runs: {check(written[0])}", err=True)
+    click.echo(f"Put your finding into it, then: crosswind check {plan}", err=True)

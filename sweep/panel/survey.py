@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from collections.abc import Mapping
 from dataclasses import dataclass
 from itertools import pairwise
 from pathlib import Path
@@ -15,10 +16,13 @@ from sweep.panel.cells import CellError, is_blank, read_day, read_number
 from sweep.panel.dates import read_calendar
 from sweep.panel.files import Table, read_table
 from sweep.panel.series import Dataset, collinear_faults, constant_faults, missing_faults
+from sweep.panel.traits import Traits, moves_with, traits_of
 
 __all__ = ["Survey", "rows_needed", "survey_file"]
 
+# What the screen "enough observations" asks for.
 _LEAST_FREE = 20  # observations less coefficients that a regression should keep
+_PER_COEFFICIENT = 3
 
 
 @dataclass(frozen=True, slots=True)
@@ -43,8 +47,12 @@ class Survey:
         Rows on which all chosen series are known.
     middle, after : str
         Labels of the last row of their earlier half and of the next one.
-    positive : tuple of str
-        The chosen series of which a log exists everywhere.
+    before, onwards : str
+        Labels of two rows between them, an example of an episode's dates.
+    traits : mapping of series to Traits
+        What the chosen series look like.
+    alike : tuple of (str, str)
+        Series that are not given, since they move with the effect or the cause, and which.
     """
 
     date: str
@@ -57,12 +65,25 @@ class Survey:
     rows: int
     middle: str
     after: str
-    positive: tuple[str, ...]
+    before: str
+    onwards: str
+    traits: Mapping[str, Traits]
+    alike: tuple[tuple[str, str], ...]
 
     @property
     def series(self) -> tuple[str, ...]:
         """All chosen series, effect and cause first."""
         return (self.effect, self.cause, *self.given)
+
+    @property
+    def positive(self) -> tuple[str, ...]:
+        """The chosen series of which a log exists everywhere."""
+        return tuple(name for name in self.series if self.traits[name].positive)
+
+    @property
+    def seasonal(self) -> tuple[str, ...]:
+        """The chosen series whose changes differ between the seasons."""
+        return tuple(name for name in self.series if self.traits[name].seasonal)
 
 
 def survey_file(path: Path) -> Survey:
@@ -79,17 +100,18 @@ def survey_file(path: Path) -> Survey:
         raise InputFault(*table.faults)
     date_column, calendar = _dates(table)
     names, unusable, dataset = _usable(table, date_column, calendar)
-    known = np.isfinite(np.column_stack([dataset.column(name) for name in names])).all(axis=1)
-    rows = np.flatnonzero(known)
-    given = names[2:]
+    alike, given = _apart(dataset, names)
+    rows = _known(dataset, (*names[:2], *given))
     while given and rows.size < rows_needed(len(given) + 2, 1):
         given = given[:-1]
+        rows = _known(dataset, (*names[:2], *given))
     if rows.size < rows_needed(len(given) + 2, 1):
         problem = f"only {rows.size} rows hold all of {', '.join(names[:2])}"
         mend = f"At least {rows_needed(2, 1)} are needed for a regression with one lag."
         raise InputFault(Fault(path.name, problem, mend))
     middle = int(rows[rows.size // 2 - 1])
-    chosen = (*names[:2], *given)
+    season = calendar.season(np.arange(len(calendar)))
+    seasons = calendar.frequency.seasons
     return Survey(
         date=date_column,
         frequency=calendar.frequency,
@@ -101,8 +123,38 @@ def survey_file(path: Path) -> Survey:
         rows=int(rows.size),
         middle=calendar.label(middle),
         after=calendar.label(middle + 1),
-        positive=tuple(name for name in chosen if np.nanmin(dataset.column(name)) > 0.0),
+        before=calendar.label(int(rows[rows.size // 3])),
+        onwards=calendar.label(int(rows[rows.size // 3 + max(rows.size // 20, 1)])),
+        traits={
+            name: traits_of(dataset.column(name), season, seasons)
+            for name in (*names[:2], *given)
+        },
+        alike=alike,
     )
+
+
+def _known(dataset: Dataset, names: tuple[str, ...]) -> NDArray[np.int64]:
+    """Return the rows on which all of some series are known."""
+    values = np.column_stack([dataset.column(name) for name in names])
+    return np.flatnonzero(np.isfinite(values).all(axis=1))
+
+
+def _apart(
+    dataset: Dataset, names: tuple[str, ...]
+) -> tuple[tuple[tuple[str, str], ...], tuple[str, ...]]:
+    """Split what may be given from what moves with the effect or the cause."""
+    alike, given = [], []
+    for name in names[2:]:
+        like = [
+            other
+            for other in names[:2]
+            if moves_with(dataset.column(name), dataset.column(other))
+        ]
+        if like:
+            alike.append((name, like[0]))
+        else:
+            given.append(name)
+    return tuple(alike), tuple(given)
 
 
 def _dates(table: Table) -> tuple[str, Calendar]:
@@ -206,10 +258,12 @@ def _is_number(cell: object) -> bool:
     return True
 
 
-def rows_needed(series: int, lags: int) -> int:
+def rows_needed(series: int, lags: int, terms: int = 2) -> int:
     """Return the rows that a regression of some series with some lags should have.
 
-    One row is lost to differencing and one to each lag; a constant, a trend and one
-    coefficient for each series and lag are estimated; twenty rows should stay free.
+    One row is lost to differencing and one to each lag; the deterministic terms (a constant and
+    a trend, if not told otherwise) and one coefficient for each series and lag are estimated.
+    Three rows for each coefficient, and twenty to spare, are what the screen asks for.
     """
-    return 1 + lags + 2 + series * lags + _LEAST_FREE
+    coefficients = terms + series * lags
+    return 1 + lags + max(_PER_COEFFICIENT * coefficients, coefficients + _LEAST_FREE)

@@ -140,24 +140,6 @@ def test_examples_are_copied(name: str, tmp_path: Path, capsys: pytest.CaptureFi
     assert 'did you mean "harbour"?' in capsys.readouterr().err
 
 
-@pytest.mark.parametrize(
-    ("frequency", "rows"), [("monthly", 160), ("quarterly", 90), ("annual", 60)]
-)
-def test_a_starter_plan_runs_as_it_stands(frequency: str, rows: int, tmp_path: Path) -> None:
-    text = small_plans.write_data(tmp_path, rows).read_text(encoding="utf-8").splitlines()
-    step = {"monthly": 1, "quarterly": 3, "annual": 12}[frequency]
-    lines = [text[0]]
-    for number, line in enumerate(text[1:]):
-        month = number * step
-        lines.append(f"{1900 + month // 12}-{month % 12 + 1:02d}-01,{line.split(',', 1)[1]}")
-    data = tmp_path / "own.csv"
-    data.write_text("\n".join(lines) + "\n", encoding="utf-8")
-    assert call("new", data) == 0
-    assert call("check", tmp_path / "own.toml") == 0
-    assert call("run", tmp_path / "own.toml", "--no-report", "--quiet") == 0
-    assert call("new", data) == 2
-
-
 def test_a_mistyped_command(capsys: pytest.CaptureFixture[str]) -> None:
     assert call("chekc", "x.toml") == 2
     assert 'did you mean "check"?' in capsys.readouterr().err

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import re
 import tomllib
 from datetime import date, timedelta
 
@@ -9,12 +10,14 @@ import numpy as np
 import openpyxl
 import pytest
 
+import sweep
 from sweep.errors import InputFault
 from sweep.panel.calendar import FREQUENCIES, advance, build_calendar, period_label
 from sweep.panel.load import read_dataset
 from sweep.panel.starter import starter_plan
-from sweep.panel.survey import rows_needed
+from sweep.panel.survey import _LEAST_FREE, _PER_COEFFICIENT, rows_needed
 from sweep.plan.document import PlanDocument
+from sweep.screens.enough_observations import FREEDOM, PER_REGRESSOR, passes
 
 NAMES = ("rents", "freight", "diesel", "rail", "ice", "tide")
 
@@ -68,7 +71,7 @@ def test_every_frequency_and_length_gives_a_plan_its_data_can_carry(tmp_path, fr
     for window in plan["axes"]["windows"][1:]:
         if "rolling" in window:
             assert rows_needed(4, 2) <= window["rolling"] <= 0.75 * n
-            assert (n - window["rolling"]) // window["step"] + 1 <= 61
+            assert (n - window["rolling"]) // window["step"] + 1 <= 31
         else:
             first = data.calendar.find(window["from"], "first") if "from" in window else 0
             last = data.calendar.find(window["until"], "last") if "until" in window else n - 1
@@ -81,10 +84,20 @@ def test_every_frequency_and_length_gives_a_plan_its_data_can_carry(tmp_path, fr
 def test_only_what_this_version_can_do_is_proposed(tmp_path):
     _, plan = plan_of(write(tmp_path / "a.csv", labels("monthly", 240), columns(240)))
     assert set(plan) == {
-        "title", "significance", "seed", "data", "findings", "baseline", "axes", "screens", "sweep"
+        "title", "significance", "seed", "data", "findings", "baseline", "axes", "rule_out",
+        "screens", "sweep",
     }  # fmt: skip
     assert plan["screens"] == {"require": ["enough observations"]}
     assert plan["axes"]["tests"] == ["F", {"test": "F", "covariance": "HC3"}]
+
+
+def test_rows_needed_are_those_that_the_screen_asks_for():
+    assert (_LEAST_FREE, _PER_COEFFICIENT) == (FREEDOM, PER_REGRESSOR)
+    for series in (2, 3, 5):
+        for lags in (1, 4, 12):
+            rows, regressors = rows_needed(series, lags) - 1 - lags, 2 + series * lags
+            passed = passes(np.array([rows - 1, rows]), regressors)
+            assert passed.tolist() == [False, True]
 
 
 def test_every_default_has_its_reason(tmp_path):
@@ -93,7 +106,27 @@ def test_every_default_has_its_reason(tmp_path):
     for key in ("lags", "deterministics", "windows", "transformations", "tests", "conditioning"):
         place = max(i for i, line in enumerate(lines) if line.startswith(f"{key} ="))
         assert lines[place - 1].startswith("#"), key
-    assert max(map(len, lines)) <= 100
+    assert max(len(line) for line in lines if line.startswith("#")) <= 100
+    for words in (
+        "Ivanov & Kilian 2005", "MacKinnon & White 1985", "Lütkepohl 1982", "Toda & Phillips 1993"
+    ):  # fmt: skip
+        assert words in text
+    assert text.count("common practice, no source") >= 5
+
+
+def test_what_is_commented_out_can_be_taken_in(tmp_path):
+    """An episode and a regime, with dates inside the sample; a level shift is shown too."""
+    path = write(tmp_path / "a.csv", labels("quarterly", 160), columns(160))
+    text, plan = plan_of(path)
+    taken = text.replace("    # {", "    {")
+    more = tomllib.loads(taken)["axes"]["windows"]
+    assert len(more) == len(plan["axes"]["windows"]) + 2
+    step = re.search(r'steps = \["(.+)"\]', text)
+    assert step is not None
+    taken = taken.replace('"linear trend"', f'{{ trend = "constant", steps = ["{step[1]}"] }}', 1)
+    (tmp_path / "more.toml").write_text(taken, encoding="utf-8")
+    checked = sweep.check(tmp_path / "more.toml")
+    assert checked.planned > 1000
 
 
 def test_the_baseline_belongs_to_its_axes(tmp_path):
@@ -109,18 +142,67 @@ def test_the_baseline_belongs_to_its_axes(tmp_path):
         assert all(axis.count(entry) == 1 for entry in axis)
 
 
-def test_logs_only_of_positive_values(tmp_path):
-    values = columns(160)
-    values[:, 0] -= 50.0
-    values[3, 3] = 0.0
-    path = write(tmp_path / "a.csv", labels("monthly", 160), values)
+def scales(entry):
+    """Return the transformation of each series."""
+    if isinstance(entry, str):
+        return dict.fromkeys(NAMES[:4], entry)
+    return dict.fromkeys(NAMES[:4], entry["default"]) | entry["series"]
+
+
+def test_each_series_gets_the_scale_that_is_usual_for_it(tmp_path):
+    """An index number, a rate in per cent, a series around zero, and one that does not wander."""
+    noise = np.random.default_rng(5).standard_normal((200, 4))
+    values = np.cumsum(noise, axis=0)
+    values[:, 0] = 100.0 * np.exp(0.01 * values[:, 0])
+    values[:, 1] = 6.0 + 0.1 * (values[:, 1] - values[:, 1].min())
+    values[:, 3] = noise[:, 3]
+    path = write(tmp_path / "a.csv", labels("monthly", 200), values)
     _, plan = plan_of(path)
-    mixed = {"rents": "difference", "rail": "difference"}
-    assert plan["baseline"]["transformation"] == {"default": "log difference", "series": mixed}
-    write(path, labels("monthly", 160), values - 100.0)
+    first, growth, plain, yearly = plan["axes"]["transformations"]
+    assert scales(first) == {
+        "rents": "log difference", "freight": "difference", "diesel": "difference",
+        "rail": "level",
+    }  # fmt: skip
+    assert plan["baseline"]["transformation"] == first
+    assert scales(growth)["freight"] == "log difference"
+    assert scales(growth)["rail"] == scales(plain)["rents"] == "difference"
+    assert scales(yearly) == {
+        "rents": "yearly growth", "freight": "yearly growth", "diesel": "seasonal difference",
+        "rail": "seasonal difference",
+    }  # fmt: skip
+    (rule,) = plan["rule_out"]
+    assert rule["when"] == {"transformation": [yearly["name"]], "lags": [1, 2, 3, 6, 9]}
+
+
+def test_no_logs_where_values_are_not_positive(tmp_path):
+    path = write(tmp_path / "a.csv", labels("monthly", 240), columns(240) - 100.0)
     _, plan = plan_of(path)
-    assert plan["baseline"]["transformation"] == "difference"
     assert plan["axes"]["transformations"] == ["difference", "seasonal difference"]
+
+
+def test_a_seasonal_pattern_is_found_and_put_first(tmp_path):
+    values = columns(160)
+    plain = write(tmp_path / "plain.csv", labels("quarterly", 160), values)
+    text, plan = plan_of(plain)
+    assert plan["baseline"]["deterministics"] == "constant"
+    assert "no pattern was found" in text
+    values[:, 1] += np.tile([0.5, -0.2, 0.1, -0.4], 40)
+    text, plan = plan_of(write(tmp_path / "a.csv", labels("quarterly", 160), values))
+    assert plan["baseline"]["deterministics"] == {"trend": "constant", "seasonal": True}
+    assert plan["axes"]["deterministics"][0] == plan["baseline"]["deterministics"]
+    assert "constant" in plan["axes"]["deterministics"]
+    assert "seasonal patterns (F test of the changes, 0.1%): freight" in text
+
+
+def test_a_second_measure_is_not_given(tmp_path):
+    values = columns(160)
+    values[:, 2] = 7.0 * values[:, 1] + 0.1 * np.random.default_rng(8).standard_normal(160)
+    text, plan = plan_of(write(tmp_path / "a.csv", labels("monthly", 160), values))
+    assert plan["findings"][0]["given"] == ["rail"]
+    assert '# measures = { "freight" = ["freight", "diesel"] }' in text
+    path = tmp_path / "a.toml"
+    path.write_text(text.replace("# measures", "measures"), encoding="utf-8")
+    assert sweep.check(path).planned > 1000
 
 
 @pytest.mark.parametrize(
@@ -197,7 +279,7 @@ def test_names_are_quoted_whatever_is_in_them(tmp_path):
     (finding,) = plan["findings"]
     assert (finding["effect"], finding["cause"], *finding["given"]) == names
     assert plan["data"]["file"] == path.name
-    assert plan["baseline"]["transformation"]["series"] == {"# diesel": "difference"}
+    assert plan["baseline"]["transformation"]["series"] == {"# diesel": "level"}
 
 
 def test_holidays_make_the_calendar_observed(tmp_path):
