@@ -81,6 +81,18 @@ METHOD_NOTES = (
         ),
     ),
     Note(
+        "Choosing specifications",
+        (
+            "The page holds counts of planned rows by combination of choices, and adds up those of "
+            "a selection under the same rules and weights. Distinct computations do not add up "
+            "over combinations, so they are stated for the whole plan alone. Where the "
+            "combinations of a sweep are more than a page can hold, counts of all combinations of "
+            "fewer axes stand in for them: every number shown is exact, but only so many axes can "
+            "be narrowed at a time. Over time, neighbouring positions of moving windows are pooled "
+            "where there are more than 400.",
+        ),
+    ),
+    Note(
         "Size of the effect",
         (
             "The sum of coefficients has the standard error √(1′V1), V being the covariance of the "

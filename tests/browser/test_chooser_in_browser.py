@@ -23,9 +23,11 @@ from test_report_in_browser import CHROMIUM, REQUIRED
 import sweep
 from store import read
 from store.database import open_reading
+from sweep.report.content import content_of
 from sweep.report.page import page
 from sweep.results import Results
 from sweep.verdicts.directions import WORDS
+from sweep.verdicts.survival import sampling_interval
 from sweep.verdicts.words import percent, share_text
 
 pytestmark = [
@@ -547,3 +549,44 @@ def test_no_selection_reaches_beyond_a_narrow_window(browser: driven.Browser, ad
         )
         == ""
     )
+
+
+@pytest.mark.parametrize("design", ["sample of 5000", "one change"])
+def test_designs_show_what_they_have(browser: driven.Browser, tmp_path: Path, design: str) -> None:
+    path = tmp_path / "design.html"
+    path.write_text(report_pages.written(design=design), encoding="utf-8")
+    browser.show(path.as_uri(), READY)
+    found = shown(browser)
+    frames = report_pages.content(design=design).findings[0].frames
+    if design == "one change":
+        assert "weighted" not in found["live"]
+        assert {share for rows in found["axes"].values() for _, _, share in rows.values()} == {""}
+        assert "sampling interval" not in found["more"]
+        return
+    low, high = sampling_interval(frames["survival"])
+    assert found["more"].endswith(
+        "These rows are a sample of the plan; the 95% sampling interval of the weighted share is "
+        f"{percent(low)} to {percent(high)}."
+    )
+    # One window entry is one stratum.
+    browser.click(box(1, "window", 1))
+    rows = frames["survival"]
+    one = rows[(rows["axis"] == "all") | (rows["choice"] == "full sample")].copy()
+    whole = one["axis"] == "all"
+    one.loc[whole, "headline_share"] = one.loc[~whole, "headline_share"].iloc[0]
+    low, high = sampling_interval(one)
+    assert f"{percent(low)} to {percent(high)}." in shown(browser)["more"]
+
+
+def test_many_choices_stay_in_their_box(
+    browser: driven.Browser, sweeps: Any, tmp_path: Path
+) -> None:
+    many = sweeps.crowded(300)
+    content = content_of(report_pages.sweep_info(), [sweeps.finding_of(many)],
+                         {1: sweeps.frames_of(many)})  # fmt: skip
+    path = tmp_path / "many.html"
+    path.write_text(page(content), encoding="utf-8")
+    browser.show(path.as_uri(), READY)
+    browser.click(box(1, "lags", 250))
+    assert shown(browser)["selected"] == "Selected: lags: all but 251 (299 of 300)."
+    assert browser.run(f"{axis_of(1, 'lags')}.offsetHeight") < 800

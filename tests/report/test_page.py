@@ -242,6 +242,20 @@ def test_summary_follows_the_design(design, expected, absent):
     assert absent not in said
 
 
+def test_one_specification_leaves_nothing_to_choose(sweeps):
+    from sweep.report.page import page
+
+    single = sweeps.Sweep(
+        lags=["4"], deterministics=["constant"], window=["full sample"],
+        transformation=["log"], test=["F"], conditioning=["given"],
+    )  # fmt: skip
+    frames = {1: sweeps.frames_of(single)}
+    report = content_of(report_pages.sweep_info(), [sweeps.finding_of(single)], frames)
+    document = Document(page(report))
+    assert "Choose the specifications" not in document.text
+    assert not [one for one in document.named("div") if one.get("class") == "chooser"]
+
+
 def test_nothing_admissible_is_said(sweeps):
     sweep = sweeps.crowded(2, not_applicable=("log difference",))
     frames = {1: sweeps.frames_of(sweep)}
