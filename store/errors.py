@@ -7,6 +7,7 @@ __all__ = [
     "BadBatch",
     "NotAStore",
     "NotFound",
+    "NothingStored",
     "OtherSchema",
     "QueryFault",
     "StoreDamaged",
@@ -73,6 +74,10 @@ class BadBatch(ValueError):
 
 class NotFound(LookupError):
     """Nothing in the store answers to the sweep, finding or specification named."""
+
+
+class NothingStored(NotFound):
+    """A run into this sweep was stopped before it stored anything."""
 
 
 class Ambiguous(LookupError):

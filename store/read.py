@@ -27,7 +27,7 @@ from store.read_shares import (
     survival,
     windows,
 )
-from store.read_sweeps import choices, findings, latest_sweep, sweep_info, sweeps
+from store.read_sweeps import choices, findings, latest_sweep, require_rows, sweep_info, sweeps
 
 __all__ = [
     "answers",
@@ -49,6 +49,7 @@ __all__ = [
     "outcomes",
     "pair_cells",
     "requests",
+    "require_rows",
     "sample",
     "sample_details",
     "sample_strata",

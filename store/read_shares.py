@@ -30,7 +30,7 @@ def survival(
     -------
     pandas.DataFrame
         ``sweep, finding, axis, choice, code, choice_position, is_baseline, planned,
-        not_applicable, infeasible, failed, screened_out, admissible, survived, other_sign,
+        not_applicable, infeasible, failed, screened_out, not_run, admissible, survived, other_sign,
         distinct, raw_share, headline_share, share_at_1, share_at_5, share_at_10,
         median_p_value``.  Counts are of planned rows; ``distinct`` counts distinct
         computations among the admissible ones; shares are in [0, 1] and missing where
@@ -45,7 +45,8 @@ def attrition(db: Database, sweep: int, finding: int) -> pd.DataFrame:
     Returns
     -------
     pandas.DataFrame
-        ``status`` (``not applicable``, ``infeasible``, ``failed``, ``screened out``),
+        ``status`` (``not applicable``, ``infeasible``, ``failed``, ``screened out``, ``not run
+        yet``),
         ``reason`` (for screened-out rows the required screens that failed), ``rows``,
         ``ruled`` (True where the plan's author ruled the combination out).
     """

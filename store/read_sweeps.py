@@ -8,10 +8,12 @@ from typing import Any
 import pandas as pd
 
 from store.database import Database
-from store.errors import NotFound
+from store.errors import NotFound, NothingStored
 from store.schema import query
 
-__all__ = ["choices", "findings", "latest_sweep", "stored_rows", "sweep_info", "sweeps"]
+__all__ = [
+    "choices", "findings", "latest_sweep", "require_rows", "stored_rows", "sweep_info", "sweeps",
+]  # fmt: skip
 
 
 def sweeps(db: Database) -> pd.DataFrame:
@@ -20,8 +22,9 @@ def sweeps(db: Database) -> pd.DataFrame:
     Returns
     -------
     pandas.DataFrame
-        ``sweep, plan_digest, title, started, finished, significance, rows, findings``;
-        ``finished`` (universal time, like ``started``) is NaT where a run has not ended.
+        ``sweep, plan_digest, title, started, finished, significance, rows, findings,
+        planned``; ``finished`` (universal time, like ``started``) is NaT where a run has not
+        ended; ``rows`` are stored and ``planned`` are all there will be, requests included.
     """
     return db.frame(query("sweeps"))
 
@@ -74,6 +77,20 @@ def stored_rows(db: Database, sweep: int) -> int:
     return int(db.scalar("SELECT count(*) FROM outcome WHERE sweep = ?", [sweep]))
 
 
+def require_rows(db: Database, sweep: int) -> None:
+    """Refuse a sweep of which nothing is stored.
+
+    Raises
+    ------
+    NothingStored
+        A run was stopped before it stored anything.
+    """
+    if not db.execute("SELECT 1 FROM outcome WHERE sweep = ? LIMIT 1", [sweep]):
+        raise NothingStored(
+            f"{db.path}: nothing of sweep {sweep} is stored yet. Run the plan again to go on."
+        )
+
+
 def sweep_info(db: Database, sweep: int) -> dict[str, Any]:
     """Return what is recorded about a sweep.
 
@@ -82,7 +99,8 @@ def sweep_info(db: Database, sweep: int) -> dict[str, Any]:
     dict
         Every column of the table ``sweep`` (``data_note`` and ``versions`` as stored JSON
         text), ``finished`` (datetime or None), ``wall_seconds`` and ``counts`` of the last
-        run that ended (None and ``{}`` before), and ``rows`` stored.
+        run that ended (None and ``{}`` before), ``rows`` stored, and ``planned``: all there
+        will be, requests included.
 
     Raises
     ------
@@ -106,4 +124,5 @@ def sweep_info(db: Database, sweep: int) -> dict[str, Any]:
     info["wall_seconds"] = last.get("wall_seconds")
     info["counts"] = last.get("counts", {})
     info["rows"] = stored_rows(db, sweep)
+    info["planned"] = db.scalar("SELECT sum(planned + added) FROM finding WHERE sweep = ?", [sweep])
     return info

@@ -58,6 +58,9 @@ class FindingRecord:
         Numbers printed in the paper, where the plan gives them, in their printed digits.
     reported_observations, reported_tolerance : float or None
         Printed number of rows; difference that the plan allows, None for the rounding of each.
+    planned, added : int
+        Rows that the plan asks for, and rows that its requests add: what there will be once
+        the sweep has run to its end.
     """
 
     finding: int
@@ -78,6 +81,8 @@ class FindingRecord:
     reported_p_value: str | None = None
     reported_observations: float | None = None
     reported_tolerance: float | None = None
+    planned: int = 0
+    added: int = 0
 
 
 @dataclass(frozen=True, slots=True)
@@ -151,6 +156,8 @@ class SweepChoiceRecord:
     data_high, data_low : int
         On the axis measures, the digest of the values of the finding's series under this
         choice: rows are shared between sweeps only where it is equal.  0 on other axes.
+    planned : int
+        Rows of the plan that make the choice, those that requests add aside.
     """
 
     finding: int
@@ -169,6 +176,7 @@ class SweepChoiceRecord:
     request: int = 0
     data_high: int = 0
     data_low: int = 0
+    planned: int = 0
 
 
 @dataclass(frozen=True, slots=True)

@@ -49,7 +49,9 @@ CREATE TABLE finding (
     reported_statistic VARCHAR,  -- printed statistic of the baseline, in its digits; NULL where not given
     reported_p_value VARCHAR,  -- printed p-value, in its digits; NULL where not given
     reported_observations DOUBLE,  -- printed number of observations; NULL where not given
-    reported_tolerance DOUBLE  -- difference allowed in both; NULL for half a last digit of each
+    reported_tolerance DOUBLE,  -- difference allowed in both; NULL for half a last digit of each
+    planned INTEGER,  -- rows that the plan asks for, those that requests add aside
+    added INTEGER  -- rows that requests add
 );
 
 CREATE TABLE choice (
@@ -78,7 +80,8 @@ CREATE TABLE sweep_choice (
     length INTEGER,  -- periods in a moving window, the shortest if it grows; 0 otherwise
     request SMALLINT,  -- 0 for a choice of the plan, otherwise the request that first brought it
     data_high UBIGINT,  -- measures: digest of dates and values of their series, upper half; else 0
-    data_low UBIGINT  -- the same, lower half
+    data_low UBIGINT,  -- the same, lower half
+    planned INTEGER  -- rows of the plan that make the choice, those that requests add aside
 );
 
 CREATE TABLE window_position (

@@ -12,7 +12,7 @@ from typing import TYPE_CHECKING, Any
 
 from store import read
 from store.database import Database, open_reading
-from store.errors import NotFound
+from store.errors import NotFound, NothingStored
 from store.query import query_frame, query_stream
 from sweep.errors import Fault, InputFault
 from sweep.plan.choices import AXES
@@ -60,17 +60,43 @@ class Results:
     ) -> None:
         self.store = Path(store)
         self.run_report = report
-        with self._open() as database:
+        with open_reading(self.store) as database:
             self.sweep = read.latest_sweep(database) if sweep is None else sweep
             self.info = read.sweep_info(database, self.sweep)
             self.findings = read.findings(database, self.sweep)
 
     def _open(self) -> Database:
-        return open_reading(self.store)
+        """Open the store for a question on the sweep.
+
+        Raises
+        ------
+        store.errors.NothingStored
+            If a run was stopped before it stored anything.
+        """
+        database = open_reading(self.store)
+        try:
+            read.require_rows(database, self.sweep)
+        except NothingStored:
+            database.close()
+            raise
+        return database
+
+    @property
+    def unfinished(self) -> str:
+        """Say how much of the sweep is stored where that is not everything; else empty."""
+        stored, planned = int(self.info["rows"]), int(self.info["planned"] or 0)
+        if stored >= planned:
+            return ""
+        if not stored:
+            return "Nothing of this sweep is stored yet; run the plan again to go on."
+        return (
+            f"Unfinished: {stored:,} of {planned:,} specifications are stored; run the plan again "
+            "to go on. Shares and counts are of what is stored."
+        )
 
     def sweeps(self) -> pd.DataFrame:
         """Return one row for each sweep of the store, oldest first."""
-        with self._open() as database:
+        with open_reading(self.store) as database:
             return read.sweeps(database)
 
     def survival(self, by: str | None = None, finding: str | int | None = None) -> pd.DataFrame:
@@ -173,7 +199,7 @@ class Results:
             for row in lost[lost["ruled"].fillna(False).astype(bool)].itertuples():
                 ruled.append(f"{record['name']}: {row.rows:,} specifications, because {row.reason}")
         content = content_of(info, records, frames, ruled_out=ruled)
-        return replace(content, redundancies=tuple(same))
+        return replace(content, redundancies=tuple(same), unfinished=self.unfinished)
 
     def summary(self, content: ReportContent | None = None) -> list[tuple[str, list[str]]]:
         """Return, for each finding, its statement and the sentences that sum it up.
@@ -245,6 +271,8 @@ class Results:
         """
         from sweep.comparison import compare_sweeps, compare_windows
 
+        for results in (self, other or self):
+            results._open().close()  # refuses a sweep of which nothing is stored
         if other is None:
             return compare_windows(self, finding)
         return compare_sweeps(self, other, finding)
@@ -361,6 +389,7 @@ class Results:
         """
         from sweep.engine.verify import verify
 
+        self._open().close()  # refuses a sweep of which nothing is stored
         path = None if data is None else Path(data)
         return verify(self, rows, seed, path, tolerance, progress)
 
@@ -372,7 +401,12 @@ class Results:
             record = self._record(number)
             prefix = f"{int(record['baseline_high']):016x}{int(record['baseline_low']):016x}"
         with self._open() as database:
-            row = read.specification(database, self.sweep, prefix, number)
+            try:
+                row = read.specification(database, self.sweep, prefix, number)
+            except NotFound as error:
+                if not self.unfinished:
+                    raise
+                raise NotFound(f"{error} {self.unfinished}") from None
         return {str(key): value for key, value in row.iloc[0].items()}
 
     def details(self, specification: str, finding: str | int = 0) -> pd.DataFrame:
@@ -430,13 +464,15 @@ class Results:
 
     def __repr__(self) -> str:
         lines = [f"Sweep {self.sweep} of {self.store.name}: {self.info['title']}"]
-        for statement, sentences in self.summary():
+        lines += [self.unfinished] if self.unfinished else []
+        for statement, sentences in self.summary() if self.info["rows"] else []:
             lines += [f"  {statement}", *(f"    {sentence}" for sentence in sentences)]
         return "\n".join(lines)
 
     def _repr_html_(self) -> str:
         parts = [f"<p><strong>{html.escape(str(self.info['title']))}</strong></p>"]
-        for statement, sentences in self.summary():
+        parts += [f"<p><strong>{self.unfinished}</strong></p>"] if self.unfinished else []
+        for statement, sentences in self.summary() if self.info["rows"] else []:
             items = "".join(f"<li>{html.escape(sentence)}</li>" for sentence in sentences)
             parts.append(f"<p>{html.escape(statement)}</p><ul>{items}</ul>")
         return "".join(parts)

@@ -151,6 +151,7 @@ def _counts(rows: pd.DataFrame) -> dict[str, object]:
         "infeasible": int((rows["status"] == "infeasible").sum()),
         "failed": int((rows["status"] == "failed").sum()),
         "screened_out": int(rows["screened_out"].sum()),
+        "not_run": 0,
         "admissible": len(good),
         "survived": int(good["survives"].sum()),
         "other_sign": 0,

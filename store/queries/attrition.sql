@@ -32,9 +32,21 @@ named AS (
     LEFT JOIN names AS n ON n.mask = l.mask
     LEFT JOIN reason AS r ON r.code = l.reason
     GROUP BY ALL
+),
+absent AS (
+    SELECT f.planned - count(j.finding) AS rows
+    FROM finding AS f
+    LEFT JOIN judged AS j ON j.sweep = f.sweep AND j.finding = f.finding AND j.request = 0
+    WHERE f.sweep = $sweep AND f.finding = $finding
+    GROUP BY f.planned
 )
 SELECT status, reason, rows, ruled
-FROM named
+FROM (
+    FROM named
+    UNION ALL
+    SELECT 'not run yet', 'the run has not come to them', rows, FALSE FROM absent WHERE rows > 0
+)
 ORDER BY
-    list_position(['not applicable', 'infeasible', 'failed', 'screened out'], status),
+    list_position(
+        ['not applicable', 'infeasible', 'failed', 'screened out', 'not run yet'], status),
     rows DESC, reason;

@@ -1,5 +1,6 @@
 -- For each sweep, finding, axis and choice: what was counted and what survived.
 -- Only planned rows count (request 0).  The row of axis 'all' and choice 'all' is the overall one.
+-- planned is what the plan asks for; rows that an unfinished run has not come to are not_run.
 --
 -- Rows are grouped once, on codes and on how they count; every axis then sums the groups.
 -- headline_share = sum(weight * survived) / sum(weight * admissible); the weight is the same for
@@ -181,20 +182,29 @@ distincts AS (
                 ELSE r.measures END = c.code
     WHERE r.admissible
     GROUP BY c.sweep, c.finding, c.axis, c.code
+),
+wanted AS (
+    SELECT
+        sweep, finding, 'all' AS axis, 0 AS code, 'all' AS choice, 0 AS choice_position,
+        FALSE AS is_baseline, planned
+    FROM finding
+    UNION ALL
+    SELECT sweep, finding, axis, code, label, position, is_baseline, planned FROM sweep_choice
 )
 SELECT
-    s.sweep,
-    s.finding,
-    s.axis,
-    CASE WHEN s.axis = 'all' THEN 'all' ELSE c.label END AS choice,
-    s.code,
-    coalesce(c.position, 0) AS choice_position,
-    coalesce(c.is_baseline, FALSE) AS is_baseline,
-    s.planned::BIGINT AS planned,
+    w.sweep,
+    w.finding,
+    w.axis,
+    w.choice,
+    w.code,
+    w.choice_position,
+    w.is_baseline,
+    greatest(w.planned, coalesce(s.planned, 0))::BIGINT AS planned,
     coalesce(s.not_applicable, 0)::BIGINT AS not_applicable,
     coalesce(s.infeasible, 0)::BIGINT AS infeasible,
     coalesce(s.failed, 0)::BIGINT AS failed,
     coalesce(s.screened_out, 0)::BIGINT AS screened_out,
+    greatest(w.planned - coalesce(s.planned, 0), 0)::BIGINT AS not_run,
     coalesce(s.admissible, 0)::BIGINT AS admissible,
     coalesce(s.survived, 0)::BIGINT AS survived,
     coalesce(s.other_sign, 0)::BIGINT AS other_sign,
@@ -206,10 +216,11 @@ SELECT
     CASE WHEN s.weighted > 0 THEN coalesce(s.weighted_5, 0) / s.weighted END AS share_at_5,
     CASE WHEN s.weighted > 0 THEN coalesce(s.weighted_10, 0) / s.weighted END AS share_at_10,
     m.median_p_value
-FROM sums AS s
-LEFT JOIN sweep_choice AS c
-    ON c.sweep = s.sweep AND c.finding = s.finding AND c.axis = s.axis AND c.code = s.code
+FROM wanted AS w
+LEFT JOIN sums AS s
+    ON s.sweep = w.sweep AND s.finding = w.finding AND s.axis = w.axis AND s.code = w.code
 LEFT JOIN medians AS m
-    ON m.sweep = s.sweep AND m.finding = s.finding AND m.axis = s.axis AND m.code = s.code
+    ON m.sweep = w.sweep AND m.finding = w.finding AND m.axis = w.axis AND m.code = w.code
 LEFT JOIN distincts AS d
-    ON d.sweep = s.sweep AND d.finding = s.finding AND d.axis = s.axis AND d.code = s.code;
+    ON d.sweep = w.sweep AND d.finding = w.finding AND d.axis = w.axis AND d.code = w.code
+WHERE w.planned > 0 OR s.planned > 0;

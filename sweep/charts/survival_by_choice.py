@@ -49,6 +49,7 @@ def _losses(counts: Counts) -> str:
             (counts.infeasible, "infeasible"),
             (counts.failed, "failed"),
             (counts.screened_out, "screened out"),
+            (counts.not_run, "not run yet"),
         )
         if count
     ]

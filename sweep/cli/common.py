@@ -18,7 +18,7 @@ if TYPE_CHECKING:
 
 __all__ = [
     "FORMATS", "data_format", "plan_argument", "print_frame", "print_paragraphs", "print_summary",
-    "store_argument", "sweep_option",
+    "say_unfinished", "store_argument", "sweep_option",
 ]  # fmt: skip
 
 FORMATS = ("table", "csv", "json")
@@ -32,6 +32,12 @@ data_format = click.option(
     "--format", "form", type=click.Choice(FORMATS), default="table", show_default=True,
     help="How data are printed.",
 )  # fmt: skip
+
+
+def say_unfinished(results: Results) -> None:
+    """Say to standard error how much of a sweep is stored where that is not everything."""
+    if results.unfinished and results.info["rows"]:
+        click.echo(results.unfinished, err=True)
 
 
 def print_frame(frame: pd.DataFrame, form: str) -> None:

@@ -6,7 +6,7 @@ from pathlib import Path
 
 import click
 
-from sweep.cli.common import store_argument, sweep_option
+from sweep.cli.common import say_unfinished, store_argument, sweep_option
 
 
 @click.command()
@@ -20,5 +20,7 @@ def command(store: Path, folder: Path, sweep: int | None, only: str | None) -> N
     from sweep.api import open_results
     from sweep.engine.check import shown_path
 
-    for path in open_results(store, sweep).export(folder, only):
+    results = open_results(store, sweep)
+    say_unfinished(results)
+    for path in results.export(folder, only):
         click.echo(shown_path(path))

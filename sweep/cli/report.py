@@ -6,7 +6,7 @@ from pathlib import Path
 
 import click
 
-from sweep.cli.common import store_argument, sweep_option
+from sweep.cli.common import say_unfinished, store_argument, sweep_option
 
 
 @click.command()
@@ -20,6 +20,8 @@ def command(store: Path, sweep: int | None, output: Path | None, quiet: bool) ->
     from sweep.api import open_results
     from sweep.engine.check import shown_path
 
-    path = open_results(store, sweep).report(output)
+    results = open_results(store, sweep)
+    say_unfinished(results)
+    path = results.report(output)
     if not quiet:
         click.echo(f"Report: {shown_path(path)}", err=True)

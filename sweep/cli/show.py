@@ -6,7 +6,14 @@ from pathlib import Path
 
 import click
 
-from sweep.cli.common import data_format, print_frame, print_summary, store_argument, sweep_option
+from sweep.cli.common import (
+    data_format,
+    print_frame,
+    print_summary,
+    say_unfinished,
+    store_argument,
+    sweep_option,
+)
 from sweep.plan.choices import AXES
 
 
@@ -27,7 +34,9 @@ def command(
     results = open_results(store, sweep)
     if sweeps:
         print_frame(results.sweeps(), form)
-    elif by is None and form == "table":
+        return
+    say_unfinished(results)
+    if by is None and form == "table":
         print_summary(results, finding)
     else:
         frame = results.survival(by, finding)

@@ -172,13 +172,22 @@ class StoreSink:
             table.p_value,
             table.observations,
             table.tolerance,
+            int((self._asked(finding) == 0).sum()),
+            int((self._asked(finding) > 0).sum()),
         )
 
+    def _asked(self, finding: Finding) -> NDArray[np.int16]:
+        """Return, for each row of a finding, the request that asks for it, 0 for the plan."""
+        rows = self.prepared.rows
+        return np.compress(rows.finding == finding.number, rows.request)
+
     def _choices(self, finding: Finding) -> list[SweepChoiceRecord]:
-        plan = self.prepared.plan
+        plan, rows = self.prepared.plan, self.prepared.rows
+        mine = np.flatnonzero((rows.finding == finding.number) & (rows.request == 0))
         records = []
         for axis in AXES:
             held = plan.finding_axes[finding.number][axis]
+            planned = np.bincount(rows.codes[axis][mine], minlength=len(plan.axes[axis]))
             for place, code in enumerate(held.every):
                 choice = plan.axes[axis][code]
                 moving = choice.moving if isinstance(choice, WindowChoice) else ""
@@ -205,6 +214,7 @@ class StoreSink:
                         choice.length if isinstance(choice, WindowChoice) else 0,
                         plan.first_request(finding, axis, code),
                         *data,
+                        int(planned[code]),
                     )
                 )
         return records

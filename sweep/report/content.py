@@ -97,6 +97,8 @@ class ReportContent:
         Facts shown as two columns.
     plan_toml : str
         The plan's text.
+    unfinished : str
+        How much is stored where that is not everything; else empty.
     notes, cautions
         How the numbers are made, and what they do not say.
     """
@@ -111,6 +113,7 @@ class ReportContent:
     versions: Mapping[str, str] = field(default_factory=dict)
     hashes: Mapping[str, str] = field(default_factory=dict)
     plan_toml: str = ""
+    unfinished: str = ""
     notes: tuple[Note, ...] = METHOD_NOTES
     cautions: tuple[str, ...] = CAUTIONS
 
@@ -269,6 +272,7 @@ def content_of(
         "finished": info.get("finished"),
         "seconds": info.get("wall_seconds"),
         "rows stored": info.get("rows"),
+        "rows planned": info.get("planned"),
         "design": info.get("design"),
         "seed": info.get("seed"),
         "numerics": info.get("numerics"),

@@ -174,7 +174,8 @@ def _sections(report: ReportContent, drawn: list[dict[str, Figure]]) -> list[dic
             name: _tabled(module.build(finding.frames, finding.context), finding.context)
             for name, module in TABLES.items()
         }
-        choices = cube.chooser(finding.frames, finding.context)
+        # Counts of selections are of stored rows; while rows are missing there are none.
+        choices = cube.chooser(finding.frames, finding.context) if not report.unfinished else {}
         sections.append(
             {
                 "anchor": f"finding-{number}",

@@ -20,7 +20,7 @@ __all__ = ["Loss", "Stage", "sentences", "stages"]
 
 # What is lost after each stage but the last.
 _LOST_AFTER = {
-    "planned": ("not applicable",),
+    "planned": ("not run yet", "not applicable"),
     "applicable": ("infeasible", "failed"),
     "run": ("screened out",),
 }
@@ -35,7 +35,8 @@ class Loss:
     Attributes
     ----------
     name : str
-        ``not applicable``, ``infeasible``, ``failed``, ``screened out`` or ``does not survive``.
+        ``not run yet``, ``not applicable``, ``infeasible``, ``failed``, ``screened out`` or
+        ``does not survive``.
     reason : str
         Why, in words; may be empty.
     rows : int

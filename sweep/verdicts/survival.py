@@ -41,7 +41,8 @@ class Counts:
     Attributes
     ----------
     planned, not_applicable, infeasible, failed, screened_out, admissible, survived : int
-        Rows; planned = not applicable + infeasible + failed + screened out + admissible.
+        Rows; planned = not applicable + infeasible + failed + screened out + not run +
+        admissible.
     other_sign : int
         Rows that reject at the level but with the sign that was not claimed.
     distinct : int
@@ -52,6 +53,8 @@ class Counts:
         The same share were the level 1%, 5% or 10%.
     median_p : float or None
         Median p-value of the admissible rows.
+    not_run : int
+        Rows that an unfinished run has not come to.
     """
 
     planned: int
@@ -68,6 +71,7 @@ class Counts:
     at_5: float | None
     at_10: float | None
     median_p: float | None
+    not_run: int = 0
 
     @property
     def raw(self) -> float | None:
@@ -117,6 +121,7 @@ def counts_of(row: Any) -> Counts:
         at_5=_share(row["share_at_5"]),
         at_10=_share(row["share_at_10"]),
         median_p=_share(row["median_p_value"]),
+        not_run=_whole(row.get("not_run")),
     )
 
 
@@ -178,6 +183,7 @@ def losses_sentence(counts: Counts) -> str:
         (counts.infeasible, "infeasible"),
         (counts.failed, "failed"),
         (counts.screened_out, "screened out"),
+        (counts.not_run, "not run yet"),
     ]
     parts = [f"{count:,} {name}" for count, name in losses if count]
     if not parts:

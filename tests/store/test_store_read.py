@@ -20,8 +20,8 @@ FINDING = 1
 
 COLUMNS = {
     "survival": "sweep finding axis choice code choice_position is_baseline planned "
-    "not_applicable infeasible failed screened_out admissible survived other_sign distinct "
-    "raw_share headline_share share_at_1 share_at_5 share_at_10 median_p_value",
+    "not_applicable infeasible failed screened_out not_run admissible survived other_sign "
+    "distinct raw_share headline_share share_at_1 share_at_5 share_at_10 median_p_value",
     "attrition": "status reason rows ruled",
     "single_changes": "axis choice entry_kind positions rows_ok admissible survived flips "
     "flips_forward flips_reverse flips_sign p_value p_low p_high reverse_p_value z_change "
@@ -287,6 +287,7 @@ def test_sweeps_and_findings(filled: Filled) -> None:
     frame = read.sweeps(filled.db)
     assert list(frame.columns) == [
         "sweep", "plan_digest", "title", "started", "finished", "significance", "rows", "findings",
+        "planned",
     ]  # fmt: skip
     assert frame["findings"].tolist() == [9]
     assert frame["finished"].isna().all()

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Mapping
+from dataclasses import replace
 from typing import TYPE_CHECKING
 
 from sweep.verdicts.survival import OVERALL
@@ -29,6 +30,7 @@ _COLUMNS = (
     ("infeasible", Column("Infeasible", "count")),
     ("failed", Column("Failed", "count")),
     ("screened_out", Column("Screened out", "count")),
+    ("not_run", Column("Not run yet", "count")),
     ("admissible", Column("Admissible", "count")),
     ("survived", Column("Survived", "count")),
     ("other_sign", Column("Other sign", "count")),
@@ -50,9 +52,16 @@ def build(frames: Mapping[str, pd.DataFrame], context: Context) -> Table:
         if record["axis"] == OVERALL:
             record |= {"axis": "overall", "choice": "all choices"}
         rows.append(tuple(record[name] for name, _ in _COLUMNS))
+    unfinished = context.counts.not_run > 0
+    columns = [
+        # Readers of a finished sweep need no column of zeros.
+        replace(column, within=("data",)) if name == "not_run" and not unfinished else column
+        for name, column in _COLUMNS
+    ]
     notes = (
         f"{context.lead} Planned = not applicable + infeasible + failed + screened out + "
-        "admissible. Distinct: distinct computations among the admissible rows. Weighted share: "
+        f"{'not run yet + ' if unfinished else ''}admissible. Distinct: distinct computations "
+        "among the admissible rows. Weighted share: "
         "each row weighs 1 / (positions of its window entry) / (size of its test group). Other "
         "sign: significant, but not with the claimed sign. The columns at 1, 5 and 10% are the "
         f"weighted share were that the level. {context.losses}"
@@ -60,7 +69,7 @@ def build(frames: Mapping[str, pd.DataFrame], context: Context) -> Table:
     return Table(
         NAME,
         f"Survival by axis and choice: {context.statement}.",
-        tuple(column for _, column in _COLUMNS),
+        tuple(columns),
         tuple(rows),
         (notes,),
         grouped=True,
