@@ -22,10 +22,12 @@ if TYPE_CHECKING:
     import altair
     import pandas as pd
 
+    from sweep.charts.context import Context
     from sweep.comparison import Comparison
     from sweep.engine.explain import Explanation
     from sweep.engine.run import RunReport
     from sweep.engine.verify import Verification
+    from sweep.report.chart_files import DrawnChart
     from sweep.report.content import ReportContent
     from sweep.report.library import Library
     from sweep.report.tables import Table
@@ -138,34 +140,104 @@ class Results:
             return read.outcomes(database, self.sweep, columns, where)
 
     def chart(
-        self, name: str, finding: str | int | None = None, width: str = "wide"
+        self,
+        name: str,
+        finding: str | int | None = None,
+        width: str = "wide",
+        *,
+        axes: str | Sequence[str] | None = None,
+        scale: str | None = None,
     ) -> altair.LayerChart:
-        """Return a stability chart of one finding (the first if none is named).
+        """Return a stability chart of one finding.
 
         The chart is an object of altair's: save it, or change it.  A notebook shows it as a
         picture, without a network.
+
+        Parameters
+        ----------
+        name : str
+            Name of a chart (``sweep.charts.CHARTS``); hyphens may stand for its spaces.
+        finding : str, int or None
+            Name or number of a finding; the first if None.
+        width : str
+            ``wide`` (175 mm in print) or ``narrow`` (85 mm).
+        axes : str, sequence of str or None
+            Of ``two axes``: names of the two; the pair that acts together most if None.
+        scale : str or None
+            Of ``specification curve``: name of one scale, ``baseline`` for the baseline's, or
+            ``all``; the only scale there is or all of them if None.
+
+        Raises
+        ------
+        InputFault
+            If there is no such chart, width or option of it.
         """
-        from sweep.charts import CHARTS, chart
-        from sweep.charts.context import context_of
         from sweep.charts.render import altair_chart
 
-        if name not in CHARTS:
-            raise InputFault(
-                Fault("chart", f'no chart is called "{name}"' + suggestion(name, CHARTS))
-            )
+        drawn = self._drawn(name, finding, width, {"axes": axes, "scale": scale})
+        return altair_chart({**drawn.plain, "description": drawn.words})
+
+    def save_chart(
+        self,
+        name: str,
+        output: str | Path | None = None,
+        formats: Sequence[str] = (),
+        finding: str | int | None = None,
+        width: str = "wide",
+        *,
+        axes: str | Sequence[str] | None = None,
+        scale: str | None = None,
+    ) -> list[Path]:
+        """Write a stability chart into files, all of them or none, and return their paths.
+
+        Parameters
+        ----------
+        name, finding, width, axes, scale
+            As for :meth:`chart`.
+        output : str, Path or None
+            File, whose ending says how it is written where no formats are given; beside the
+            store, under its name and the chart's, if None.
+        formats : sequence of str
+            Any of ``svg``, ``pdf``, ``png``, ``html`` (opens offline, with numbers at the
+            pointer), ``json`` (the chart in the language of its values), ``csv`` (the numbers
+            behind it) and ``txt`` (the figure in words), or ``all``.
+
+        Raises
+        ------
+        InputFault
+            If there is no such chart, width, option or format, or a file cannot be written.
+        """
+        from sweep.charts import named
+        from sweep.report.chart_files import contents, targets
+        from sweep.writing import write_together
+
+        known = named(name)
+        default = self.store.with_name(f"{self.store.stem}-{known.replace(' ', '-')}")
+        files = targets(None if output is None else Path(output), formats, default)
+        drawn = self._drawn(known, finding, width, {"axes": axes, "scale": scale})
+        return write_together(contents(drawn, files))
+
+    def _drawn(
+        self, name: str, finding: str | int | None, width: str, options: dict[str, Any]
+    ) -> DrawnChart:
+        from sweep.charts import chart, named
+        from sweep.report.chart_files import draw_chart
+
+        known = named(name)
         number = self._number(0 if finding is None else finding)
-        module = chart(name)
-        frames = self._frames(number, (*module.NEEDS, "survival"))
-        context = context_of(
+        frames = self._frames(number, (*chart(known).NEEDS, "survival"))
+        return draw_chart(known, frames, self._context(number, frames), width, options)
+
+    def _context(self, number: int, frames: dict[str, pd.DataFrame]) -> Context:
+        from sweep.charts.context import context_of
+
+        return context_of(
             self._record(number), frames["survival"], significance=float(self.info["significance"]),
             title=str(self.info["title"]), design=str(self.info["design"]),
         )  # fmt: skip
-        described = {"description": module.describe(frames, context)}
-        return altair_chart({**module.build(frames, context, width), **described})
 
     def table(self, name: str, finding: str | int | None = None) -> Table:
         """Return a table of one finding (the first if none is named)."""
-        from sweep.charts.context import context_of
         from sweep.report.tables import TABLES
 
         if name not in TABLES:
@@ -174,11 +246,7 @@ class Results:
             )
         number = self._number(0 if finding is None else finding)
         frames = self._frames(number, (*TABLES[name].NEEDS, "survival"))
-        context = context_of(
-            self._record(number), frames["survival"], significance=float(self.info["significance"]),
-            title=str(self.info["title"]), design=str(self.info["design"]),
-        )  # fmt: skip
-        return TABLES[name].build(frames, context)
+        return TABLES[name].build(frames, self._context(number, frames))
 
     def content(self) -> ReportContent:
         """Return everything that the report and the summary are made from."""

@@ -21,6 +21,7 @@ COMMANDS = {
     "show": "Print the survival summary again, whole or by one axis.",
     "explain": "Show one specification in full, recomputed by the slow path.",
     "report": "Write the report as one HTML file that opens offline.",
+    "chart": "Write one figure as SVG, PDF, PNG, HTML, JSON or the numbers behind it.",
     "compare": "Set two sweeps, or the moving windows of one, side by side.",
     "export": "Write outcomes, survival and details as Parquet and CSV files.",
     "verify": "Recompute a sample of stored rows by two slow paths and compare.",

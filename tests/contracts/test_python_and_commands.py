@@ -38,6 +38,8 @@ OPTIONS = {
     ("run", "rules"): "a rule is for scripts that look at the exit code",
     ("show", "sweeps"): "Results.sweeps is its own method",
     ("schema", "output"): "Python returns the schema",
+    ("chart", "output"): "Results.save_chart writes files",
+    ("chart", "formats"): "Results.save_chart writes files",
     ("compare", "against"): "the other Results are those of a sweep already",
     ("compare", "part"): "the object that is returned has its parts as frames",
     ("compare", "output"): "the object that is returned writes its own page",
@@ -71,7 +73,8 @@ def parameters_of(name: str) -> dict[str, inspect.Parameter]:
 
 
 def command_parameters(name: str) -> dict[str, click.Parameter]:
-    return {str(item.name): item for item in command_of(name).params}
+    # An option that prints and leaves, such as --list, gives the command no value.
+    return {str(item.name): item for item in command_of(name).params if item.expose_value}
 
 
 def left_out(name: str, parameter: str) -> bool:
