@@ -187,7 +187,7 @@ def _statistic(fit: PlainFit, procedure: ProcedureChoice) -> tuple[float, float,
     s0, s1, q = fit.restricted_squares, fit.unrestricted_squares, fit.restrictions
     t, freedom = fit.observations, fit.observations - fit.regressors
     if procedure.covariance != "classical":
-        block = plain_robust(fit, procedure.covariance)[-q:, -q:]
+        block = plain_robust(fit, procedure.covariance)
         b = fit.lag_coefficients
         wald = float(b @ np.linalg.solve(block, b))
     else:

@@ -132,29 +132,36 @@ def plain_fit(effect: Floats, nuisance: Floats, restricted: Floats) -> PlainFit:
 
 
 def plain_robust(fit: PlainFit, covariance: str) -> Floats:
-    """Return the sandwich covariance of all coefficients, shape (k, k).
+    """Return the sandwich covariance of the cause's lag coefficients, shape (q, q).
 
-    White (1980); MacKinnon & White (1985): HC0, HC1, HC2, HC3.
+    White (1980); MacKinnon & White (1985): HC0, HC1, HC2, HC3.  An observation that the
+    nuisance regressors alone fit exactly, such as that of a pulse, says nothing of the
+    cause's lags and is left out of the sum.
 
     Raises
     ------
     ValueError
-        If HC2 or HC3 does not exist because an observation is fitted exactly.
+        If the covariance does not exist because the cause's lags take part in fitting an
+        observation exactly.
     """
-    design, t, k = fit.design, fit.observations, fit.regressors
-    size = np.sqrt((design**2).sum(axis=0))
-    left, singular, right = np.linalg.svd(design / size, full_matrices=False)
-    estimator = ((right.T / singular) @ left.T) / size[:, None]
+    t, k, q = fit.observations, fit.regressors, fit.restrictions
+    design = fit.design / np.sqrt((fit.design**2).sum(axis=0))
+    left, singular, right = np.linalg.svd(design, full_matrices=False)
+    estimator = ((right.T / singular) @ left.T)[-q:]
+    estimator /= np.sqrt((fit.design**2).sum(axis=0))[-q:, None]
     leverage = (left**2).sum(axis=1)
-    if covariance in ("HC2", "HC3") and leverage.max() > 1 - 1e-10:
+    exact = leverage > 1 - 1e-10
+    own = (np.linalg.qr(design)[0][:, k - q :] ** 2).sum(axis=1)
+    if own[exact].max(initial=0.0) > (1e-8 if covariance in ("HC0", "HC1") else 1e-20):
         raise ValueError("an observation is fitted exactly")
-    leverage = np.minimum(leverage, 1 - 1e-10)
+    room = 1 - np.where(exact, 0.0, leverage)
     weight = {
         "HC0": np.ones(t),
         "HC1": np.full(t, t / (t - k)),
-        "HC2": 1 / (1 - leverage),
-        "HC3": 1 / (1 - leverage) ** 2,
+        "HC2": 1 / room,
+        "HC3": 1 / room**2,
     }[covariance]
+    weight[exact] = 0.0
     return np.asarray((estimator * (weight * fit.residuals**2)) @ estimator.T)
 
 

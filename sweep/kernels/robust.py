@@ -26,7 +26,10 @@ COVARIANCES = ("HC0", "HC1", "HC2", "HC3")
 FULL_LEVERAGE = 1e-10
 """1 − h below which an observation counts as fitted exactly."""
 ROUNDING = 1e-8
-"""Share of the leverage below which the restricted block has no part in fitting a row."""
+"""Share of the leverage below which e² times the restricted block's part in a row is nothing."""
+NO_PART = 1e-20
+"""The same where e² is divided by (1 − h)²: the square of what 1e-11 in the factor leaves of a
+share that is zero, and so small that a row a million deviations off its prediction adds nothing."""
 SINGULAR = 1e-5
 """Smallest pivot of the unit-diagonal sandwich that still gives digits: its square over ε."""
 
@@ -150,9 +153,10 @@ def _orthonormal(columns: Floats, lower: Floats, by_qr: np.ndarray, k: int) -> F
 def _weight(name: str, leverage: Floats, own: Floats, k: int) -> tuple[Floats, np.ndarray]:
     """Return ω, shape (w, t), and where the covariance does not exist, shape (w,).
 
-    HC2 and HC3 divide by 1 − h.  HC0 and HC1 do not, but where the restricted block takes part
-    in fitting a row exactly (``own``, its share of the leverage, is not zero), the squared
-    residual of that row is rounding and nothing else.
+    Where the restricted block takes part in fitting a row exactly (``own``, its share of the
+    leverage, is not zero), the squared residual of that row is rounding and nothing else, and
+    HC2 and HC3 divide it by a 1 − h that is rounding too.  Where it takes no part, as in the
+    row of a pulse, the row adds ω e² Q_cᵀQ_c = 0 to the sandwich, and ω is put to 1.
     """
     room = 1.0 - leverage
     fitted = room < FULL_LEVERAGE
@@ -161,7 +165,8 @@ def _weight(name: str, leverage: Floats, own: Floats, k: int) -> tuple[Floats, n
         lost = np.any(fitted & (own > ROUNDING), axis=1)
         return np.full_like(leverage, scale), np.asarray(lost)
     room = np.where(fitted, 1.0, room)
-    return room ** (-1.0 if name == "HC2" else -2.0), np.asarray(np.any(fitted, axis=1))
+    lost = np.any(fitted & (own > NO_PART), axis=1)
+    return room ** (-1.0 if name == "HC2" else -2.0), np.asarray(lost)
 
 
 def _wald(middle: Floats, projection: Floats) -> Floats:

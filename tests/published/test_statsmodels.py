@@ -201,6 +201,38 @@ def test_deterministic_terms(series: dict[str, Array], tmp_path: Path, name: str
     agree(outcomes.iloc[0], *by_ols(series["y"], columns, terms, rows))
 
 
+@pytest.mark.parametrize("covariance", ["HC0", "HC1", "HC2", "HC3"])
+def test_a_pulse_is_its_row_left_out(
+    series: dict[str, Array], tmp_path: Path, covariance: str
+) -> None:
+    """A pulse fits its row exactly, so the sandwich is that of the regression without the row.
+
+    statsmodels divides 0 by 0 in that row under HC2 and HC3, so the row is dropped there; HC1
+    counts it in T on both sides.
+    """
+    terms: dict[str, Any] = {"trend": "linear trend", "pulses": ["1996-07", "2001-09"]}
+    entry = plans.procedure("Wald", covariance)
+    outcomes = sweep_drawn(
+        tmp_path, series, {}, {"given": ["z"]},
+        {"deterministics": terms, "lags": 3, "test": entry},
+    )  # fmt: skip
+    every = np.arange(3, ROWS)
+    rows = np.array([t for t in every if PERIODS[t] not in terms["pulses"]])
+    columns = {
+        "cause": lagged(series["x"], 3, rows),
+        "own": lagged(series["y"], 3, rows),
+        "given": lagged(series["z"], 3, rows),
+    }
+    terms_there = [np.ones(len(rows)), rows / ROWS]
+    wanted, _ = by_ols(series["y"], columns, terms_there, rows, covariance)
+    if covariance == "HC1":
+        wanted *= (len(rows) / (len(rows) - 11)) / (len(every) / (len(every) - 13))
+    row = outcomes.iloc[0]
+    assert row["status"] == row["reverse_status"] == "ok"
+    assert int(row["observations"]) == len(every)
+    assert float(row["statistic"]) == pytest.approx(3 * wanted, rel=1e-8)
+
+
 def test_without_an_episode(series: dict[str, Array], tmp_path: Path) -> None:
     """No row reaches into the episode, through its own date, a lag or a difference."""
     without = ["1996-01", "1997-06"]
