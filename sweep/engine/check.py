@@ -7,11 +7,14 @@ from dataclasses import dataclass
 from pathlib import Path
 
 import numpy as np
+from numpy.typing import NDArray
 
 from sweep.engine.cost import estimate_seconds
+from sweep.engine.filtered import filter_meets_episode
 from sweep.engine.prepare import Prepared, prepare
+from sweep.engine.reasons import REASONS, Reason
 from sweep.notebook import check_html, duration
-from sweep.plan.choices import AXES, WindowChoice
+from sweep.plan.choices import AXES
 from sweep.plan.model import Plan
 
 __all__ = ["Asked", "AxisSize", "Check", "RuledOut", "check_plan", "default_jobs"]
@@ -132,15 +135,17 @@ def check_plan(plan: Plan, *, jobs: int | None = None) -> Check:
     jobs = jobs or default_jobs()
     calendar = prepared.dataset.calendar
     rows = prepared.rows
+    filtered = filter_meets_episode(prepared) & (rows.rule < 0)
+    to_run = (rows.rule < 0) & ~filtered
     counts = []
     for finding in plan.findings:
         mine = (rows.finding == finding.number) & (rows.request == 0)
-        counts.append((finding.name, int(mine.sum()), int((mine & (rows.rule < 0)).sum())))
+        counts.append((finding.name, int(mine.sum()), int((mine & to_run).sum())))
     return Check(
         plan,
         tuple(_axes(prepared)),
         tuple(counts),
-        tuple(_ruled(prepared)),
+        tuple(_ruled(prepared, filtered)),
         prepared.notes,
         estimate_seconds(prepared, jobs),
         jobs,
@@ -184,7 +189,7 @@ def _axes(prepared: Prepared) -> list[AxisSize]:
     return sizes
 
 
-def _ruled(prepared: Prepared) -> list[RuledOut]:
+def _ruled(prepared: Prepared, filtered: NDArray[np.bool_]) -> list[RuledOut]:
     """Count what the plan's rules exclude, and filters that meet an episode."""
     plan, rows = prepared.plan, prepared.rows
     found = []
@@ -194,27 +199,9 @@ def _ruled(prepared: Prepared) -> list[RuledOut]:
             count = int((mine & (rows.rule == number)).sum())
             if count:
                 found.append(RuledOut(finding.name, count, rule.because))
-        episodes = np.array(
-            [isinstance(c, WindowChoice) and bool(c.without) for c in plan.axes["window"]]
-        )
-        filters = np.array(
-            [
-                "Hodrick-Prescott cycle"
-                in (getattr(c, "default", ""), *(kind for _, kind in getattr(c, "series", ())))
-                for c in plan.axes["transformation"]
-            ]
-        )
-        meets = episodes[rows.codes["window"]] & filters[rows.codes["transformation"]]
-        count = int((mine & meets & (rows.rule < 0)).sum())
+        count = int((mine & filtered).sum())
         if count:
-            found.append(
-                RuledOut(
-                    finding.name,
-                    count,
-                    "a Hodrick-Prescott filter uses every value of its window, so it does not go "
-                    "with an episode left out (where the filtered series is in the regression)",
-                )
-            )
+            found.append(RuledOut(finding.name, count, REASONS[Reason.FILTER_EPISODE][1]))
     return found
 
 

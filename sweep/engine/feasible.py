@@ -89,7 +89,8 @@ def _fits(plan: Plan, finding: Finding, lag: LagChoice, room: int) -> bool:
         given.append(len(finding.given) - len(choice.without))
     fixed = fewest_terms(plan) + sum(item.lags + 1 for item in finding.exogenous)
     own, cause, others = (lag.own, lag.cause, lag.given) if not lag.criterion else (1, 1, 1)
-    start = max([own, cause, others, lag.common, *(item.lags for item in finding.exogenous)])
+    unmodelled = (item.lags for item in finding.exogenous)
+    start = max([own, cause, others if min(given) else 0, lag.common, *unmodelled])
     regressors = fixed + own + cause + min(given) * others
     spare = FREEDOM_FOR_CRITERION if lag.criterion else 1
     return room - start - regressors >= spare

@@ -27,7 +27,7 @@ class Orders:
     Attributes
     ----------
     own, cause, given : ndarray of int, shape (w,)
-        0 where there is none.
+        0 where there is none; ``given`` is ``own`` in a system without given series.
     start : ndarray of int, shape (w,)
         Rows left out after the first usable one.
     reason : ndarray of int, shape (w,)
@@ -75,7 +75,9 @@ class OrderBook:
             chosen, reason[windows] = self._choose(system, choice, term, windows)
             own[windows] = cause[windows] = given[windows] = chosen
         else:
-            own[windows], cause[windows], given[windows] = choice.own, choice.cause, choice.given
+            own[windows], cause[windows] = choice.own, choice.cause
+            # Lags of series that are not there cost no rows and make no difference.
+            given[windows] = choice.given if system.given else choice.own
         start = np.maximum(np.maximum(own, cause), np.maximum(given, unmodelled))
         return Orders(own, cause, given, np.maximum(start, choice.common), reason)
 
@@ -86,6 +88,8 @@ class OrderBook:
         maximum, tables = self._table(system, choice, term, windows, moments, columns)
         chosen = np.zeros(windows.size, np.int64)
         reason = np.where(maximum == 0, Reason.SHORT_FOR_CRITERION, Reason.NONE).astype(np.int64)
+        series = [*system.modelled, *(column for column, _ in system.exogenous)]
+        reason[self._panel.blocked[windows][:, series].any(axis=1)] = Reason.FILTER_EPISODE
         width = len(system.modelled)
         fixed = columns.size + sum(lags + 1 for _, lags in system.exogenous)
         equations = width if choice.scope == "system" else 1

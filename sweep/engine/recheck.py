@@ -127,7 +127,7 @@ def _direction(
     orders, table = _orders(choice, system, values, terms, bounds)
     own, cause, given = orders
     unmodelled = max((lags for _, lags in system.exogenous), default=0)
-    start = max(own, cause, given, unmodelled, choice.common)
+    start = max(own, cause, given if system.given else 0, unmodelled, choice.common)
     series = [(values[:, c], 0, lags) for c, lags in system.exogenous]
     series.append((values[:, system.effect], 1, own))
     series += [(values[:, c], 1, given) for c in system.given]

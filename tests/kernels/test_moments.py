@@ -183,8 +183,8 @@ def test_a_row_of_its_own_term_does_not_count(source: str) -> None:
         # Without the row and its pulse: the same coefficients, residuals and leverages.
         short = plain_fit(rest[:, k], rest[:, [0, 1, *range(3, k - 4)]], rest[:, k - 4 : k])
         for name in ("HC0", "HC2", "HC3"):
-            b = slow.lag_coefficients
-            wald = float(b @ np.linalg.solve(plain_robust(slow, name), b))
+            lags = slow.lag_coefficients
+            wald = float(lags @ np.linalg.solve(plain_robust(slow, name), lags))
             assert robust[name].wald[w, 0] == pytest.approx(wald, rel=1e-7)
             np.testing.assert_allclose(plain_robust(short, name), plain_robust(slow, name), 1e-7)
 

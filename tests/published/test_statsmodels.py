@@ -163,6 +163,28 @@ def test_own_and_cause_orders(
         agree(row, *by_ols(series["y"], columns, [np.ones(len(rows))], rows, kind))
 
 
+def test_lags_of_a_given_series_that_is_not_there_cost_no_rows(
+    series: dict[str, Array], tmp_path: Path
+) -> None:
+    """Pairwise, { own = 2, cause = 2, given = 5 } is order 2; with z it starts at row 5."""
+    axes = {
+        "lags": [2, {"own": 2, "cause": 2, "given": 5, "name": "longer"}],
+        "conditioning": ["given", "pairwise"],
+    }
+    outcomes = sweep_drawn(tmp_path, series, axes, {"given": ["z"]}, {"lags": 2})
+    outcomes = outcomes.set_index(["conditioning", "lags_choice"])
+    pair = outcomes.loc["pairwise"]
+    assert pair["computation"].nunique() == pair["p_value"].nunique() == 1
+    for conditioning, start in (("pairwise", 2), ("given", 5)):
+        rows = np.arange(start, ROWS)
+        columns = {"cause": lagged(series["x"], 2, rows), "own": lagged(series["y"], 2, rows)}
+        if conditioning == "given":
+            columns["given"] = lagged(series["z"], 5, rows)
+        row = outcomes.loc[(conditioning, "longer")]
+        assert int(row["observations"]) == len(rows)
+        agree(row, *by_ols(series["y"], columns, [np.ones(len(rows))], rows))
+
+
 def deterministic_terms(rows: Array) -> dict[str, tuple[Any, list[Array]]]:
     """Return choices of deterministic terms and the columns that they mean."""
     one, time = np.ones(len(rows)), rows / ROWS
