@@ -7,7 +7,6 @@ from dataclasses import dataclass, replace
 from pathlib import Path
 
 import numpy as np
-from numpy.typing import NDArray
 
 from sweep.engine.feasible import shortest_faults
 from sweep.errors import Fault, InputFault
@@ -21,6 +20,7 @@ from sweep.panel.load import (
     missing_faults,
     positive_faults,
     read_dataset,
+    values_digest,
 )
 from sweep.panel.transforms import TRANSFORMS
 from sweep.panel.windows import Positions, WindowRequest, resolve_window
@@ -311,11 +311,10 @@ def _window_notes(plan: Plan, windows: tuple[Mapping[int, Positions], ...]) -> l
 
 def _measure_notes(dataset: Dataset) -> list[str]:
     """Name columns that hold the same values."""
-    seen: dict[bytes, str] = {}
+    seen: dict[str, str] = {}
     notes = []
     for name in dataset.names:
-        values: NDArray[np.float64] = np.ascontiguousarray(dataset.column(name))
-        key = values.tobytes()
+        key = values_digest(dataset, name)
         if key in seen:
             notes.append(f'The columns "{seen[key]}" and "{name}" hold the same values.')
         seen.setdefault(key, name)

@@ -13,6 +13,7 @@ from sweep.plan.document import PlanDocument
 from sweep.plan.model import Finding, FindingAxis, Plan
 from sweep.plan.requests import build_requests
 from sweep.plan.suggest import suggestion
+from sweep.plan.twins import twin_notes
 
 __all__ = ["build_plan"]
 
@@ -45,11 +46,11 @@ def build_plan(document: PlanDocument, text: str, path: Path) -> Plan:
     _check_reported(builder, findings)
     if builder.faults:
         raise InputFault(*builder.faults)
-    builder.construction_notes()
     axes = {axis: tuple(builder.axes[axis].choices) for axis in AXES}
+    notes = (*builder.notes, *twin_notes(axes, findings, builder.frequency))
     plan = Plan(
         path, text, document, builder.frequency, findings, axes, finding_axes, rules,
-        tuple(dict.fromkeys(builder.notes)), requests,
+        tuple(dict.fromkeys(notes)), requests,
     )  # fmt: skip
     _check_baseline(plan)
     return plan

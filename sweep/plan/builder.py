@@ -11,7 +11,7 @@ from sweep.errors import Fault
 from sweep.panel.periods import FREQUENCIES
 from sweep.plan import build
 from sweep.plan.canonical import Token, token
-from sweep.plan.choices import AXES, Choice, LagChoice, TransformationChoice
+from sweep.plan.choices import AXES, Choice, TransformationChoice
 from sweep.plan.document import (
     AXIS_KEYS,
     DeterministicEntry,
@@ -295,22 +295,3 @@ class PlanBuilder:
                         f'"{choice.label}" names the series "{name}", which no finding uses'
                         + suggestion(name, known),
                     )
-
-    def construction_notes(self) -> None:
-        """Name choices that give the same numbers whatever the data."""
-        from sweep.panel.transforms import TRANSFORMS
-
-        scales = {c.label: c for c in self.axes["transformation"].choices}
-        for choice in scales.values():
-            assert isinstance(choice, TransformationChoice)
-            twin = TRANSFORMS[choice.default].equals(self.frequency)
-            if not choice.series and twin in scales:
-                self.notes.append(
-                    f'"{choice.label}" and "{twin}" give the same numbers in '
-                    f"{self.frequency.name} data."
-                )
-        lags = [c for c in self.axes["lags"].choices if isinstance(c, LagChoice)]
-        ones = [c.label for c in lags if c.criterion and c.maximum == 1]
-        fixed = [c.label for c in lags if c.own == c.cause == c.given == 1 and not c.common]
-        if ones and fixed:
-            self.notes.append(f"{' and '.join(ones)} can only choose 1 lag, as {fixed[0]} does.")
