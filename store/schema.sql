@@ -127,7 +127,7 @@ CREATE TABLE outcome (
     finding SMALLINT,  -- finding
     spec_high UBIGINT,  -- specification, upper half
     spec_low UBIGINT,  -- the same, lower half
-    computation UBIGINT,  -- digest of what was really computed
+    computation UBIGINT,  -- digest of what was really computed; 0 where nothing was
     request SMALLINT,  -- 0 planned, otherwise the request that first asked for the row
     lags SMALLINT,  -- code of the lag choice
     deterministics SMALLINT,  -- code of the deterministic terms
@@ -138,9 +138,9 @@ CREATE TABLE outcome (
     conditioning SMALLINT,  -- code of the conditioning choice
     measures SMALLINT,  -- code of the measures
     order_used SMALLINT,  -- lag order of the cause, in periods; NULL where nothing was estimated
-    observations INTEGER,  -- rows in the regression
+    observations INTEGER,  -- rows in the regression; NULL where nothing was estimated
     statistic DOUBLE,  -- statistic of cause to effect
-    df_num SMALLINT,  -- restrictions
+    df_num SMALLINT,  -- restrictions; NULL where nothing was estimated
     df_den INTEGER,  -- denominator degrees of freedom; NULL for a chi-square reference
     p_value DOUBLE,  -- p-value of cause to effect, in [0, 1]
     coefficient_sum DOUBLE,  -- sum of the tested lag coefficients, units of effect per unit of cause

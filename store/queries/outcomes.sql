@@ -49,7 +49,7 @@ SELECT
     j.reverse_p_value,
     j.reverse_coefficient_sum,
     q.name AS request,
-    j.computation,
+    nullif(j.computation, 0) AS computation,
     CASE j.solver WHEN 1 THEN 'cholesky' WHEN 2 THEN 'qr' WHEN 3 THEN 'library'
                   ELSE 'none' END AS solver,
     CASE j.reverse_status WHEN 0 THEN 'ok' WHEN 1 THEN 'not applicable' WHEN 2 THEN 'infeasible'

@@ -7,7 +7,7 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import NDArray
 
-from sweep.engine.digest import computation_digest, window_words
+from sweep.engine.digest import Digests
 from sweep.engine.fits import Equation, FitBook, Fitted
 from sweep.engine.orders import OrderBook, Orders
 from sweep.engine.panel import TaskPanel
@@ -22,6 +22,9 @@ __all__ = ["compute_task"]
 
 Floats = NDArray[np.float64]
 Ints = NDArray[np.int64]
+
+NO_NUMBER = -1
+"""Stands for a whole number that does not exist; the store has NULL there."""
 
 _STATUS_OF_REASON = np.zeros(max(Reason) + 1, np.int8)
 for _reason, (_status, _) in REASONS.items():
@@ -126,7 +129,7 @@ class _Sheet:
         self.numbers = {name: np.full(count, np.nan) for name in _NUMBERS}
         self.integers = {name: np.zeros(count, np.int64) for name in _INTEGERS}
         self.computation = np.zeros(count, np.uint64)
-        self.windows = window_words(task)
+        self.digests = Digests(task)
         self.coefficients: list[LagCoefficients] = []
 
     def mark(self, group: _Group) -> None:
@@ -161,8 +164,8 @@ class _Sheet:
             self.integers["order_used"][rows] = forward.orders[1]
             self._effect_size(rows, window, choice, ahead)
             self.numbers["reverse_coefficient_sum"][rows] = back.coefficient_sum[window]
-            self.computation[rows] = computation_digest(
-                task, forward, backward, choice, self.windows[window]
+            self.computation[rows] = self.digests.of(
+                (forward, ahead), (backward, back), choice, window
             )
             wanted = task.coefficients[rows]
             if wanted.any():
@@ -245,8 +248,10 @@ class _Sheet:
         back = self.integers["reverse_status"] != Status.OK
         self.numbers["reverse_coefficient_sum"][back] = np.nan
         self.numbers["df_den"][bad] = np.nan
+        self.computation[bad & back] = 0
         integers = self.integers
-        integers["df_num"][bad] = 0
+        for name in ("order_used", "observations", "df_num"):
+            integers[name][bad] = NO_NUMBER
         return Outcome(
             row=self.task.row,
             computation=self.computation,

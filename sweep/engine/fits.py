@@ -15,6 +15,7 @@ from sweep.engine.task import System
 from sweep.kernels.layout import Gram, Layout, Moments
 from sweep.kernels.robust import RobustFit, robust_stack
 from sweep.kernels.stacks import Flag, Regression, StackFit, fit_stack
+from sweep.kernels.words import Words
 
 __all__ = ["Equation", "FitBook", "Fitted"]
 
@@ -64,10 +65,16 @@ class Equation:
         return cls(effect, cause, system.modelled, system.exogenous, orders, start, term)
 
     @property
+    def effects(self) -> tuple[int, ...]:
+        """Series whose equations have these regressors: all but the cause if lags are alike."""
+        own, _, given = self.orders
+        if own != given:
+            return (self.effect,)
+        return tuple(column for column in self.modelled if column != self.cause)
+
+    @property
     def right_hand_side(self) -> tuple[object, ...]:
         """What equations with the same regressors have in common."""
-        own, _, given = self.orders
-        shared = () if own == given else (self.effect,)
         return (
             self.cause,
             self.modelled,
@@ -75,7 +82,7 @@ class Equation:
             self.orders,
             self.start,
             self.term,
-            shared,
+            self.effects,
         )
 
     def reach(self) -> dict[int, int]:
@@ -116,6 +123,8 @@ class Fitted:
         Coefficient sum times sd(cause)/sd(effect) on the regression's rows.
     solver, reason : ndarray of int, shape (w,)
     exact_row : ndarray of bool, shape (w,)
+    rows : ndarray of uint64, shape (w,)
+        Digest of the rows that were used.
     lag_values : ndarray, shape (w, q), or (w, 0) where single lags were not asked for
     lag_errors : mapping of covariance to ndarray, shape (w, q)
     """
@@ -132,6 +141,7 @@ class Fitted:
     solver: Ints
     reason: Ints
     exact_row: NDArray[np.bool_]
+    rows: Words
     lag_values: Floats
     lag_errors: dict[str, Floats]
 
@@ -198,11 +208,7 @@ class FitBook:
         gram = moments.gram(windows, layout, equation.start)
         for request in requests:
             inside = np.flatnonzero(request.windows[windows])
-            part = gram
-            if inside.size != windows.size:
-                part = Gram(
-                    gram.products[inside], gram.cancellation[inside], gram.observations[inside]
-                )
+            part = gram if inside.size == windows.size else gram.part(inside)
             self._fit_request(request, moments, part, windows[inside], layout)
 
     def _fit_request(
@@ -210,7 +216,10 @@ class FitBook:
     ) -> None:
         equation = request.equation
         assert equation is not None
-        effects = sorted(request.effects)
+        # All effects that could share the regressors, asked for or not: the digits of one must
+        # not depend on which others are in the task.
+        effects = list(equation.effects)
+        wanted = [position for position, e in enumerate(effects) if e in request.effects]
         _, columns = self._panel.moments(equation.term)
         regression = _regression(equation, effects, columns, layout)
         fit = fit_stack(moments, gram, windows, layout, equation.start, regression)
@@ -218,25 +227,29 @@ class FitBook:
         robust: dict[str, RobustFit] = {}
         names = sorted(request.covariances - {"classical"})
         if names:
-            robust = robust_stack(moments, windows, layout, equation.start, regression, fit, names)
-        for position, effect in enumerate(effects):
+            robust = robust_stack(
+                moments, windows, layout, equation.start, regression, fit, names, wanted
+            )
+        for position in wanted:
+            effect = effects[position]
             key = Equation(
                 effect, equation.cause, equation.modelled, equation.exogenous, equation.orders,
                 equation.start, equation.term,
             )  # fmt: skip
             unit = moments.scale[windows, effect] / moments.scale[windows, equation.cause]
             self._fitted[key] = self._spread_out(
-                fit, robust, position, unit, windows, reason, single_lags=request.single_lags
-            )
+                fit, robust, position, unit, windows, reason[:, position], gram.rows,
+                single_lags=request.single_lags,
+            )  # fmt: skip
 
     def _reasons(
         self, equation: Equation, gram: Gram, windows: Ints, columns: Ints, fit: StackFit
     ) -> Ints:
-        """Say why a window has no numbers; a filter or a term comes before a poor matrix."""
-        reason = _REASON_OF_FLAG[fit.flag]
+        """Say why a window has no numbers, (w, e); a filter or a term goes before a poor matrix."""
+        reason: Ints = _REASON_OF_FLAG[fit.flag]
         terms = self._panel.task.terms[equation.term]
         if any(term.kind in _SPECIAL_TERMS for term in terms):
-            enough = fit.flag != Flag.TOO_FEW_ROWS
+            enough = (fit.flag != Flag.TOO_FEW_ROWS).all(axis=1)
             idle = enough & ~term_space(gram.products[:, columns[:, None], columns])
             reason[idle] = Reason.TERM
         series = list(equation.reach())
@@ -251,6 +264,7 @@ class FitBook:
         unit: Floats,
         windows: Ints,
         reason: Ints,
+        rows: Words,
         *,
         single_lags: bool,
     ) -> Fitted:
@@ -267,6 +281,8 @@ class FitBook:
         for name, result in robust.items():
             errors[name] = wide(result.coefficient_sum_error[:, position] * unit)
             exact[windows] |= result.exact_row
+        words = np.zeros(count, np.uint64)
+        words[windows] = rows
         lag_values, lag_errors = np.empty((count, 0)), {}
         if single_lags:
             values, error = fit.lag_coefficients(position)
@@ -288,6 +304,7 @@ class FitBook:
             solver=wide(fit.solver, 0).astype(np.int64),
             reason=wide(reason, Reason.TOO_FEW_ROWS).astype(np.int64),
             exact_row=exact,
+            rows=words,
             lag_values=lag_values,
             lag_errors=lag_errors,
         )

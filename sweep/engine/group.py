@@ -11,8 +11,7 @@ from numpy.typing import NDArray
 from sweep.engine.cost import task_seconds
 from sweep.engine.prepare import Prepared
 from sweep.engine.task import Scale, System, Task
-from sweep.panel.deterministics import Term
-from sweep.panel.load import data_digest
+from sweep.panel.load import values_digest
 from sweep.panel.transforms import TRANSFORMS
 from sweep.panel.windows import Positions
 from sweep.plan.choices import (
@@ -127,7 +126,7 @@ def _task(
     )  # fmt: skip
     used = {axis: np.unique(rows.codes[axis][members]) for axis in AXES}
     terms = tuple(prepared.terms[int(c)] for c in used["deterministics"])
-    windows = _window_rows(prepared, members, scales, terms)
+    windows = _window_rows(prepared, members, scales)
     systems, system = _systems(prepared, members, names)
     season = calendar.season(np.arange(len(calendar)))
     values = np.column_stack([prepared.dataset.column(name) for name in names])
@@ -141,6 +140,7 @@ def _task(
         last=windows.last,
         episodes=windows.episodes,
         block=windows.block,
+        unequal=windows.unequal,
         spans=windows.spans,
         systems=systems,
         lags=tuple(_lag(plan.axes["lags"][c]) for c in used["lags"]),
@@ -155,7 +155,7 @@ def _task(
         procedure=np.searchsorted(used["test"], rows.codes["test"][members]).astype(np.int16),
         window=windows.window,
         coefficients=details[members],
-        tokens=_column_tokens(prepared, names, scales),
+        tokens=tuple(values_digest(prepared.dataset, name) for name in names),
         cost=cost,
     )
 
@@ -176,16 +176,12 @@ class _Windows:
     last: Ints
     episodes: tuple[tuple[tuple[int, int], ...], ...]
     block: Ints
+    unequal: NDArray[np.bool_]
     spans: dict[int, tuple[int, int]]
     window: NDArray[np.int32]
 
 
-def _window_rows(
-    prepared: Prepared,
-    members: Ints,
-    scales: tuple[Scale, ...],
-    terms: tuple[tuple[Term, ...], ...],
-) -> _Windows:
+def _window_rows(prepared: Prepared, members: Ints, scales: tuple[Scale, ...]) -> _Windows:
     """Return the windows of a task, the running sums that serve them, and each row's window."""
     rows = prepared.rows
     found = prepared.windows[int(rows.finding[members[0]])]
@@ -194,11 +190,10 @@ def _window_rows(
     kinds, window = np.unique(key, return_inverse=True)
     code, position = kinds // longest, kinds % longest
     first, last = np.empty_like(kinds), np.empty_like(kinds)
-    block = np.full(kinds.size, -1, np.int64)
+    block, unequal = np.full(kinds.size, -1, np.int64), np.zeros(kinds.size, bool)
     spans: dict[int, tuple[int, int]] = {}
     episodes: list[tuple[tuple[int, int], ...]] = [()] * kinds.size
     local = all(TRANSFORMS[scale.name].kind == "local" for scale in scales)
-    fourier = any(term.kind == "sine" for choice in terms for term in choice)
     for entry in np.unique(code).tolist():
         here = np.flatnonzero(code == entry)
         positions: Positions = found[entry]
@@ -208,13 +203,15 @@ def _window_rows(
             episodes[w] = positions.episodes
         choice = prepared.plan.axes["window"][entry]
         assert isinstance(choice, WindowChoice)
-        unequal = choice.moving in ("expanding", "shrinking")
-        if choice.moving and local and not positions.episodes and not (fourier and unequal):
+        unequal[here] = choice.moving in ("expanding", "shrinking")
+        if choice.moving and local and not positions.episodes:
             number = position[here] // _block_limit(choice)
             block[here] = entry * 2**32 + number
             for b in np.unique(number).tolist():
                 spans[entry * 2**32 + b] = _block_span(positions, b, _block_limit(choice))
-    return _Windows(first, last, tuple(episodes), block, spans, window.reshape(-1).astype(np.int32))
+    return _Windows(
+        first, last, tuple(episodes), block, unequal, spans, window.reshape(-1).astype(np.int32)
+    )
 
 
 def _block_span(positions: Positions, block: int, limit: int) -> tuple[int, int]:
@@ -259,13 +256,3 @@ def _systems(
             )
         )
     return tuple(systems), system.reshape(-1).astype(np.int16)
-
-
-def _column_tokens(
-    prepared: Prepared, names: list[str], scales: tuple[Scale, ...]
-) -> tuple[str, ...]:
-    tokens = []
-    for name, scale in zip(names, scales, strict=True):
-        high, low = data_digest(prepared.dataset, [name])
-        tokens.append(f"{high:016x}{low:016x} {scale.name} {scale.smoothing} {scale.horizon}")
-    return tuple(tokens)

@@ -22,7 +22,11 @@ Ints = NDArray[np.int64]
 
 
 class TaskPanel:
-    """Moments of a task, built once for regressions with a constant and once for those without.
+    """Moments of a task, built once for each of a few kinds of deterministic terms.
+
+    Regressions with a constant may subtract means, those without may not.  Fourier terms have
+    the window's length as period, so running sums cannot serve windows of unequal length; the
+    other choices of terms keep them.
 
     Parameters
     ----------
@@ -35,28 +39,34 @@ class TaskPanel:
         exogenous = [lags for system in task.systems for _, lags in system.exogenous]
         self.lags = max([1, *orders, *exogenous])
         self._local: Floats | None = None
-        self._built: dict[bool, tuple[Moments, tuple[Term, ...]]] = {}
+        self._built: dict[tuple[bool, bool], tuple[Moments, tuple[Term, ...]]] = {}
         self.blocked = _filter_meets_episode(task)
 
     def moments(self, term: int) -> tuple[Moments, Ints]:
         """Return the moments for one choice of terms and its columns in their layout."""
         wanted = self.task.terms[term]
-        centre = CONSTANT in wanted
-        if centre not in self._built:
-            self._built[centre] = self._build(centre)
-        moments, terms = self._built[centre]
+        kind = self._kind(wanted)
+        if kind not in self._built:
+            self._built[kind] = self._build(kind)
+        moments, terms = self._built[kind]
         return moments, np.array([terms.index(item) for item in wanted], dtype=np.int64)
 
-    def _build(self, centre: bool) -> tuple[Moments, tuple[Term, ...]]:
-        task = self.task
-        groups = [terms for terms in task.terms if (CONSTANT in terms) == centre]
+    def _kind(self, terms: tuple[Term, ...]) -> tuple[bool, bool]:
+        """Say whether there is a constant, and whether unequal windows go through their rows."""
+        fourier = any(term.kind == "sine" for term in terms)
+        return CONSTANT in terms, fourier and bool(self.task.unequal.any())
+
+    def _build(self, kind: tuple[bool, bool]) -> tuple[Moments, tuple[Term, ...]]:
+        task, (centre, by_rows) = self.task, kind
+        groups = [terms for terms in task.terms if self._kind(terms) == kind]
         every = sorted({item for terms in groups for item in terms} - {CONSTANT})
         terms = (CONSTANT, *every)  # column 0 is the constant, wanted or not, for the means
         parts: list[tuple[Moments, Ints]] = []
-        for block in np.unique(task.block[task.block >= 0]):
-            numbers = np.flatnonzero(task.block == block)
+        served = (task.block >= 0) & ~(task.unequal & by_rows)
+        for block in np.unique(task.block[served]):
+            numbers = np.flatnonzero(served & (task.block == block))
             parts.append((self._running(int(block), numbers, terms, centre), numbers))
-        alone = np.flatnonzero(task.block < 0)
+        alone = np.flatnonzero(~served)
         if alone.size:
             windows = [self._window(w, terms) for w in alone.tolist()]
             parts.append((RowMoments(windows, centre=centre), alone))
@@ -84,7 +94,7 @@ class TaskPanel:
         context = TermContext(
             rows, task.season[rows], task.seasons, (rows[0] + rows[-1]) / 2, half, float(rows.size)
         )
-        return WindowRows(values, term_columns(terms, context), exists)
+        return WindowRows(values, term_columns(terms, context), exists, int(rows[0]))
 
 
 def _block_terms(task: Task, terms: Sequence[Term], span: tuple[int, int], period: float) -> Floats:

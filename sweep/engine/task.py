@@ -69,6 +69,8 @@ class Task:
         Episodes left out of each window.
     block : ndarray of int, shape (w,)
         Which running sums serve the window, -1 where its own rows do.
+    unequal : ndarray of bool, shape (w,)
+        Windows of an expanding or shrinking entry, which differ in length.
     spans : mapping of block to (int, int)
         Calendar rows that each block's running sums cover.
     systems, lags, terms, procedures : tuple
@@ -80,7 +82,7 @@ class Task:
     coefficients : ndarray of bool, shape (s,)
         Rows whose single lag coefficients are wanted.
     tokens : tuple of str, length m
-        Digest of each column's values and scale, for the digest of a computation.
+        Digest of each column's raw values, for the digest of a computation.
     cost : float
         Estimated seconds.
     """
@@ -94,6 +96,7 @@ class Task:
     last: Ints
     episodes: tuple[tuple[tuple[int, int], ...], ...]
     block: Ints
+    unequal: NDArray[np.bool_]
     spans: dict[int, tuple[int, int]]
     systems: tuple[System, ...]
     lags: tuple[LagChoice, ...]

@@ -15,6 +15,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from sweep.kernels.layout import Floats, Gram, Ints, Layout
+from sweep.kernels.words import row_words
 
 __all__ = ["RunningMoments"]
 
@@ -92,7 +93,8 @@ class RunningMoments:
         diagonal = np.einsum("wcc->wc", products)
         total = np.einsum("wcc->wc", upper)
         ratio = np.divide(total, diagonal, out=np.full_like(total, np.inf), where=diagonal > 0)
-        return Gram(products, np.maximum(ratio, 1.0), count)
+        words = row_words(first + self.low, last + self.low - 1)
+        return Gram(products, np.maximum(ratio, 1.0), count, words)
 
     def design(self, select: Ints, layout: Layout, start: int) -> list[tuple[Ints, Floats]]:
         """Return (positions in ``select``, rows (w, t, c)) in groups of equal length."""

@@ -93,11 +93,21 @@ class Gram:
         Running sum's diagonal over the window's: 1 where nothing cancels.
     observations : ndarray, shape (w,)
         Regression rows T.
+    rows : ndarray of uint64, shape (w,)
+        Digest of the calendar rows that were summed over, equal where they are the same.
     """
 
     products: Floats
     cancellation: Floats
     observations: Ints
+    rows: NDArray[np.uint64]
+
+    def part(self, inside: Ints) -> Gram:
+        """Return some of the windows."""
+        return Gram(
+            self.products[inside], self.cancellation[inside], self.observations[inside],
+            self.rows[inside],
+        )  # fmt: skip
 
 
 class Moments(Protocol):

@@ -64,6 +64,7 @@ def robust_stack(
     regression: Regression,
     fit: StackFit,
     covariances: Sequence[str],
+    effects: Sequence[int] | None = None,
 ) -> dict[str, RobustFit]:
     """Return heteroskedasticity-consistent Wald statistics for every covariance asked for.
 
@@ -75,6 +76,8 @@ def robust_stack(
         Its result; windows flagged there stay NaN.
     covariances : sequence of str
         Members of :data:`COVARIANCES`.
+    effects : sequence of int or None
+        Positions on the axis e that are wanted, the others stay NaN; None for all.
 
     Returns
     -------
@@ -90,12 +93,14 @@ def robust_stack(
         )
         for name in covariances
     }
-    fine = np.flatnonzero(fit.flag == Flag.FINE)
+    wanted = range(regression.effects.size) if effects is None else effects
+    fine = np.flatnonzero((fit.flag == Flag.FINE).any(axis=1))
     order = regression.order
     for inside, rows in moments.design(select[fine], layout, start) if fine.size else []:
         members = fine[inside]
         for part in np.array_split(np.arange(members.size), _pieces(rows, members.size)):
-            _fill(rows[part][:, :, order], fit, members[part], regression, results)
+            matrix = np.ascontiguousarray(rows[part][:, :, order])
+            _fill(matrix, fit, members[part], regression, results, wanted)
     return results
 
 
@@ -110,6 +115,7 @@ def _fill(
     members: np.ndarray,
     regression: Regression,
     results: dict[str, RobustFit],
+    effects: Sequence[int],
 ) -> None:
     k, q = regression.regressors, regression.restricted.size
     basis = _orthonormal(matrix[:, :, :k], fit.lower[members], fit.solver[members] == Solver.QR, k)
@@ -123,14 +129,15 @@ def _fill(
     squares = (observed - basis @ projection) ** 2
     for name, result in results.items():
         weight, exact = _weight(name, leverage, own, k)
-        for effect in range(regression.effects.size):
+        for effect in effects:
             weighted = block * (weight * squares[:, :, effect])[:, :, None]
             middle = weighted.transpose(0, 2, 1) @ block
             wald = _wald(middle, projection[:, k - q :, effect])
             error = np.sqrt((direction[:, None] @ middle @ direction[:, :, None])[:, 0, 0])
             sandwich = inverse.transpose(0, 2, 1) @ middle @ inverse
             lags = np.sqrt(np.einsum("wkk->wk", sandwich))
-            wald[exact], error[exact], lags[exact] = np.nan, np.nan, np.nan
+            without = exact | (fit.flag[members, effect] != Flag.FINE)
+            wald[without], error[without], lags[without] = np.nan, np.nan, np.nan
             result.lag_errors[members, effect] = lags
             result.wald[members, effect] = wald
             result.coefficient_sum_error[members, effect] = error

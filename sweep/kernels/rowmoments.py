@@ -12,6 +12,7 @@ from dataclasses import dataclass
 import numpy as np
 
 from sweep.kernels.layout import Floats, Gram, Ints, Layout
+from sweep.kernels.words import row_word
 
 __all__ = ["RowMoments", "WindowRows"]
 
@@ -28,11 +29,14 @@ class WindowRows:
         Deterministic columns; column 0 is the constant.
     exists : ndarray of bool, shape (t, m)
         Where the series exist, episodes disregarded: what bounds the regression's rows.
+    first : int
+        Calendar row of the first of them.
     """
 
     values: Floats
     terms: Floats
     exists: np.ndarray
+    first: int
 
 
 class RowMoments:
@@ -66,41 +70,63 @@ class RowMoments:
     def observations(self, select: Ints, layout: Layout, start: int) -> Ints:
         """Return the regression rows T of each selected window, shape (w,)."""
         rows = self._designs(select, layout, start)
-        return np.array([part.shape[0] for part in rows], dtype=np.int64)
+        return np.array([part.shape[0] for part, _ in rows], dtype=np.int64)
 
     def gram(self, select: Ints, layout: Layout, start: int) -> Gram:
         """Return the cross products over the complete rows ``first + start`` … ``last``."""
         products = np.empty((select.size, layout.size, layout.size))
         observations = np.empty(select.size, dtype=np.int64)
-        for position, rows in enumerate(self._designs(select, layout, start)):
-            products[position] = rows.T @ rows
-            observations[position] = rows.shape[0]
-        return Gram(products, np.ones((select.size, layout.size)), observations)
+        words = np.empty(select.size, dtype=np.uint64)
+        for position, (rows, word) in enumerate(self._designs(select, layout, start)):
+            products[position] = _products(rows, self.terms)
+            observations[position], words[position] = rows.shape[0], word
+        return Gram(products, np.ones((select.size, layout.size)), observations, words)
 
     def design(self, select: Ints, layout: Layout, start: int) -> list[tuple[Ints, Floats]]:
         """Return (positions in ``select``, rows (w, t, c)) in groups of equal length."""
         groups: dict[int, list[tuple[int, Floats]]] = defaultdict(list)
-        for position, rows in enumerate(self._designs(select, layout, start)):
+        for position, (rows, _) in enumerate(self._designs(select, layout, start)):
             groups[rows.shape[0]].append((position, rows))
         return [
             (np.array([p for p, _ in members], dtype=np.int64), np.stack([r for _, r in members]))
             for _, members in sorted(groups.items())
         ]
 
-    def _designs(self, select: Ints, layout: Layout, start: int) -> list[Floats]:
+    def _designs(
+        self, select: Ints, layout: Layout, start: int
+    ) -> list[tuple[Floats, np.uint64]]:
+        """Return the complete rows of each window, and the digest that says which they are."""
         first, last = self.usable(layout.columns)
         return [self._design(int(w), layout, int(first[w]) + start, int(last[w])) for w in select]
 
-    def _design(self, w: int, layout: Layout, first: int, last: int) -> Floats:
+    def _design(
+        self, w: int, layout: Layout, first: int, last: int
+    ) -> tuple[Floats, np.uint64]:
         values = self._values[w]
         count = max(last - first + 1, 0)
         rows = np.empty((count, layout.size))
         if not count:
-            return rows
+            return rows, np.uint64(0)
         rows[:, : self.terms] = self._windows[w].terms[first : last + 1]
         for position, (column, lag) in enumerate(layout.series(), start=self.terms):
             rows[:, position] = values[first - lag : last - lag + 1, column]
-        return rows[np.isfinite(rows).all(axis=1)]
+        whole = np.isfinite(rows).all(axis=1)
+        return rows[whole], row_word(np.flatnonzero(whole) + first + self._windows[w].first)
+
+
+def _products(rows: Floats, terms: int) -> Floats:
+    """Return the cross products of a design's columns, shape (c, c).
+
+    Terms go one by one, so that a product has the same digits whatever other terms there are.
+    """
+    columns = np.ascontiguousarray(rows[:, :terms].T)
+    series = np.ascontiguousarray(rows[:, terms:])
+    products = np.empty((rows.shape[1], rows.shape[1]))
+    products[terms:, terms:] = series.T @ series
+    for term, column in enumerate(columns):
+        products[term, terms:] = products[terms:, term] = column @ series
+        products[term, :terms] = (column * columns).sum(axis=1)
+    return products
 
 
 def _common_rows(exists: np.ndarray) -> tuple[int, int]:

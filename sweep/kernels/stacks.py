@@ -110,8 +110,10 @@ class StackFit:
         Standard deviation of the cause over that of the effect on the regression rows.
     lower : ndarray, shape (w, k + e, k + e)
         Lower factor of the ordered products, NaN where flagged.
-    solver, flag : ndarray of int, shape (w,)
-        :class:`Solver` and :class:`Flag` of each window.
+    solver : ndarray of int, shape (w,)
+        :class:`Solver` of each window.
+    flag : ndarray of int, shape (w, e)
+        :class:`Flag` of each window and effect.
     """
 
     explained: Floats
@@ -140,7 +142,8 @@ class StackFit:
             Standardised units; b = L_cc⁻ᵀ l_yc and se_j² = s1/(T−k) · (L_cc⁻ᵀ L_cc⁻¹)_jj.
         """
         k, q = self.regressors, self.restrictions
-        inverse = _inverse(self.lower[:, k - q : k, k - q : k], self.flag == Flag.FINE)
+        fine = self.flag[:, effect] == Flag.FINE
+        inverse = _inverse(self.lower[:, k - q : k, k - q : k], fine)
         values = np.einsum("wij,wi->wj", inverse, self.lower[:, k + effect, k - q : k])
         freedom = np.maximum(self.observations - k, 1)
         variance = self.residual[:, effect] / freedom
@@ -170,21 +173,23 @@ def fit_stack(
     Returns
     -------
     StackFit
-        NaN in every number of a window whose flag is not ``FINE``.
+        NaN in every number of a window and effect whose flag is not ``FINE``.
     """
-    flag = np.zeros(select.size, dtype=np.int64)
-    flag[gram.observations <= regression.regressors] = Flag.TOO_FEW_ROWS
-    factor = factorise(moments, gram, select, layout, start, regression.order, flag == Flag.FINE)
-    lower, solver = factor.lower, factor.solver
     k = regression.regressors
-    fine = flag == Flag.FINE
-    flag[fine & ~(factor.pivots[:, k:].min(axis=1) > COLLINEAR)] = Flag.EXACT_FIT
-    flag[fine & ~(factor.pivots[:, :k].min(axis=1) > COLLINEAR)] = Flag.COLLINEAR
+    enough = gram.observations > k
+    factor = factorise(
+        moments, gram, select, layout, start, regression.order, enough,
+        effects=regression.effects.size,
+    )  # fmt: skip
+    lower, solver = factor.lower, factor.solver
+    flag = np.where(factor.pivots[:, k:] > COLLINEAR, Flag.FINE, Flag.EXACT_FIT).astype(np.int64)
+    flag[~(factor.pivots[:, :k].min(axis=1) > COLLINEAR)] = Flag.COLLINEAR
     bad = flag != Flag.FINE
     if bad.any():
-        flag[bad & _constant_series(gram, layout)] = Flag.CONSTANT_SERIES
-        flag[gram.observations <= regression.regressors] = Flag.TOO_FEW_ROWS
-        lower[bad], solver[bad] = np.nan, Solver.NONE
+        flag[bad & _constant_series(gram, layout)[:, None]] = Flag.CONSTANT_SERIES
+        flag[~enough] = Flag.TOO_FEW_ROWS
+        nothing = bad.all(axis=1)
+        lower[nothing], solver[nothing] = np.nan, Solver.NONE
     return _read_factor(gram, regression, lower, solver, flag)
 
 
@@ -197,7 +202,8 @@ class Factor:
     lower : ndarray, shape (w, c, c)
         Factor of the ordered products, NaN where it was not asked for.
     pivots : ndarray, shape (w, c)
-        Pivots of the factor of unit-length columns, NaN likewise.
+        Pivots of the factor of unit-length columns, NaN likewise; of an effect, what is left
+        of it given the regressors alone.
     solver : ndarray of int, shape (w,)
         :class:`Solver` of each window.
     """
@@ -215,6 +221,7 @@ def factorise(
     start: int,
     order: Ints,
     usable: np.ndarray,
+    effects: int = 0,
 ) -> Factor:
     """Factor the ordered columns of every usable window, by QR where the trigger says.
 
@@ -226,23 +233,35 @@ def factorise(
         Columns of the layout in the order of the factor.
     usable : ndarray of bool, shape (w,)
         Windows with enough rows.
+    effects : int
+        How many of the last columns are effects of regressions of their own.
 
     Returns
     -------
     Factor
     """
-    products = gram.products[:, order[:, None], order]
+    # Picking columns may turn an array's memory about, and with it the order of later sums.
+    products = np.ascontiguousarray(gram.products[:, order[:, None], order])
     norms = np.sqrt(np.maximum(np.einsum("wcc->wc", products), 0.0))
     lower = _cholesky(products, usable)
     with np.errstate(divide="ignore", invalid="ignore"):
-        pivots = np.einsum("wcc->wc", lower) / norms
+        pivots = _lengths(lower, effects) / norms
     solver = np.where(usable, Solver.CHOLESKY, Solver.NONE).astype(np.int64)
     redo = usable & _needs_qr(pivots, gram.cancellation[:, order])
     if redo.any():
         members = np.flatnonzero(redo)
-        _redo_by_qr(moments, select, layout, start, order, members, lower, pivots)
+        _redo_by_qr(moments, select, layout, start, order, members, lower, pivots, effects)
         solver[redo] = Solver.QR
     return Factor(lower, pivots, solver)
+
+
+def _lengths(lower: Floats, effects: int) -> Floats:
+    """Return what each column adds to those before it, shape (w, c); effects do not count."""
+    lengths: Floats = np.einsum("wcc->wc", lower).copy()
+    if effects > 1:  # the first effect has nothing but regressors before it
+        block = lower[:, -effects:, -effects:]
+        lengths[:, -effects:] = np.sqrt(np.einsum("wef,wef->we", block, block))
+    return lengths
 
 
 def _cholesky(products: Floats, usable: np.ndarray) -> Floats:
@@ -292,17 +311,22 @@ def _redo_by_qr(
     members: np.ndarray,
     lower: Floats,
     pivots: Floats,
+    effects: int,
 ) -> None:
     """Replace the factors of some windows by QR on their rows, in place."""
     for inside, rows in moments.design(select[members], layout, start):
-        matrix = rows[:, :, order]
+        matrix = np.ascontiguousarray(rows[:, :, order])
         upper: Floats = np.asarray(np.linalg.qr(matrix, mode="r"))
+        # Several effects may leave fewer rows than columns; the rows that lack are zero.
+        lacking = max(matrix.shape[2] - matrix.shape[1], 0)
+        upper = np.pad(upper, ((0, 0), (0, lacking), (0, 0)))
         diagonal = np.einsum("wcc->wc", upper)
         norms = np.sqrt((matrix**2).sum(axis=1))
-        lower[members[inside]] = (upper * np.where(diagonal < 0, -1.0, 1.0)[:, :, None]).transpose(
-            0, 2, 1
+        upward = upper * np.where(diagonal < 0, -1.0, 1.0)[:, :, None]
+        lower[members[inside]] = upward.transpose(0, 2, 1)
+        pivots[members[inside]] = _lengths(lower[members[inside]], effects) / np.where(
+            norms > 0, norms, 1.0
         )
-        pivots[members[inside]] = np.abs(diagonal) / np.where(norms > 0, norms, 1.0)
 
 
 def _constant_series(gram: Gram, layout: Layout) -> np.ndarray:
@@ -327,6 +351,8 @@ def _read_factor(
     total = np.einsum("weq,wq->we", across, direction)
     freedom = np.maximum(gram.observations - k, 1)[:, None]
     error = np.sqrt(residual / freedom * (direction**2).sum(axis=1)[:, None])
+    for numbers in (explained, residual, total, error):
+        numbers[flag != Flag.FINE] = np.nan
     return StackFit(
         explained, residual, gram.observations, k, q, total, error, _spread(gram, regression),
         lower, solver, flag,

@@ -70,12 +70,14 @@ class JoinedMoments:
         products = np.empty((select.size, layout.size, layout.size))
         cancellation = np.empty((select.size, layout.size))
         observations = np.empty(select.size, dtype=np.int64)
+        words = np.empty(select.size, dtype=np.uint64)
         for moments, places, local in members:
             part = moments.gram(local, layout, start)
             products[places] = part.products
             cancellation[places] = part.cancellation
             observations[places] = part.observations
-        return Gram(products, cancellation, observations)
+            words[places] = part.rows
+        return Gram(products, cancellation, observations, words)
 
     def design(self, select: Ints, layout: Layout, start: int) -> list[tuple[Ints, Floats]]:
         """Return (positions in ``select``, rows (w, t, c)) in groups of equal length."""

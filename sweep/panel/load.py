@@ -27,6 +27,7 @@ from sweep.panel.series import (
     data_digest,
     missing_faults,
     positive_faults,
+    values_digest,
 )
 
 __all__ = [
@@ -40,6 +41,7 @@ __all__ = [
     "peek",
     "positive_faults",
     "read_dataset",
+    "values_digest",
 ]
 
 CalendarRule = Literal["every period", "as observed"]

@@ -21,6 +21,7 @@ __all__ = [
     "data_digest",
     "missing_faults",
     "positive_faults",
+    "values_digest",
 ]
 
 # Series count as tied when what one adds to the others is below this share of its spread;
@@ -89,19 +90,37 @@ def data_digest(dataset: Dataset, names: Sequence[str]) -> tuple[int, int]:
     the series in sorted order.  File names, other columns and the order of columns leave
     it unchanged; any edited value, date or missing cell changes it.
     """
-    calendar = dataset.calendar
+    digest = _calendar_digest(dataset.calendar)
+    for name in sorted(set(names)):
+        digest.update(f"{name}\0".encode())
+        digest.update(_value_bytes(dataset, name))
+    value = int.from_bytes(digest.digest(), "big")
+    return value >> 64, value & (2**64 - 1)
+
+
+def values_digest(dataset: Dataset, name: str) -> str:
+    """Return a digest of the dates and values of one series, its name left aside.
+
+    Two columns that hold the same values share it.
+    """
+    digest = _calendar_digest(dataset.calendar)
+    digest.update(_value_bytes(dataset, name))
+    return digest.hexdigest()
+
+
+def _calendar_digest(calendar: Calendar) -> hashlib.blake2b:
     digest = hashlib.blake2b(digest_size=16)
     rule = "as observed" if calendar.as_observed else "every period"
     digest.update(f"{calendar.frequency.name}\0{rule}\0".encode())
     days = np.array([day.toordinal() for day in calendar.dates], dtype="<i8")
     digest.update(days.tobytes())
-    for name in sorted(set(names)):
-        column = dataset.column(name).astype("<f8") + 0.0  # -0.0 and 0.0 are one value
-        column[np.isnan(column)] = np.nan  # one bit pattern for all missing values
-        digest.update(f"{name}\0".encode())
-        digest.update(column.tobytes())
-    value = int.from_bytes(digest.digest(), "big")
-    return value >> 64, value & (2**64 - 1)
+    return digest
+
+
+def _value_bytes(dataset: Dataset, name: str) -> bytes:
+    column = dataset.column(name).astype("<f8") + 0.0  # -0.0 and 0.0 are one value
+    column[np.isnan(column)] = np.nan  # one bit pattern for all missing values
+    return column.tobytes()
 
 
 def missing_faults(

@@ -48,7 +48,7 @@ def _running(values: Floats, terms: Floats, first: Ints, last: Ints) -> RunningM
 
 def _by_rows(values: Floats, terms: Floats, first: Ints, last: Ints) -> RowMoments:
     windows = [
-        WindowRows(values[a : b + 1], terms[a : b + 1], np.ones((b - a + 1, 3), bool))
+        WindowRows(values[a : b + 1], terms[a : b + 1], np.ones((b - a + 1, 3), bool), a)
         for a, b in zip(first.tolist(), last.tolist(), strict=True)
     ]
     return RowMoments(windows, centre=True)
@@ -242,11 +242,35 @@ def test_flags() -> None:
     select, layout = np.arange(4), Layout(3, (0, 1, 2), (2, 2, 2))
     regression = _regression(layout, 2)
     fit = fit_stack(moments, moments.gram(select, layout, 2), select, layout, 2, regression)
-    assert fit.flag.tolist() == [
-        Flag.CONSTANT_SERIES, Flag.COLLINEAR, Flag.TOO_FEW_ROWS, Flag.FINE,
-    ]  # fmt: skip
+    for effect in range(2):
+        assert fit.flag[:, effect].tolist() == [
+            Flag.CONSTANT_SERIES, Flag.COLLINEAR, Flag.TOO_FEW_ROWS, Flag.FINE,
+        ]  # fmt: skip
     assert np.isnan(fit.explained[:3]).all()
     assert np.isfinite(fit.explained[3]).all()
+
+
+@pytest.mark.parametrize("rows", [18, 19, 20])
+def test_one_degree_of_freedom_is_enough_for_each_of_two_effects(rows: int) -> None:
+    """T = k + 1 rows hold one effect's residual each, though not both effects at once."""
+    values, terms = _series("walk"), _terms(150)
+    first, last = np.array([40], dtype=np.int64), np.array([40 + rows - 1], dtype=np.int64)
+    layout, select = Layout(3, (0, 1, 2), (4, 4, 4)), np.arange(1)
+    for source in (_running, _by_rows):
+        moments = source(values, terms, first, last)
+        regression, gram = _regression(layout, 4), moments.gram(select, layout, 4)
+        fit = fit_stack(moments, gram, select, layout, 4, regression)
+        k = regression.regressors
+        assert (gram.observations[0], k) == (rows - 4, 15)
+        for effect in range(2):
+            if rows - 4 <= k:
+                assert fit.flag[0, effect] == Flag.TOO_FEW_ROWS
+                continue
+            design = _design(values, terms, 40, 40 + rows - 1, 4)
+            slow = plain_fit(design[:, k + effect], design[:, : k - 4], design[:, k - 4 : k])
+            ratio = fit.explained[0, effect] / fit.residual[0, effect]
+            wanted = slow.restricted_squares / slow.unrestricted_squares - 1
+            assert ratio == pytest.approx(wanted, rel=1e-7)
 
 
 def test_tails_follow_scipy_deep_into_the_tail() -> None:
