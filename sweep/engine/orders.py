@@ -88,8 +88,6 @@ class OrderBook:
         maximum, tables = self._table(system, choice, term, windows, moments, columns)
         chosen = np.zeros(windows.size, np.int64)
         reason = np.where(maximum == 0, Reason.SHORT_FOR_CRITERION, Reason.NONE).astype(np.int64)
-        series = [*system.modelled, *(column for column, _ in system.exogenous)]
-        reason[self._panel.blocked[windows][:, series].any(axis=1)] = Reason.FILTER_EPISODE
         width = len(system.modelled)
         fixed = columns.size + sum(lags + 1 for _, lags in system.exogenous)
         equations = width if choice.scope == "system" else 1

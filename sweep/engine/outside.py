@@ -39,6 +39,10 @@ Regressions are refused at a pivot of 1e-9, which is no smaller than the singula
 EXACT = 1e-6
 FULL = 1.0 - 1e-6
 SINGULAR = 1e-6
+RECIPROCAL = ("HC2", "HC3")
+"""Covariances that divide by 1 − h."""
+NO_PART = 1e-22
+"""Share of the cause's lags in fitting a row below which the row says nothing of them."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -122,7 +126,9 @@ def obstacles(prepared: Prepared, chosen: OutsideChoices, *, reverse: bool) -> s
     if np.linalg.norm(residual) < EXACT * np.linalg.norm(effect):
         found.add(Reason.EXACT_FIT)
     if chosen.procedure.covariance != "classical":
-        if (left**2).sum(axis=1).max() > FULL:
+        own = (left[:, -rows.cause.shape[1] :] ** 2).sum(axis=1)
+        part = NO_PART if chosen.procedure.covariance in RECIPROCAL else RANK
+        if ((left**2).sum(axis=1) > FULL)[own > part].any():
             found.add(Reason.LEVERAGE)
         if _singular(left[:, -rows.cause.shape[1] :], residual):
             found.add(Reason.NO_COVARIANCE)
@@ -303,10 +309,21 @@ def _fits(
     import statsmodels.api as sm
 
     kind = "nonrobust" if procedure.covariance == "classical" else procedure.covariance
-    full = sm.OLS(effect, design).fit(cov_type=kind, use_t=True)
+    kept = _spared(design, q) if kind in RECIPROCAL else np.ones(len(effect), bool)
+    full = sm.OLS(effect[kept], design[kept]).fit(cov_type=kind, use_t=True)
     if design.shape[1] == q:
         return full, effect
     return full, np.asarray(sm.OLS(effect, design[:, :-q]).fit().resid)
+
+
+def _spared(design: Floats, q: int) -> NDArray[np.bool_]:
+    """Say which rows to keep: those of a pulse, where 1 − h is zero and so is e, say nothing.
+
+    What is left has one row and one rank less for each, so the same degrees of freedom.
+    """
+    left = np.linalg.qr(design)[0]
+    own, whole = (left[:, -q:] ** 2).sum(axis=1), (left**2).sum(axis=1)
+    return np.asarray((whole < 1.0 - 1e-10) | (own > NO_PART))
 
 
 def _tested(

@@ -211,7 +211,8 @@ def rows_of(
     }
     complete = pd.DataFrame({**also, **nuisance, **tested}).notna().all(axis=1)
     unmodelled = [item.lags for item in chosen.finding.exogenous]
-    complete &= panel.begun(max([own, leading, others, chosen.lags.common, *unmodelled]))
+    longest = [own, leading, others if chosen.given else 0, chosen.lags.common, *unmodelled]
+    complete &= panel.begun(max(longest))
     index = panel.values.index[complete]
     terms = term_frame(prepared, chosen, panel.values.index)
     return Rows(
