@@ -7,13 +7,21 @@ from typing import Any, Literal
 
 from sweep.verdicts.words import MISSING, missing, number, p_text, percent, period_text
 
-__all__ = ["Column", "Table", "Target", "cell_text"]
+__all__ = ["Column", "Pooled", "Table", "Target", "cell_text", "stars_of"]
 
 Kind = Literal["text", "count", "share", "p", "number", "date", "mark"]
 
 # Where a column appears: on the page, in print (LaTeX, Markdown), in data files (CSV).
 Target = Literal["page", "print", "data"]
 _EVERYWHERE: tuple[Target, ...] = ("page", "print", "data")
+# Levels of the stars, most stars first.
+_STARS = ((0.01, "***"), (0.05, "**"), (0.10, "*"))
+_LEGEND = "Stars: * p at most 0.10, ** at most 0.05, *** at most 0.01; none on medians."
+_NO_STARS = "This table has no p-value of a single specification, so it has no stars."
+
+
+class Pooled(float):
+    """A number that stands for several specifications, such as a median p: it has no stars."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -32,12 +40,15 @@ class Column:
     within : tuple of str
         Where it appears: ``page``, ``print``, ``data``.  Print has less room than a page that
         scrolls, and a data file wants parts that print puts into one cell.
+    starred : bool
+        Whether its p-values are those of tests, which get stars where they are asked for.
     """
 
     heading: str
     kind: Kind = "text"
     name: str = ""
     within: tuple[Target, ...] = _EVERYWHERE
+    starred: bool = False
 
     @property
     def field(self) -> str:
@@ -48,6 +59,10 @@ class Column:
     def right(self) -> bool:
         """Whether values are set flush right."""
         return self.kind not in ("text", "date", "mark")
+
+    def text(self, value: Any) -> str:
+        """Write one of its values the way people read it."""
+        return cell_text(value, self.kind)
 
 
 @dataclass(frozen=True, slots=True)
@@ -68,6 +83,8 @@ class Table:
         Sentences below the table: what is counted, what was left out.
     grouped : bool
         Whether rows with the same value in the first column stand under one heading.
+    stars : bool
+        Whether print marks small p-values by stars.
     """
 
     name: str
@@ -76,6 +93,7 @@ class Table:
     rows: tuple[tuple[Any, ...], ...]
     notes: tuple[str, ...] = ()
     grouped: bool = False
+    stars: bool = False
 
     def __post_init__(self) -> None:
         for row in self.rows:
@@ -110,10 +128,24 @@ class Table:
         note = f"The first {rows:,} of {len(self.rows):,} rows are shown; {left:,} left out."
         return replace(self, rows=self.rows[:rows], notes=(*self.notes, note))
 
-    def _repr_html_(self) -> str:
-        from .writers import as_html
+    def with_stars(self) -> Table:
+        """Return the table with stars in print and their legend in the notes."""
+        marked = any(column.starred and "print" in column.within for column in self.columns)
+        return replace(self, stars=marked, notes=(*self.notes, _LEGEND if marked else _NO_STARS))
 
-        return as_html(self)
+
+def stars_of(value: Any, column: Column) -> str:
+    """Return the stars of a p-value; none for medians and for what is no p-value of a test.
+
+    Examples
+    --------
+    >>> p = Column("p", "p", starred=True)
+    >>> stars_of(0.01, p), stars_of(0.051, p), stars_of(0.2, p), stars_of(Pooled(0.01), p)
+    ('***', '*', '', '')
+    """
+    if not column.starred or missing(value) or isinstance(value, Pooled):
+        return ""
+    return next((signs for level, signs in _STARS if float(value) <= level), "")
 
 
 def cell_text(value: Any, kind: Kind) -> str:

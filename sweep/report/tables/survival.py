@@ -26,11 +26,12 @@ _COLUMNS = (
     ("choice", Column("Choice")),
     ("is_baseline", Column("Baseline", "mark", "is_baseline")),
     ("planned", Column("Planned", "count")),
-    ("not_applicable", Column("Not applicable", "count")),
-    ("infeasible", Column("Infeasible", "count")),
-    ("failed", Column("Failed", "count")),
-    ("screened_out", Column("Screened out", "count")),
-    ("not_run", Column("Not run yet", "count")),
+    ("not_applicable", Column("Not applicable", "count", within=("page", "data"))),
+    ("infeasible", Column("Infeasible", "count", within=("page", "data"))),
+    ("failed", Column("Failed", "count", within=("page", "data"))),
+    ("screened_out", Column("Screened out", "count", within=("page", "data"))),
+    ("not_run", Column("Not run yet", "count", within=("page", "data"))),
+    ("left_out", Column("Left out", "count", within=("print",))),
     ("admissible", Column("Admissible", "count")),
     ("survived", Column("Survived", "count")),
     ("other_sign", Column("Other sign", "count")),
@@ -51,6 +52,7 @@ def build(frames: Mapping[str, pd.DataFrame], context: Context) -> Table:
     for record in frame.to_dict("records"):
         if record["axis"] == OVERALL:
             record |= {"axis": "overall", "choice": "all choices"}
+        record["left_out"] = int(record["planned"]) - int(record["admissible"])
         rows.append(tuple(record[name] for name, _ in _COLUMNS))
     unfinished = context.counts.not_run > 0
     columns = [
@@ -59,8 +61,8 @@ def build(frames: Mapping[str, pd.DataFrame], context: Context) -> Table:
         for name, column in _COLUMNS
     ]
     notes = (
-        f"{context.lead} Planned = not applicable + infeasible + failed + screened out + "
-        f"{'not run yet + ' if unfinished else ''}admissible. Distinct: distinct computations "
+        f"{context.lead} Planned = admissible + left out (not applicable, infeasible, failed, "
+        f"screened out{', not run yet' if unfinished else ''}). Distinct: distinct computations "
         "among the admissible rows. Weighted share: "
         "each row weighs 1 / (positions of its window entry) / (size of its test group). Other "
         "sign: significant, but not with the claimed sign. The columns at 1, 5 and 10% are the "

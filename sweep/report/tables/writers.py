@@ -1,4 +1,4 @@
-"""Tables as HTML, Markdown and CSV."""
+"""Tables as HTML, Markdown and CSV; LaTeX has a module of its own."""
 
 from __future__ import annotations
 
@@ -11,7 +11,8 @@ from typing import Any
 
 from sweep.verdicts.words import missing, period_text
 
-from .model import Column, Table, cell_text
+from .latex import as_latex
+from .model import Column, Table, cell_text, stars_of
 
 __all__ = ["WRITERS", "as_csv", "as_html", "as_markdown"]
 
@@ -76,7 +77,12 @@ def as_markdown(table: Table) -> str:
         "|" + "|".join(" ---: " if column.right else " --- " for column in table.columns) + "|"
     )
     parts += [
-        line([cell_text(value, c.kind) for value, c in zip(row, table.columns, strict=True)])
+        line(
+            [
+                column.text(value) + (stars_of(value, column) if table.stars else "")
+                for value, column in zip(row, table.columns, strict=True)
+            ]
+        )
         for row in table.rows
     ]
     if table.notes:
@@ -123,6 +129,7 @@ def _raw(value: Any, kind: str) -> str:
 
 WRITERS: dict[str, Callable[[Table], str]] = {
     "html": as_html,
+    "latex": as_latex,
     "markdown": as_markdown,
     "csv": as_csv,
 }
