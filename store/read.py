@@ -15,6 +15,7 @@ from store.read_changes import (
 from store.read_compare import window_pairs, window_paths
 from store.read_cube import cube, cube_windows
 from store.read_curve import curve
+from store.read_list import LIST_COLUMNS, alternatives, list_rows, list_size
 from store.read_outcomes import baseline, details, outcomes, specification
 from store.read_pairs import pair_cells
 from store.read_requests import answers, requests
@@ -30,6 +31,8 @@ from store.read_shares import (
 from store.read_sweeps import choices, findings, latest_sweep, require_rows, sweep_info, sweeps
 
 __all__ = [
+    "LIST_COLUMNS",
+    "alternatives",
     "answers",
     "attrition",
     "baseline",
@@ -46,6 +49,8 @@ __all__ = [
     "flip_distances",
     "flips",
     "latest_sweep",
+    "list_rows",
+    "list_size",
     "outcomes",
     "pair_cells",
     "requests",

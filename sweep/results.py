@@ -7,6 +7,7 @@ import json
 from collections.abc import Callable, Iterator, Sequence
 from contextlib import contextmanager
 from dataclasses import replace
+from functools import partial
 from pathlib import Path
 from typing import TYPE_CHECKING, Any
 
@@ -236,17 +237,60 @@ class Results:
             title=str(self.info["title"]), design=str(self.info["design"]),
         )  # fmt: skip
 
-    def table(self, name: str, finding: str | int | None = None) -> Table:
-        """Return a table of one finding (the first if none is named)."""
-        from sweep.report.tables import TABLES
+    def table(
+        self,
+        name: str,
+        finding: str | int | None = None,
+        *,
+        rows: int | None = None,
+        stars: bool = False,
+        data: str | Path | None = None,
+    ) -> Table:
+        """Return a table of one finding; ``save`` writes it, ``text`` shows it.
 
-        if name not in TABLES:
-            raise InputFault(
-                Fault("table", f'no table is called "{name}"' + suggestion(name, TABLES))
-            )
+        Parameters
+        ----------
+        name : str
+            A key of :data:`sweep.report.tables.TABLES`; hyphens may stand for its spaces.
+        finding : str, int or None
+            Name or number of the finding; the first if None.
+        rows : int or None
+            Most rows; None for at most 500 in print and for all in CSV.
+        stars : bool
+            Whether print marks small p-values of single specifications by stars.
+        data : str, Path or None
+            Data file, for the table that needs it, where it is no longer where the plan says.
+
+        Raises
+        ------
+        InputFault
+            If there is no such table, or the data are needed and gone or changed.
+        """
+        from sweep.report.tables import long_list, table_named
+
+        module = table_named(name)
         number = self._number(0 if finding is None else finding)
-        frames = self._frames(number, (*TABLES[name].NEEDS, "survival"))
-        return TABLES[name].build(frames, self._context(number, frames))
+        stored = [need for need in module.NEEDS if need != "lag_selection"]
+        frames = self._frames(number, (*stored, "survival"))
+        if "lag_selection" in module.NEEDS:
+            from sweep.engine.lag_selection import lag_selection
+
+            specification = str(frames["baseline"]["specification"].iloc[0])
+            path = None if data is None else Path(data)
+            frames["lag_selection"] = lag_selection(self, number, specification, path)
+        table = module.build(frames, self._context(number, frames))
+        if module is long_list:
+            table = replace(table, stream=partial(self._long_list, number))
+        table = table.with_stars() if stars else table
+        return table.first(rows)
+
+    def _long_list(self, number: int) -> Iterator[tuple[Any, ...]]:
+        """Yield the cells of every row of a finding's long list."""
+        from sweep.report.tables.long_list import row_of
+
+        with self._open() as database:
+            for row in read.list_rows(database, self.sweep, number):
+                yield row_of(dict(zip(read.LIST_COLUMNS, row, strict=True)))
 
     def content(self) -> ReportContent:
         """Return everything that the report and the summary are made from."""

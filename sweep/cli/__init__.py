@@ -20,6 +20,7 @@ COMMANDS = {
     "run": "Run what is not stored yet, print the survival summary, write the report.",
     "show": "Print the survival summary again, whole or by one axis.",
     "explain": "Show one specification in full, recomputed by the slow path.",
+    "table": "Write a table as LaTeX, Markdown or CSV.",
     "report": "Write the report as one HTML file that opens offline.",
     "chart": "Write one figure as SVG, PDF, PNG, HTML, JSON or the numbers behind it.",
     "compare": "Set two sweeps, or the moving windows of one, side by side.",

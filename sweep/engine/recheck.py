@@ -27,7 +27,7 @@ from sweep.kernels.plain import (
 from sweep.panel.deterministics import TermContext, term_columns
 from sweep.plan.choices import LagChoice, ProcedureChoice
 
-__all__ = ["SlowDirection", "SlowResult", "recheck"]
+__all__ = ["SlowDirection", "SlowResult", "SlowSample", "recheck", "slow_sample"]
 
 Floats = NDArray[np.float64]
 
@@ -82,6 +82,31 @@ class SlowResult:
     rows: NDArray[np.int64]
 
 
+@dataclass(frozen=True, slots=True)
+class SlowSample:
+    """What one specification is estimated from.
+
+    Attributes
+    ----------
+    task : Task
+        Holds this one specification.
+    system : System
+        Its series.
+    values : ndarray, shape (n, m)
+        All series on the window's rows, as transformed; NaN where they must not be used.
+    terms : ndarray, shape (n, d)
+        Deterministic columns.
+    bounds : (int, int)
+        Rows of the window between which all its series exist.
+    """
+
+    task: Task
+    system: System
+    values: Floats
+    terms: Floats
+    bounds: tuple[int, int]
+
+
 def recheck(prepared: Prepared, row: int) -> SlowResult:
     """Recompute one row of a plan the slow way.
 
@@ -96,19 +121,28 @@ def recheck(prepared: Prepared, row: int) -> SlowResult:
     ValueError
         If the regression cannot be run on these rows.
     """
+    sample = slow_sample(prepared, row)
+    task, system = sample.task, sample.system
+    values, terms, bounds = sample.values, sample.terms, sample.bounds
+    forward, rows = _direction(task, system, values, terms, bounds)
+    reverse, _ = _direction(task, system.turned(), values, terms, bounds)
+    return SlowResult(forward, reverse, rows + int(task.first[0]))
+
+
+def slow_sample(prepared: Prepared, row: int) -> SlowSample:
+    """Return what one row of a plan is estimated from.
+
+    Parameters and errors are those of :func:`recheck`.
+    """
     nothing = np.zeros(prepared.rows.count, bool)
     (task,) = make_tasks(prepared, np.array([row], dtype=np.int64), nothing)
     values, exists = window_values(task, 0)
-    terms = _terms(task)
     system = task.systems[0]
     used = sorted({*system.modelled, *(column for column, _ in system.exogenous)})
     whole = np.flatnonzero(exists[:, used].all(axis=1))
     if not whole.size:
         raise ValueError("no date has a value of every series in this window")
-    bounds = int(whole[0]), int(whole[-1])
-    forward, rows = _direction(task, system, values, terms, bounds)
-    reverse, _ = _direction(task, system.turned(), values, terms, bounds)
-    return SlowResult(forward, reverse, rows + int(task.first[0]))
+    return SlowSample(task, system, values, _terms(task), (int(whole[0]), int(whole[-1])))
 
 
 def _terms(task: Task) -> Floats:

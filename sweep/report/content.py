@@ -15,7 +15,7 @@ from sweep.verdicts.words import joined, missing, p_text, percent, reason_text
 
 from . import cube
 from .notes import CAUTIONS, METHOD_NOTES, Note
-from .tables import TABLES
+from .tables import PAGE_TABLES
 
 if TYPE_CHECKING:
     import pandas as pd
@@ -45,7 +45,7 @@ FRAMES = tuple(
             *_SENTENCES,
             *cube.NEEDS,
             *(frame for name in CHARTS for frame in chart(name).NEEDS),
-            *(frame for module in TABLES.values() for frame in module.NEEDS),
+            *(frame for module in PAGE_TABLES.values() for frame in module.NEEDS),
         ]
     )
 )

@@ -32,7 +32,7 @@ from .content import (
 )
 from .contents import with_contents
 from .library import Library
-from .tables import TABLES, Table
+from .tables import PAGE_TABLES, Table
 from .tables.writers import as_html
 
 __all__ = ["Figure", "page", "script_json", "still"]
@@ -172,7 +172,7 @@ def _sections(report: ReportContent, drawn: list[dict[str, Figure]]) -> list[dic
     for number, (finding, figures) in enumerate(zip(report.findings, drawn, strict=True), start=1):
         tables = {
             name: _tabled(module.build(finding.frames, finding.context), finding.context)
-            for name, module in TABLES.items()
+            for name, module in PAGE_TABLES.items()
         }
         # Counts of selections are of stored rows; while rows are missing there are none.
         choices = cube.chooser(finding.frames, finding.context) if not report.unfinished else {}

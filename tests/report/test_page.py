@@ -12,7 +12,7 @@ from sweep.charts import CHARTS
 from sweep.report.content import FRAMES, baseline_sentence, content_of, summary
 from sweep.report.notes import CAUTIONS, METHOD_NOTES
 from sweep.report.page import script_json, still
-from sweep.report.tables import TABLES
+from sweep.report.tables import PAGE_TABLES
 from sweep.verdicts.survival import headline, overall
 
 
@@ -81,8 +81,8 @@ def test_headline_with_counts_and_levels(friendly, content):
 
 def test_every_chart_and_table_is_there(friendly, content):
     assert [one["data-name"] for one in friendly.named("figure")] == list(CHARTS)
-    assert len(friendly.named("table")) == len(TABLES) == len(friendly.named("caption"))
-    for module in TABLES.values():
+    assert len(friendly.named("table")) == len(PAGE_TABLES) == len(friendly.named("caption"))
+    for module in PAGE_TABLES.values():
         table = module.build(content.findings[0].frames, content.findings[0].context)
         # The finding says its claim once; captions leave it out.
         title, _, claim = table.title.partition(": ")
@@ -209,7 +209,7 @@ def test_page_is_usable_by_keyboard_and_reader(friendly):
     for link in friendly.named("a"):
         assert link["href"].removeprefix("#") in ids
     scrolling = [one for one in friendly.named("div") if one.get("class") == "scroll"]
-    assert len(scrolling) == len(TABLES)
+    assert len(scrolling) == len(PAGE_TABLES)
     assert all(one["tabindex"] == "0" and one["aria-label"] for one in scrolling)
     assert all("scope" in one for one in friendly.named("th"))
 

@@ -9,7 +9,11 @@ from __future__ import annotations
 
 from typing import TYPE_CHECKING, Protocol
 
+from sweep.errors import Fault, InputFault
+from sweep.plan.suggest import suggestion
+
 from . import (
+    alternatives,
     attrition,
     baseline,
     directions,
@@ -17,6 +21,8 @@ from . import (
     effects_overall,
     episodes,
     flips,
+    lag_selection,
+    long_list,
     requests,
     shortest_flips,
     single_changes,
@@ -32,7 +38,7 @@ if TYPE_CHECKING:
 
     from sweep.charts.context import Context
 
-__all__ = ["TABLES", "WRITERS", "Column", "Table", "TableModule"]
+__all__ = ["PAGE_TABLES", "TABLES", "WRITERS", "Column", "Table", "TableModule", "table_named"]
 
 
 class TableModule(Protocol):
@@ -54,7 +60,8 @@ class TableModule(Protocol):
         """Return the table of one finding."""
 
 
-_MODULES: tuple[TableModule, ...] = (
+# What the report shows, in its order.
+_ON_PAGE: tuple[TableModule, ...] = (
     baseline,
     survival,
     single_changes,
@@ -68,5 +75,33 @@ _MODULES: tuple[TableModule, ...] = (
     requests,
 )
 
-# Name of the table and its module, in the order of the report.
-TABLES: dict[str, TableModule] = {module.NAME: module for module in _MODULES}
+# What is asked for by name alone: too long for a page, or made from the data file.
+_BESIDE: tuple[TableModule, ...] = (
+    alternatives,
+    lag_selection,
+    long_list,
+)
+
+# Name of the table and its module: those of the page, and all.
+PAGE_TABLES: dict[str, TableModule] = {module.NAME: module for module in _ON_PAGE}
+TABLES: dict[str, TableModule] = {module.NAME: module for module in (*_ON_PAGE, *_BESIDE)}
+
+
+def table_named(name: str) -> TableModule:
+    """Return the module of a table.
+
+    Parameters
+    ----------
+    name : str
+        A key of ``TABLES``; hyphens or underscores may stand for its spaces.
+
+    Raises
+    ------
+    InputFault
+        If there is no table of that name.
+    """
+    words = " ".join(name.replace("-", " ").replace("_", " ").lower().split())
+    if words not in TABLES:
+        message = f'no table is called "{name}"' + suggestion(words, TABLES)
+        raise InputFault(Fault("table", message))
+    return TABLES[words]

@@ -186,6 +186,7 @@ def _float(
         r"\begin{table}[htbp]",
         rf"\centering{layout.size}\setlength{{\tabcolsep}}{{{SEPARATION:.0f}pt}}",
         caption,
+        r"\par\medskip",
         rf"\begin{{tabular}}{{{layout.columns}}}",
         *head,
         *body,

@@ -2,14 +2,20 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass, replace
+from collections.abc import Callable, Iterator
+from dataclasses import dataclass, field, replace
+from itertools import islice
+from pathlib import Path
 from typing import Any, Literal
 
-from sweep.verdicts.words import MISSING, missing, number, p_text, percent, period_text
+from sweep.verdicts.words import MISSING, fixed, missing, number, p_text, percent, period_text
 
-__all__ = ["Column", "Pooled", "Table", "Target", "cell_text", "stars_of"]
+__all__ = ["PRINT_ROWS", "Column", "Kind", "Pooled", "Table", "Target", "cell_text", "stars_of"]
 
-Kind = Literal["text", "count", "share", "p", "number", "date", "mark"]
+Kind = Literal["text", "count", "share", "p", "number", "fixed", "figure", "date", "mark"]
+
+# Rows of a table in print, unless another count is asked for.
+PRINT_ROWS = 500
 
 # Where a column appears: on the page, in print (LaTeX, Markdown), in data files (CSV).
 Target = Literal["page", "print", "data"]
@@ -34,7 +40,8 @@ class Column:
         Words above it.
     kind : str
         How its values are written: text, count, share (0–1, written in per cent), p,
-        number (three significant digits), date, or mark (a diamond where true).
+        number (three significant digits), fixed (three decimals), figure (words that are set
+        like a number), date, or mark (a diamond where true).
     name : str
         Its name in data files, lower case with underscores.
     within : tuple of str
@@ -85,6 +92,10 @@ class Table:
         Whether rows with the same value in the first column stand under one heading.
     stars : bool
         Whether print marks small p-values by stars.
+    total : int or None
+        Rows that there are, where ``rows`` holds only the first of them; None if it holds all.
+    stream : callable or None
+        Gives every row, one after the other, where there may be too many to hold.
     """
 
     name: str
@@ -94,6 +105,10 @@ class Table:
     notes: tuple[str, ...] = ()
     grouped: bool = False
     stars: bool = False
+    total: int | None = None
+    stream: Callable[[], Iterator[tuple[Any, ...]]] | None = field(
+        default=None, compare=False, repr=False
+    )
 
     def __post_init__(self) -> None:
         for row in self.rows:
@@ -103,15 +118,53 @@ class Table:
                     f"{len(self.columns)} columns"
                 )
 
+    def text(self, form: str = "markdown") -> str:
+        """Return the table as text.
+
+        Parameters
+        ----------
+        form : str
+            ``latex``, ``markdown``, ``csv`` or ``html``.  In print at most 500 rows are written,
+            unless another count was asked for; CSV holds them all.
+        """
+        return "".join(self.parts(form))
+
+    def parts(self, form: str = "markdown") -> Iterator[str]:
+        """Yield the text of the table in parts, which bounds the memory of a long one."""
+        from .writers import parts
+
+        return parts(self, form)
+
+    def save(self, path: str | Path, form: str | None = None) -> Path:
+        """Write the table to a file and return its path; see :mod:`sweep.report.tables.saving`.
+
+        Parameters
+        ----------
+        path : str or Path
+            Its ending says how it is written: .tex, .md, .csv or .html.
+        form : str or None
+            ``latex``, ``markdown``, ``csv`` or ``html``, whatever the ending.
+        """
+        from .saving import save
+
+        return save(self, Path(path), form)
+
+    def _repr_html_(self) -> str:
+        return self.text("html")
+
     def only(self, target: Target) -> Table:
         """Return the table with the columns that appear in one place."""
         kept = [place for place, column in enumerate(self.columns) if target in column.within]
         if len(kept) == len(self.columns):
             return self
+        stream = self.stream
         return replace(
             self,
             columns=tuple(self.columns[place] for place in kept),
             rows=tuple(tuple(row[place] for place in kept) for row in self.rows),
+            stream=None if stream is None else lambda: (
+                tuple(row[place] for place in kept) for row in stream()
+            ),
         )
 
     def first(self, rows: int | None) -> Table:
@@ -122,11 +175,22 @@ class Table:
         rows : int or None
             Most rows to keep; None for all.
         """
-        if rows is None or len(self.rows) <= rows:
+        total = len(self.rows) if self.total is None else self.total
+        if rows is None or (total <= rows and self.stream is None):
             return self
-        left = len(self.rows) - rows
-        note = f"The first {rows:,} of {len(self.rows):,} rows are shown; {left:,} left out."
-        return replace(self, rows=self.rows[:rows], notes=(*self.notes, note))
+        kept = self.rows[:rows]
+        if self.stream is not None:
+            kept = tuple(islice(self.stream(), rows))
+        notes = self.notes
+        if len(kept) < total:
+            left = total - len(kept)
+            note = f"The first {len(kept):,} of {total:,} rows are shown; {left:,} left out."
+            notes = (*notes, note)
+        return replace(self, rows=kept, notes=notes, total=None, stream=None)
+
+    def every_row(self) -> Iterator[tuple[Any, ...]]:
+        """Yield all rows, also those that are not held."""
+        return iter(self.rows) if self.stream is None else self.stream()
 
     def with_stars(self) -> Table:
         """Return the table with stars in print and their legend in the notes."""
@@ -162,6 +226,8 @@ def cell_text(value: Any, kind: Kind) -> str:
         return p_text(float(value))
     if kind == "number":
         return number(float(value))
+    if kind == "fixed":
+        return fixed(float(value), 3)
     if kind == "date":
         return period_text(value)
     if isinstance(value, bool):

@@ -5,19 +5,23 @@ from __future__ import annotations
 import csv
 import io
 import itertools
-from collections.abc import Callable
+from collections.abc import Callable, Iterable, Iterator
 from html import escape
 from typing import Any
 
 from sweep.verdicts.words import missing, period_text
 
 from .latex import as_latex
-from .model import Column, Table, cell_text, stars_of
+from .model import PRINT_ROWS, Column, Table, cell_text, stars_of
 
-__all__ = ["WRITERS", "as_csv", "as_html", "as_markdown"]
+__all__ = ["WRITERS", "as_csv", "as_html", "as_markdown", "csv_parts", "parts"]
 
 # Leading characters that spreadsheets take for a formula.
-_FORMULA = ("=", "+", "-", "@", "\t", "\r")
+_FORMULA = ("=", "+", "-", "@", "＝", "＋", "－", "＠")
+_BREAKS = ("\t", "\r", "\n")
+
+# Rows of CSV that are put together at once.
+_PORTION = 1000
 
 
 def as_html(table: Table) -> str:
@@ -76,15 +80,17 @@ def as_markdown(table: Table) -> str:
     parts.append(
         "|" + "|".join(" ---: " if column.right else " --- " for column in table.columns) + "|"
     )
-    parts += [
-        line(
-            [
-                column.text(value) + (stars_of(value, column) if table.stars else "")
-                for value, column in zip(row, table.columns, strict=True)
-            ]
-        )
-        for row in table.rows
-    ]
+    group = None
+    for row in table.rows:
+        cells = [
+            column.text(value) + (stars_of(value, column) if table.stars else "")
+            for value, column in zip(row, table.columns, strict=True)
+        ]
+        # The name of a group stands in its first row alone.
+        if table.grouped and row[0] == group:
+            cells[0] = ""
+        group = row[0]
+        parts.append(line(cells))
     if table.notes:
         parts += ["", _plain(" ".join(table.notes))]
     return "\n".join(parts) + "\n"
@@ -101,14 +107,24 @@ def as_csv(table: Table) -> str:
 
     Text that a spreadsheet would run as a formula gets an apostrophe in front.
     """
+    return "".join(csv_parts(table))
+
+
+def csv_parts(table: Table) -> Iterator[str]:
+    """Yield the CSV of a table some rows at a time, as :func:`as_csv` writes it."""
     table = table.only("data")
-    buffer = io.StringIO()
-    writer = csv.writer(buffer, lineterminator="\n")
-    writer.writerow([column.field for column in table.columns])
-    for row in table.rows:
-        writer.writerow(
-            [_raw(value, column.kind) for value, column in zip(row, table.columns, strict=True)]
+    kinds = [column.kind for column in table.columns]
+    yield _lines([[column.field for column in table.columns]])
+    rows = table.every_row()
+    while portion := list(itertools.islice(rows, _PORTION)):
+        yield _lines(
+            [_raw(value, kind) for value, kind in zip(row, kinds, strict=True)] for row in portion
         )
+
+
+def _lines(rows: Iterable[list[str]]) -> str:
+    buffer = io.StringIO()
+    csv.writer(buffer, lineterminator="\n").writerows(rows)
     return buffer.getvalue()
 
 
@@ -121,10 +137,12 @@ def _raw(value: Any, kind: str) -> str:
         return "true" if value else "false"
     if kind == "count":
         return str(int(value))
-    if kind in ("share", "p", "number"):
+    if kind in ("share", "p", "number", "fixed"):
         return repr(float(value))
-    text = ("yes" if value else "no") if isinstance(value, bool) else str(value)
-    return "'" + text if text.startswith(_FORMULA) else text
+    if isinstance(value, bool):
+        return "true" if value else "false"
+    text = str(value)
+    return "'" + text if text.lstrip().startswith(_FORMULA) or text[:1] in _BREAKS else text
 
 
 WRITERS: dict[str, Callable[[Table], str]] = {
@@ -133,3 +151,17 @@ WRITERS: dict[str, Callable[[Table], str]] = {
     "markdown": as_markdown,
     "csv": as_csv,
 }
+
+
+def parts(table: Table, form: str) -> Iterator[str]:
+    """Yield the text of a table in a form of ``WRITERS``; print is cut to ``PRINT_ROWS``.
+
+    Raises
+    ------
+    KeyError
+        If there is no such form.
+    """
+    if form == "csv":
+        yield from csv_parts(table)
+    else:
+        yield WRITERS[form](table.first(PRINT_ROWS))
