@@ -11,6 +11,7 @@ from dataclasses import dataclass, field
 from statistics import NormalDist
 
 import counted_flips
+import counted_tables
 import numpy as np
 import pandas as pd
 from counted_requests import answers_frame, requests_frame
@@ -519,6 +520,11 @@ def frames_of(sweep: Sweep) -> dict[str, pd.DataFrame]:
     frames["requests"] = requests_frame(frames["survival"])
     frames["answers"] = answers_frame(frames["single_changes"])
     frames["window_paths"] = window_paths_frame(rows)
+    frames["alternatives"] = counted_tables.alternatives_frame(
+        frames["single_changes"], frames["baseline"]
+    )
+    frames["lag_selection"] = counted_tables.lag_selection_frame()
+    frames["list_size"] = counted_tables.list_size_frame(len(rows))
     return frames
 
 

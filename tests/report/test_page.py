@@ -94,7 +94,7 @@ def test_long_tables_are_folded(friendly, content):
     folded = [one for one in friendly.named("details") if one.get("class") == "table"]
     built = [
         module.build(content.findings[0].frames, content.findings[0].context)
-        for module in TABLES.values()
+        for module in PAGE_TABLES.values()
     ]
     assert len(folded) == sum(len(table.rows) > 14 for table in built) > 0
     assert not any("open" in one for one in folded)

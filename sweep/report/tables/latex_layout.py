@@ -11,6 +11,7 @@ import unicodedata
 from collections.abc import Sequence
 from dataclasses import dataclass
 
+from .latex_text import LONG, TOGETHER, spelt
 from .model import Column
 
 __all__ = ["SEPARATION", "Layout", "fit", "heading_lines", "width_of"]
@@ -36,12 +37,10 @@ _WIDTHS = (
     295, 531, 590, 472, 590, 472, 325, 531, 590, 295, 325, 561, 295, 885, 590, 531,
     590, 561, 414, 419, 413, 590, 561, 767, 561, 561, 472, 531, 295, 531, 531,
 )  # fmt: skip
-# Arrows, mathematical signs and what is written as a code point.
-_SIGN, _CODE = 1060, 4700
+# Letters beyond these, and arrows and mathematical signs.
+_LETTER, _SIGN = 700, 1060
 # Type of seven points is cut a little wider.
 _SMALL = 1.075
-# Letters of a long word that stay together, as the text's own module breaks it.
-_UNBROKEN = 15
 
 
 @dataclass(frozen=True, slots=True)
@@ -85,16 +84,14 @@ class Layout:
 def width_of(text: str, points: float) -> float:
     """Return the width of a text in points, set in a type of a number of points."""
     total = 0
-    for character in unicodedata.normalize("NFKD", text):
+    for character in unicodedata.normalize("NFKD", spelt(text)):
         code = ord(character)
         if 32 <= code <= 126:
             total += _WIDTHS[code - 32]
         elif unicodedata.combining(character) or unicodedata.category(character) in ("Cf", "Cc"):
             continue
-        elif unicodedata.name(character, "").startswith(("LATIN", "GREEK")):
-            total += 700
         else:
-            total += _SIGN if unicodedata.category(character)[0] in "SP" else _CODE
+            total += _LETTER if unicodedata.category(character)[0] == "L" else _SIGN
     return total / 1000 * points * (_SMALL if points < 8 else 1.0)
 
 
@@ -126,28 +123,37 @@ def fit(columns: Sequence[Column], texts: Sequence[Sequence[str]], groups: int) 
     """
     cells = [[row[place] for row in texts] for place in range(len(columns))]
     for style in _STYLES:
-        room, _, points = style
-        needs = [_need(column, own, points) for column, own in zip(columns, cells, strict=True)]
-        gaps = 2 * SEPARATION * (len(columns) - 1)
-        if sum(low for low, _ in needs) + gaps <= room or style == _STYLES[-1]:
-            widths = _shared(needs, room - gaps)
+        room = style[0] - 2 * SEPARATION * (len(columns) - 1)
+        needs = [_need(column, own, style[2]) for column, own in zip(columns, cells, strict=True)]
+        if sum(good for _, good, _ in needs) <= room:
+            widths = _shared([(good, most) for _, good, most in needs], room)
             return _layout(style, columns, cells, widths, groups)
-    raise AssertionError("the last style takes every table")
+    # Nothing sets such long texts in three lines; they take as many as they need.
+    widths = _shared([(least, good) for least, good, _ in needs], room)
+    return _layout(style, columns, cells, widths, groups)
 
 
-def _need(column: Column, cells: Sequence[str], points: float) -> tuple[float, float]:
-    """Return the least and the natural width of a column.
+def _need(column: Column, cells: Sequence[str], points: float) -> tuple[float, float, float]:
+    """Return the least width of a column, a good one and the natural one.
 
-    Text may be broken into three lines or so, numbers and dates not at all.
+    Text may be broken, well into three lines or so; numbers and dates not at all.
     """
     head = max((width_of(word, points) for word in column.heading.split()), default=0.0)
     cell = max((width_of(text, points) for text in cells), default=0.0)
     natural = max(head, cell)
-    if column.right or column.kind in ("date", "mark"):
-        return natural, natural
-    words = {word for text in cells for word in re.split(r"[\s/]+|(?<=_)|(?<=-)", text)}
-    longest = max((width_of(word[:_UNBROKEN], points) for word in words), default=0.0)
-    return max(head, longest, min(natural, max(natural / 3, 9 * points))), natural
+    if not _breaks(column):
+        return natural, natural, natural
+    words = {word for text in cells for word in re.split(r"[\s/]+|(?<=_)|(?<=-)", spelt(text))}
+    whole = (word if len(word) <= LONG else word[: TOGETHER + 1] for word in words)
+    # A little more than the letters need: mathematical signs differ from type to type.
+    longest = max((1.02 * width_of(word, points) + 1.0 for word in whole), default=0.0)
+    least = max(head, longest)
+    return least, max(least, min(natural, max(natural / 3, 9 * points))), natural
+
+
+def _breaks(column: Column) -> bool:
+    """Say whether cells of a column may be broken into lines."""
+    return column.kind in ("text", "figure")
 
 
 def _shared(needs: Sequence[tuple[float, float]], room: float) -> list[float]:
@@ -169,14 +175,13 @@ def _layout(
     arguments, lines = [], [1] * len(cells[0] if cells else ())
     for column, own, width in zip(columns, cells, widths, strict=True):
         taken = [width_of(text, points) for text in own]
-        if column.right:
-            arguments.append("r")
-        elif max(taken, default=0.0) > width + 0.01:
-            arguments.append(rf">{{\raggedright\arraybackslash}}p{{{width:.0f}pt}}")
+        if _breaks(column) and max(taken, default=0.0) > width + 0.01:
+            side = "left" if column.right else "right"
+            arguments.append(rf">{{\ragged{side}\arraybackslash}}p{{{width:.0f}pt}}")
             needed = [int(1.1 * one // max(width, 1.0)) + 1 for one in taken]
             lines = [max(pair) for pair in zip(lines, needed, strict=True)]
         else:
-            arguments.append("l")
+            arguments.append("r" if column.right else "l")
     spec = f"@{{}}{''.join(arguments)}@{{}}"
     height = sum(lines) + 2 * groups
     return Layout(room > _PORTRAIT, size, points, spec, tuple(widths), height)

@@ -9,7 +9,7 @@ from __future__ import annotations
 
 import unicodedata
 
-__all__ = ["code_points", "escaped"]
+__all__ = ["LONG", "TOGETHER", "code_points", "escaped", "spelt"]
 
 _SPECIAL = {
     "\\": r"\textbackslash{}",
@@ -81,7 +81,10 @@ _ACCENTS = {
 }  # fmt: skip
 _MATHS_ACCENTS = {"\u0300": r"\grave", "\u0301": r"\acute", "\u0308": r"\ddot"}
 _OGONEK = "\u0328"
-_LONG = 14
+
+# A word of more letters than LONG may be broken, so that no column runs into the next; so many
+# of its letters stay together.
+LONG, TOGETHER = 16, 10
 
 
 def escaped(text: str) -> str:
@@ -104,14 +107,26 @@ def escaped(text: str) -> str:
     words = []
     for word in text.split():
         pieces = _pieces(word)
-        if len(word) > _LONG:
-            # A long word may be broken, so that no column runs into the next.
+        if len(word) > LONG:
             pieces = [
-                piece + (r"\allowbreak{}" if place % _LONG == _LONG - 1 else "")
+                piece + (r"\allowbreak{}" if place % TOGETHER == TOGETHER - 1 else "")
                 for place, piece in enumerate(pieces)
             ]
         words.append("".join(pieces))
     return " ".join(word for word in words if word)
+
+
+def spelt(text: str) -> str:
+    """Return a text with what pdflatex does not have as code points, before it is LaTeX."""
+    if text.isascii():
+        return text
+    found = []
+    for letter, marks in _clusters(unicodedata.normalize("NFD", text)):
+        if letter.isspace() or _piece(letter, marks) is not None:
+            found.append(letter + marks)
+        else:
+            found.append("".join(f"[U+{ord(one):04X}] " for one in (letter, *marks)))
+    return "".join(found)
 
 
 def code_points(latex: str) -> bool:
