@@ -275,6 +275,8 @@ class Results:
         if "lag_selection" in module.NEEDS:
             from sweep.engine.lag_selection import lag_selection
 
+            if frames["baseline"].empty:
+                raise InputFault(Fault("lag selection", "the baseline has not been run yet"))
             specification = str(frames["baseline"]["specification"].iloc[0])
             path = None if data is None else Path(data)
             frames["lag_selection"] = lag_selection(self, number, specification, path)

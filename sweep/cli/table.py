@@ -5,9 +5,10 @@ from __future__ import annotations
 from pathlib import Path
 
 import click
+from click.shell_completion import CompletionItem
 
-from sweep.cli.common import sweep_option
-from sweep.cli.paths import DATA, STORE
+from sweep.cli.common import store_argument, sweep_option
+from sweep.cli.paths import DATA
 
 FORMATS = ("latex", "markdown", "csv")
 
@@ -24,15 +25,22 @@ def _list(ctx: click.Context, _: click.Parameter, value: bool) -> None:
     ctx.exit()
 
 
+def _names(ctx: click.Context, param: click.Parameter, incomplete: str) -> list[CompletionItem]:
+    from sweep.report.tables import TABLES
+
+    names = (name.replace(" ", "-") for name in TABLES)
+    return [CompletionItem(name) for name in names if name.startswith(incomplete)]
+
+
 @click.command()
-@click.argument("store", type=STORE)
-@click.argument("name")
+@store_argument
+@click.argument("name", shell_complete=_names)
 @click.option("--list", is_flag=True, is_eager=True, expose_value=False, callback=_list,
               help="List the names of the tables and what they show.")
 @click.option("--format", "form", type=click.Choice(FORMATS), default=None,
               help="How it is written; by the ending of --output (.tex, .md, .csv) if left out, "
               "else markdown.")
-@click.option("--output", type=click.Path(path_type=Path, dir_okay=False), default=None,
+@click.option("-o", "--output", type=click.Path(path_type=Path, dir_okay=False), default=None,
               help="File to write; standard output if left out.")
 @click.option("--finding", default=None, help="Name of the finding; the first if left out.")
 @sweep_option
@@ -42,7 +50,7 @@ def _list(ctx: click.Context, _: click.Parameter, value: bool) -> None:
 @click.option("--stars", is_flag=True,
               help="Mark small p-values of single specifications by stars in print.")
 @click.option("--data", type=DATA, default=None,
-              help="Data file, for lag selection, where it is no longer where the plan says.")
+              help="Data file, for lag selection, where it has moved.")  # fmt: skip
 def command(
     store: Path, name: str, form: str | None, output: Path | None, finding: str | None,
     sweep: int | None, rows: int | None, stars: bool, data: Path | None,
@@ -59,9 +67,14 @@ def command(
     form = form or ("markdown" if output is None else form_of(output))
     if stars and form == "csv":
         raise click.UsageError("--stars marks p-values in print; CSV has none.")
-    table = open_results(store, sweep).table(name, finding, rows=rows, stars=stars, data=data)
+    results = open_results(store, sweep)
+    table = results.table(name, finding, rows=rows, stars=stars, data=data)
+    count = len(results.findings)
+    if finding is None and count > 1:
+        first = results.findings["name"].iloc[0]
+        click.echo(f'Finding: "{first}", the first of {count}; --finding names another.', err=True)
     if output is not None:
-        click.echo(shown_path(table.save(output, form)), err=True)
+        click.echo(shown_path(table.save(output, form)))
         return
     for part in table.parts(form):
         click.echo(part.encode("utf-8"), nl=False)

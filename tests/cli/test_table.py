@@ -90,8 +90,8 @@ def test_a_file_is_written_by_its_ending(
         path = tmp_path / f"flips{ending}"
         assert call("table", store, "flips", "--output", path) == 0
         shown = capsys.readouterr()
-        assert not shown.out
-        assert path.name in shown.err
+        assert path.name in shown.out
+        assert not shown.err
         assert path.read_text(encoding="utf-8") == results.table("flips").text(form)
     assert call("table", store, "flips", "--output", tmp_path / "flips.docx") == 2
     assert "its ending does not say" in capsys.readouterr().err

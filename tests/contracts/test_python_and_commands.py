@@ -38,6 +38,7 @@ OPTIONS = {
     ("run", "rules"): "a rule is for scripts that look at the exit code",
     ("show", "sweeps"): "Results.sweeps is its own method",
     ("schema", "output"): "Python returns the schema",
+    ("table", "output"): "the table that is returned saves itself",
     ("chart", "output"): "Results.save_chart writes files",
     ("chart", "formats"): "Results.save_chart writes files",
     ("compare", "against"): "the other Results are those of a sweep already",
