@@ -17,6 +17,7 @@ import pandas as pd
 
 from store.errors import (
     NotAStore,
+    NotWritten,
     OtherSchema,
     QueryFault,
     StoreDamaged,
@@ -93,6 +94,20 @@ class Database:
         self._connection.execute(sql, params) if params else self._connection.execute(sql)
         frame: pd.DataFrame = self._connection.df()
         return frame
+
+    def copy(self, sql: str, path: Path, options: str) -> None:
+        """Write the rows of a query to a file.
+
+        Raises
+        ------
+        NotWritten
+            The file cannot be written.
+        """
+        quoted = str(path).replace("'", "''")
+        try:
+            self.execute(f"COPY ({sql}) TO '{quoted}' ({options})")
+        except duckdb.IOException as error:
+            raise NotWritten(f"{path}: the file cannot be written. {_told(error)}") from None
 
     def scalar(self, sql: str, params: Parameters = None) -> Any:
         """Return the first cell of a query, or None where it has no rows."""
@@ -236,6 +251,7 @@ def create(
         )
     if not file.parent.is_dir():
         raise StoreMissing(f"{file}: the folder {file.parent} does not exist. Create it first.")
+    _check_folder(file)
     database = Database(file, _connect(file, _config(memory_limit, threads) | _WRITING))
     try:
         with database.transaction():
@@ -268,6 +284,7 @@ def open_writing(
     if not file.exists():
         return create(file, memory_limit=memory_limit, threads=threads)
     open_reading(file, memory_limit=memory_limit, threads=threads).close()
+    _check_folder(file)
     return Database(file, _connect(file, _config(memory_limit, threads) | _WRITING))
 
 
@@ -318,6 +335,15 @@ def open_reading(
         database.close()
         raise
     return database
+
+
+def _check_folder(file: Path) -> None:
+    """Refuse a folder that DuckDB cannot write its log into, which stands beside the store."""
+    if not os.access(file.parent, os.W_OK | os.X_OK):
+        raise StoreError(
+            f"{file}: nothing may be written into the folder of the store. Name another store with "
+            "--store, or change the folder's permissions."
+        )
 
 
 def _config(memory_limit: str, threads: int | None) -> dict[str, Any]:

@@ -7,6 +7,7 @@ __all__ = [
     "BadBatch",
     "NotAStore",
     "NotFound",
+    "NotWritten",
     "NothingStored",
     "OtherSchema",
     "QueryFault",
@@ -58,6 +59,12 @@ class StoreExists(StoreError):
 
 class StoreMissing(StoreError):
     """There is no file, or no folder, at the path; bad usage rather than a bad store."""
+
+    exit_code = 2
+
+
+class NotWritten(StoreError):
+    """A file of an export cannot be written; bad usage rather than a bad store."""
 
     exit_code = 2
 

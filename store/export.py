@@ -8,7 +8,7 @@ from pathlib import Path
 
 from store.database import Database
 
-__all__ = ["FORMATS", "export"]
+__all__ = ["FORMATS", "export", "targets"]
 
 FORMATS = ("parquet", "csv")
 
@@ -31,6 +31,11 @@ _PARTS = {
     "AND c.axis = 'window' AND c.code = w.\"window\" "
     'WHERE w.sweep = {sweep} ORDER BY w.finding, w."window", w.position',
 }
+
+
+def targets(folder: Path, formats: Sequence[str] = FORMATS) -> list[tuple[Path, str]]:
+    """Return the files that an export writes, each with its format."""
+    return [(folder / f"{name}.{form}", form) for form in formats for name in _PARTS]
 
 
 def export(
@@ -97,9 +102,8 @@ def _write(db: Database, sql: str, path: Path, format_: str) -> None:
 def _copy(db: Database, sql: str, path: Path, options: str) -> None:
     """Write a query's rows to a file that appears only when it is complete."""
     part = path.with_name(path.name + ".part")
-    quoted = str(part).replace("'", "''")
     try:
-        db.execute(f"COPY ({sql}) TO '{quoted}' ({options})")
+        db.copy(sql, part, options)
         part.replace(path)
     except BaseException:
         part.unlink(missing_ok=True)

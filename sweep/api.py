@@ -62,8 +62,7 @@ def new(
 
     assert data is not None
     target = Path(output) if output is not None else Path(data).with_suffix(".toml")
-    write_new(target, starter_plan(Path(data)), overwrite=overwrite)
-    return [target]
+    return [write_new(target, starter_plan(Path(data)), "toml", overwrite=overwrite)]
 
 
 def schema() -> dict[str, Any]:

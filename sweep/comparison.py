@@ -14,6 +14,7 @@ from sweep.errors import Fault, InputFault
 from sweep.plan.suggest import suggestion
 from sweep.verdicts.comparison import pair_sentences, window_sentences
 from sweep.verdicts.rolling import episodes
+from sweep.writing import write_whole
 
 if TYPE_CHECKING:
     import altair
@@ -99,7 +100,7 @@ class Comparison:
         text = comparison_page(
             self.title, self.remarks, self.summary, drawn, self._tables, self._shared
         )
-        return _written(Path(path), text)
+        return write_whole(Path(path), text, "html")
 
     def __repr__(self) -> str:
         lines = [self.title, *self.remarks]
@@ -114,18 +115,6 @@ class Comparison:
             items = "".join(f"<li>{html.escape(sentence)}</li>" for sentence in sentences)
             parts.append(f"<p>{html.escape(name)}</p><ul>{items}</ul>")
         return "".join(parts)
-
-
-def _written(target: Path, text: str) -> Path:
-    partial = target.with_name(target.name + ".part")
-    try:
-        partial.write_text(text, encoding="utf-8")
-        partial.replace(target)
-    except OSError as error:
-        partial.unlink(missing_ok=True)
-        problem = f"the page cannot be written ({error.strerror})"
-        raise InputFault(Fault(str(target), problem, "Give another path with --output.")) from None
-    return target
 
 
 def _named(mine: Results, theirs: Results) -> tuple[str, str]:

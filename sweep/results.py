@@ -216,7 +216,7 @@ class Results:
         default = self.store.with_name(f"{self.store.stem}-{known.replace(' ', '-')}")
         files = targets(None if output is None else Path(output), formats, default)
         drawn = self._drawn(known, finding, width, {"axes": axes, "scale": scale})
-        return write_together(contents(drawn, files))
+        return write_together(contents(drawn, files), own=self.own_files())
 
     def _drawn(
         self, name: str, finding: str | int | None, width: str, options: dict[str, Any]
@@ -350,22 +350,27 @@ class Results:
             What :meth:`content` returned, where it is at hand; read anew if None.
         library : Library or None
             The drawing library, where it is being fetched already.
+
+        Raises
+        ------
+        InputFault
+            If the file cannot be written, or there is one that is no HTML page.
         """
         from sweep.report.page import page
+        from sweep.writing import may_replace, write_whole
 
         target = Path(output) if output is not None else self.store.with_suffix(".html")
+        own = self.own_files()
+        may_replace(target, "html", own=own)
         text = page(content or self.content(), library=library)
-        partial = target.with_name(target.name + ".part")
-        try:
-            partial.write_text(text, encoding="utf-8")
-            partial.replace(target)
-        except OSError as error:
-            partial.unlink(missing_ok=True)
-            mend = "Give another path with --output."
-            raise InputFault(
-                Fault(str(target), f"the report cannot be written ({error.strerror})", mend)
-            ) from None
-        return target
+        return write_whole(target, text, "html", own=own)
+
+    def own_files(self) -> list[Path]:
+        """Return the files that the results come from, as far as they are known."""
+        file = Path(json.loads(str(self.info["data_note"]))["file"])
+        return [
+            self.store, self.store.with_suffix(".toml"), self.store.parent / file, file.absolute(),
+        ]  # fmt: skip
 
     def compare(self, other: Results | None = None, *, finding: str | None = None) -> Comparison:
         """Set this sweep beside another one, or its own moving windows side by side.
@@ -400,14 +405,26 @@ class Results:
             Made where it does not exist.
         only : str or None
             ``parquet`` or ``csv``; None for both.
+
+        Raises
+        ------
+        InputFault
+            If the folder cannot be written into, or holds files of these names that are not
+            such exports.
         """
-        from store.export import FORMATS, export
+        from store.export import FORMATS, export, targets
+        from sweep.writing import may_replace, usable_folder
 
         if only is not None and only not in FORMATS:
             raise InputFault(Fault("only", f'"{only}" is no format' + suggestion(only, FORMATS)))
         formats = FORMATS if only is None else (only,)
+        if not str(folder):
+            raise InputFault(Fault("folder", "the name is empty", "Name a folder."))
         with self._open() as database:
-            return export(database, self.sweep, Path(folder), formats)
+            place = usable_folder(Path(folder))
+            for path, kind in targets(place, formats):
+                may_replace(path, kind, own=self.own_files())
+            return export(database, self.sweep, place, formats)
 
     def query(self, sql: str) -> pd.DataFrame:
         """Ask the store a question in SQL; nothing else can be read, nothing written.

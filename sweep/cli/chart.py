@@ -8,7 +8,8 @@ import click
 from click.shell_completion import CompletionItem
 
 from sweep.charts import CHARTS
-from sweep.cli.common import store_argument, sweep_option
+from sweep.cli.common import say_unfinished, store_argument, sweep_option
+from sweep.cli.paths import OUTPUT
 
 _WIDTHS = ("wide", "narrow")
 
@@ -41,7 +42,7 @@ def _split(ctx: click.Context, param: click.Parameter, value: tuple[str, ...]) -
 @click.argument("name", shell_complete=_names)
 @click.option("--list", is_flag=True, is_eager=True, expose_value=False, callback=_list,
               help="List the names of the charts and the questions that they answer.")
-@click.option("-o", "--output", type=click.Path(path_type=Path, dir_okay=False), default=None,
+@click.option("-o", "--output", type=OUTPUT, default=None,
               help="File to write, by its ending; beside STORE, with the chart's name, if left "
               "out.")
 @click.option("--format", "formats", multiple=True, callback=_split, metavar="LIST",
@@ -71,6 +72,7 @@ def command(
     from sweep.engine.check import shown_path
 
     results = open_results(store, sweep)
+    say_unfinished(results)
     written = results.save_chart(
         name, output, formats, finding, width, axes=axes, scale=scale
     )

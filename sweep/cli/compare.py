@@ -8,7 +8,7 @@ from typing import TYPE_CHECKING
 import click
 
 from sweep.cli.common import data_format, print_frame, sweep_option
-from sweep.cli.paths import STORE
+from sweep.cli.paths import OUTPUT, STORE
 
 if TYPE_CHECKING:
     from sweep.comparison import Comparison
@@ -25,7 +25,7 @@ if TYPE_CHECKING:
               help="Print one part as data: counts, verdicts, changed, p_values, survival, data; "
                    "without B: paths, pairs, episodes.")
 @data_format
-@click.option("--output", type=click.Path(path_type=Path), default=None,
+@click.option("--output", type=OUTPUT, default=None,
               help="Also write the comparison as one HTML page.")
 @click.option("--quiet", is_flag=True, help="No messages.")  # fmt: skip
 def command(

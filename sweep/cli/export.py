@@ -7,11 +7,12 @@ from pathlib import Path
 import click
 
 from sweep.cli.common import say_unfinished, store_argument, sweep_option
+from sweep.cli.paths import FOLDER
 
 
 @click.command()
 @store_argument
-@click.argument("folder", type=click.Path(path_type=Path, file_okay=False))
+@click.argument("folder", type=FOLDER)
 @sweep_option
 @click.option("--only", type=click.Choice(("parquet", "csv")), default=None,
               help="One format; both if left out.")  # fmt: skip

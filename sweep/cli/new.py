@@ -6,14 +6,14 @@ from pathlib import Path
 
 import click
 
-from sweep.cli.paths import DATA
+from sweep.cli.paths import DATA, OUTPUT
 
 
 @click.command()
 @click.argument("data", type=DATA, required=False)
 @click.option("--example", is_flag=False, flag_value="us_macro", default=None, metavar="[NAME]",
               help="Copy a shipped example instead: us_macro (the default) or harbour.")
-@click.option("--output", type=click.Path(path_type=Path), default=None,
+@click.option("--output", type=OUTPUT, default=None,
               help="Plan file to write (with --example, the folder); beside DATA if left out.")
 @click.option("--overwrite", is_flag=True, help="Replace files that are there already.")
 def command(

@@ -3,14 +3,30 @@
 from __future__ import annotations
 
 from pathlib import Path
+from typing import Any
 
 import click
 from click.shell_completion import CompletionItem
 
-__all__ = ["DATA", "PLAN", "STORE", "FileWithEnding"]
+__all__ = ["DATA", "FOLDER", "OUTPUT", "PLAN", "STORE", "FileWithEnding", "NamedPath"]
 
 
-class FileWithEnding(click.Path):
+class NamedPath(click.Path):
+    """A path that is not empty: an empty one would mean the folder one is in."""
+
+    def __init__(self, **options: Any) -> None:
+        super().__init__(path_type=Path, **options)
+
+    def convert(
+        self, value: Any, param: click.Parameter | None, ctx: click.Context | None
+    ) -> Any:
+        """Refuse an empty text, otherwise convert as usual."""
+        if value == "":
+            self.fail("the name is empty", param, ctx)
+        return super().convert(value, param, ctx)
+
+
+class FileWithEnding(NamedPath):
     """A path whose completion offers the files that it is meant for.
 
     Parameters
@@ -21,7 +37,7 @@ class FileWithEnding(click.Path):
     """
 
     def __init__(self, *endings: str) -> None:
-        super().__init__(path_type=Path)
+        super().__init__()
         self.endings = endings
 
     def shell_complete(
@@ -46,3 +62,5 @@ class FileWithEnding(click.Path):
 PLAN = FileWithEnding(".toml")
 STORE = FileWithEnding(".duckdb")
 DATA = FileWithEnding(".csv", ".parquet", ".xlsx")
+OUTPUT = NamedPath()
+FOLDER = NamedPath(file_okay=False)

@@ -7,12 +7,13 @@ from pathlib import Path
 import click
 
 from sweep.cli.common import say_unfinished, store_argument, sweep_option
+from sweep.cli.paths import OUTPUT
 
 
 @click.command()
 @store_argument
 @sweep_option
-@click.option("--output", type=click.Path(path_type=Path), default=None,
+@click.option("--output", type=OUTPUT, default=None,
               help="HTML file; STORE with the ending .html if left out.")
 @click.option("--quiet", is_flag=True, help="No message.")  # fmt: skip
 def command(store: Path, sweep: int | None, output: Path | None, quiet: bool) -> None:

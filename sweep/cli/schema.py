@@ -6,9 +6,11 @@ from pathlib import Path
 
 import click
 
+from sweep.cli.paths import OUTPUT
+
 
 @click.command()
-@click.option("--output", type=click.Path(path_type=Path), default=None,
+@click.option("--output", type=OUTPUT, default=None,
               help="File to write; standard output if left out.")  # fmt: skip
 def command(output: Path | None) -> None:
     """Write the JSON Schema of the plan file, for completion and checks in an editor."""
@@ -18,8 +20,6 @@ def command(output: Path | None) -> None:
     if output is None:
         click.echo(text, nl=False)
     else:
-        from sweep.writing import write_new
+        from sweep.writing import write_whole
 
-        write_new(output, text, overwrite=True)
-
-
+        write_whole(output, text, "json")
