@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import os
+from collections.abc import Mapping
 from dataclasses import dataclass
 from pathlib import Path
 
@@ -10,9 +11,9 @@ import numpy as np
 from numpy.typing import NDArray
 
 from sweep.engine.cost import estimate_seconds
-from sweep.engine.filtered import filter_meets_episode
 from sweep.engine.prepare import Prepared, prepare
 from sweep.engine.reasons import REASONS, Reason
+from sweep.engine.unsuited import unsuited
 from sweep.notebook import check_html, duration
 from sweep.plan.choices import AXES
 from sweep.plan.model import Plan
@@ -135,8 +136,8 @@ def check_plan(plan: Plan, *, jobs: int | None = None) -> Check:
     jobs = jobs or default_jobs()
     calendar = prepared.dataset.calendar
     rows = prepared.rows
-    filtered = filter_meets_episode(prepared) & (rows.rule < 0)
-    to_run = (rows.rule < 0) & ~filtered
+    senseless = {reason: there & (rows.rule < 0) for reason, there in unsuited(prepared).items()}
+    to_run = (rows.rule < 0) & ~np.any(list(senseless.values()), axis=0)
     counts = []
     for finding in plan.findings:
         mine = (rows.finding == finding.number) & (rows.request == 0)
@@ -145,7 +146,7 @@ def check_plan(plan: Plan, *, jobs: int | None = None) -> Check:
         plan,
         tuple(_axes(prepared)),
         tuple(counts),
-        tuple(_ruled(prepared, filtered)),
+        tuple(_ruled(prepared, senseless)),
         prepared.notes,
         estimate_seconds(prepared, jobs),
         jobs,
@@ -189,8 +190,10 @@ def _axes(prepared: Prepared) -> list[AxisSize]:
     return sizes
 
 
-def _ruled(prepared: Prepared, filtered: NDArray[np.bool_]) -> list[RuledOut]:
-    """Count what the plan's rules exclude, and filters that meet an episode."""
+def _ruled(
+    prepared: Prepared, senseless: Mapping[Reason, NDArray[np.bool_]]
+) -> list[RuledOut]:
+    """Count what the plan's rules exclude, and choices that make no sense together."""
     plan, rows = prepared.plan, prepared.rows
     found = []
     for finding in plan.findings:
@@ -199,9 +202,10 @@ def _ruled(prepared: Prepared, filtered: NDArray[np.bool_]) -> list[RuledOut]:
             count = int((mine & (rows.rule == number)).sum())
             if count:
                 found.append(RuledOut(finding.name, count, rule.because))
-        count = int((mine & filtered).sum())
-        if count:
-            found.append(RuledOut(finding.name, count, REASONS[Reason.FILTER_EPISODE][1]))
+        for reason, there in senseless.items():
+            count = int((mine & there).sum())
+            if count:
+                found.append(RuledOut(finding.name, count, REASONS[reason][1]))
     return found
 
 

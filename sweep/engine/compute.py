@@ -16,6 +16,7 @@ from sweep.engine.task import LagCoefficients, Outcome, Task
 from sweep.kernels.tails import student_tail
 from sweep.plan.choices import ProcedureChoice
 from sweep.procedures import PROCEDURES, Evidence, Statistic
+from sweep.procedures.lag_augmented import SCALES
 from sweep.screens import SCREENS
 
 __all__ = ["compute_task"]
@@ -33,12 +34,13 @@ for _reason, (_status, _) in REASONS.items():
 
 @dataclass(frozen=True, slots=True)
 class _Group:
-    """Rows of a task that share system, lag choice and deterministic terms."""
+    """Rows of a task that share system, lag choice, deterministic terms and extra lags."""
 
     members: Ints
     system: int
     lag: int
     term: int
+    extra: int
     forward: Orders
     backward: Orders
 
@@ -75,8 +77,10 @@ def compute_task(task: Task) -> Outcome:
 
 
 def _split(task: Task) -> list[Ints]:
-    """Split the rows by system, lag choice and terms."""
+    """Split the rows by system, lag choice, terms and the extra lags of the procedure."""
     key = (task.system.astype(np.int64) * len(task.lags) + task.lag) * len(task.terms) + task.term
+    extra = np.array([choice.extra_lags for choice in task.procedures], dtype=np.int64)
+    key = key * (int(extra.max()) + 1) + extra[task.procedure]
     order = np.argsort(key, kind="stable")
     return np.split(order, np.flatnonzero(np.diff(key[order])) + 1)
 
@@ -86,11 +90,18 @@ def _group(task: Task, orders: OrderBook, members: Ints) -> _Group:
     system, lag, term = int(task.system[first]), int(task.lag[first]), int(task.term[first])
     windows = np.unique(task.window[members]).astype(np.int64)
     choice = task.lags[lag]
+    extra = task.procedures[int(task.procedure[first])].extra_lags
     forward = orders.resolve(task.systems[system], choice, term, windows)
     backward = forward
     if choice.scope == "equation":
         backward = orders.resolve(task.systems[system].turned(), choice, term, windows)
-    return _Group(members, system, lag, term, forward, backward)
+    return _Group(members, system, lag, term, extra, forward, backward)
+
+
+def _suits(task: Task, group: _Group) -> bool:
+    """Say whether the scales of the system's series suit the extra lags, if there are any."""
+    modelled = task.systems[group.system].modelled
+    return not group.extra or all(task.scales[c].name in SCALES for c in modelled)
 
 
 def _pieces(task: Task, group: _Group) -> list[tuple[Equation, Equation, Ints]]:
@@ -98,6 +109,8 @@ def _pieces(task: Task, group: _Group) -> list[tuple[Equation, Equation, Ints]]:
     window = task.window[group.members]
     forward, backward = group.forward, group.backward
     usable = (forward.own[window] > 0) & (backward.own[window] > 0)
+    if not _suits(task, group):
+        return []
     members, window = group.members[usable], window[usable]
     if not members.size:
         return []
@@ -113,9 +126,10 @@ def _pieces(task: Task, group: _Group) -> list[tuple[Equation, Equation, Ints]]:
     pieces = []
     for piece, example in enumerate(window[which].tolist()):
         own, cause, given, start, *turned = (int(part[example]) for part in parts)
-        ahead = Equation.of(system, (own, cause, given), start, group.term, reverse=False)
+        terms = group.term, group.extra
+        ahead = Equation.of(system, (own, cause, given), start, *terms, reverse=False)
         own, cause, given, start = turned
-        back = Equation.of(system, (own, cause, given), start, group.term, reverse=True)
+        back = Equation.of(system, (own, cause, given), start, *terms, reverse=True)
         pieces.append((ahead, back, members[number.reshape(-1) == piece]))
     return pieces
 
@@ -133,7 +147,12 @@ class _Sheet:
         self.coefficients: list[LagCoefficients] = []
 
     def mark(self, group: _Group) -> None:
-        """Give the rows without an order their reason."""
+        """Give the rows without an order, or on a scale that does not suit, their reason."""
+        if not _suits(self.task, group):
+            for name in ("status", "reverse_status"):
+                self.integers[name][group.members] = Status.NOT_APPLICABLE
+            self.integers["reason"][group.members] = Reason.AUGMENTED_SCALE
+            return
         window = self.task.window[group.members]
         for orders, prefix in ((group.backward, "reverse_"), (group.forward, "")):
             reason = orders.reason[window]

@@ -64,7 +64,7 @@ class Digests:
         meaning = [
             *(self._equation(equation) for equation, _ in (forward, backward)),
             sorted([item.kind, item.number] for item in terms),
-            [choice.statistic, choice.covariance, choice.divisor],
+            [choice.form or choice.statistic, choice.covariance, choice.divisor],
         ]
         words = mix(forward[1].rows[windows] ^ np.uint64(_word(canonical_json(meaning))))
         with np.errstate(over="ignore"):
@@ -81,6 +81,7 @@ class Digests:
         return [
             name[equation.effect], name[equation.cause], sorted(name[c] for c in equation.modelled),
             sorted([name[c], lags] for c, lags in equation.exogenous), list(equation.orders),
+            *([equation.extra] if equation.extra else []),
         ]  # fmt: skip
 
     def _column(self, column: int, term: int) -> str:

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections import defaultdict
-from dataclasses import dataclass, field
+from dataclasses import dataclass, field, replace
 
 import numpy as np
 from numpy.typing import NDArray
@@ -44,6 +44,8 @@ class Equation:
         Rows left out after the first usable one.
     term : int
         Choice of deterministic terms.
+    extra : int
+        Further lags of every modelled series, which no hypothesis is about.
     """
 
     effect: int
@@ -53,16 +55,27 @@ class Equation:
     orders: tuple[int, int, int]
     start: int
     term: int
+    extra: int = 0
 
     @classmethod
     def of(
-        cls, system: System, orders: tuple[int, int, int], start: int, term: int, *, reverse: bool
+        cls,
+        system: System,
+        orders: tuple[int, int, int],
+        start: int,
+        term: int,
+        extra: int = 0,
+        *,
+        reverse: bool,
     ) -> Equation:
         """Return the finding's equation, or that of the reverse direction."""
         effect, cause = system.effect, system.cause
         if reverse:
             effect, cause = cause, effect
-        return cls(effect, cause, system.modelled, system.exogenous, orders, start, term)
+        # Rows begin where the longest lag exists, that of series that are there.
+        longest = max(orders[:2] if not system.given else orders)
+        start = max(start, longest + extra)
+        return cls(effect, cause, system.modelled, system.exogenous, orders, start, term, extra)
 
     @property
     def effects(self) -> tuple[int, ...]:
@@ -82,14 +95,15 @@ class Equation:
             self.orders,
             self.start,
             self.term,
+            self.extra,
             self.effects,
         )
 
     def reach(self) -> dict[int, int]:
         """Return the largest lag of every series."""
         own, cause, given = self.orders
-        held = dict.fromkeys(self.modelled, given)
-        held[self.effect], held[self.cause] = own, cause
+        held = dict.fromkeys(self.modelled, given + self.extra)
+        held[self.effect], held[self.cause] = own + self.extra, cause + self.extra
         return held | dict(self.exogenous)
 
     def sample_reach(self) -> dict[int, int]:
@@ -232,10 +246,7 @@ class FitBook:
             )
         for position in wanted:
             effect = effects[position]
-            key = Equation(
-                effect, equation.cause, equation.modelled, equation.exogenous, equation.orders,
-                equation.start, equation.term,
-            )  # fmt: skip
+            key = replace(equation, effect=effect)
             unit = moments.scale[windows, effect] / moments.scale[windows, equation.cause]
             self._fitted[key] = self._spread_out(
                 fit, robust, position, unit, windows, reason[:, position], gram.rows,
@@ -318,9 +329,11 @@ def _regression(
     nuisance = [*columns.tolist()]
     for column, lags in equation.exogenous:
         nuisance += [layout.at(column, lag) for lag in range(lags + 1)]
+    extra = equation.extra
     for column in equation.modelled:
         if column != equation.cause:
-            nuisance += [layout.at(column, lag) for lag in range(1, order[column] + 1)]
+            nuisance += [layout.at(column, lag) for lag in range(1, order[column] + extra + 1)]
+    nuisance += [layout.at(equation.cause, cause + lag) for lag in range(1, extra + 1)]
     return Regression(
         np.array(nuisance, dtype=np.int64),
         np.array([layout.at(equation.cause, lag) for lag in range(1, cause + 1)], dtype=np.int64),

@@ -25,6 +25,7 @@ from sweep.engine.outside_rows import (
 from sweep.engine.prepare import Prepared
 from sweep.engine.reasons import Reason
 from sweep.plan.choices import LagChoice, ProcedureChoice
+from sweep.plan.model import scale_of
 
 __all__ = ["OutsideDirection", "obstacles", "outside"]
 
@@ -103,6 +104,9 @@ def obstacles(prepared: Prepared, chosen: OutsideChoices, *, reverse: bool) -> s
     """Return every reason why a direction cannot have a number, as its rows show."""
     panel = panel_of(prepared, chosen)
     found = {Reason.FILTER_EPISODE} if panel.filtered_across else set()
+    scales = {scale_of(chosen.scale, role, chosen.columns[role]) for role in chosen.series}
+    if chosen.procedure.extra_lags and not scales <= {"level", "log"}:
+        found.add(Reason.AUGMENTED_SCALE)
     orders = _orders(prepared, chosen, panel, reverse=reverse)
     if orders is None:
         orders = (1, 1, 1)
@@ -335,16 +339,17 @@ def _tested(
 
     count, freedom, k = int(full.nobs), int(full.df_resid), full.model.exog.shape[1]
     block = np.eye(k)[k - q :]
-    if procedure.statistic == "F":
+    statistic = procedure.form or procedure.statistic
+    if statistic == "F":
         found = full.f_test(block)
         return float(np.squeeze(found.fvalue)), float(found.pvalue), freedom
-    if procedure.statistic == "Wald" and procedure.divisor != "T":
+    if statistic == "Wald" and procedure.divisor != "T":
         found = full.wald_test(block, use_f=False, scalar=True)
         return float(found.statistic), float(found.pvalue), None
-    if procedure.statistic == "LM":
+    if statistic == "LM":
         # T times the uncentred R² of the restricted residuals on all regressors.
         value = count * float(sm.OLS(restricted, full.model.exog).fit().rsquared)
-    elif procedure.statistic == "LR":
+    elif statistic == "LR":
         # Twice the difference of two Gaussian log-likelihoods, s0/T and s1/T their variances.
         spread = float(restricted @ restricted) / count
         value = 2.0 * float(full.llf) + count * (np.log(2.0 * np.pi * spread) + 1.0)

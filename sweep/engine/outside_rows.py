@@ -198,9 +198,11 @@ def rows_of(
         effect, cause = cause, effect
     own, leading, others = orders
     depth = {effect: own, cause: leading} | dict.fromkeys(chosen.given, others)
-    nuisance = _lags(panel, effect, 1, own)
+    extra = chosen.procedure.extra_lags
+    nuisance = _lags(panel, effect, 1, own + extra)
     for role in chosen.given:
-        nuisance |= _lags(panel, role, 1, others)
+        nuisance |= _lags(panel, role, 1, others + extra)
+    nuisance |= _lags(panel, cause, leading + 1, leading + extra)
     nuisance |= _exogenous(panel, chosen.finding.exogenous)
     tested = _lags(panel, cause, 1, leading)
     # What must exist beside the regressors: current values, and a common sample's lags.
@@ -211,8 +213,8 @@ def rows_of(
     }
     complete = pd.DataFrame({**also, **nuisance, **tested}).notna().all(axis=1)
     unmodelled = [item.lags for item in chosen.finding.exogenous]
-    longest = [own, leading, others if chosen.given else 0, chosen.lags.common, *unmodelled]
-    complete &= panel.begun(max(longest))
+    longest = max(own, leading, others if chosen.given else 0) + extra
+    complete &= panel.begun(max([longest, chosen.lags.common, *unmodelled]))
     index = panel.values.index[complete]
     terms = term_frame(prepared, chosen, panel.values.index)
     return Rows(

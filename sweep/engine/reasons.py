@@ -32,6 +32,7 @@ class Reason(IntEnum):
     FILTER_EPISODE = 8
     NO_COVARIANCE = 9
     NO_NUMBER = 10
+    AUGMENTED_SCALE = 11
 
 
 REASONS: dict[Reason, tuple[Status, str]] = {
@@ -57,6 +58,10 @@ REASONS: dict[Reason, tuple[Status, str]] = {
         "episode left out",
     ),
     Reason.NO_COVARIANCE: (Status.INFEASIBLE, "the covariance of the cause's lags is singular"),
+    Reason.AUGMENTED_SCALE: (
+        Status.NOT_APPLICABLE,
+        "a lag augmented test takes the series in levels or logarithms, not changed otherwise",
+    ),
     Reason.NO_NUMBER: (Status.FAILED, "the computation gave no finite number"),
 }
 RULED = 100

@@ -161,10 +161,14 @@ def _direction(
     orders, table = _orders(choice, system, values, terms, bounds)
     own, cause, given = orders
     unmodelled = max((lags for _, lags in system.exogenous), default=0)
-    start = max(own, cause, given if system.given else 0, unmodelled, choice.common)
+    extra = procedure.extra_lags
+    longest = max(own, cause, given if system.given else 0) + extra
+    start = max(longest, unmodelled, choice.common)
     series = [(values[:, c], 0, lags) for c, lags in system.exogenous]
-    series.append((values[:, system.effect], 1, own))
-    series += [(values[:, c], 1, given) for c in system.given]
+    series.append((values[:, system.effect], 1, own + extra))
+    series += [(values[:, c], 1, given + extra) for c in system.given]
+    # Extra lags of the cause stand before the tested ones, which come last.
+    series.append((values[:, system.cause], cause + 1, cause + extra))
     series.append((values[:, system.cause], 1, cause))
     # The current values and, on a common sample, its lags: they say which rows are complete.
     series += [
@@ -226,10 +230,11 @@ def _statistic(fit: PlainFit, procedure: ProcedureChoice) -> tuple[float, float,
         wald = float(b @ np.linalg.solve(block, b))
     else:
         wald = (t if procedure.divisor == "T" else freedom) * (s0 - s1) / s1
-    if procedure.statistic == "F":
+    statistic = procedure.form or procedure.statistic
+    if statistic == "F":
         value = wald / q
         return value, float(stats.f.sf(value, q, freedom)), freedom
     value = {"Wald": wald, "LR": t * float(np.log(s0 / s1)), "LM": t * (s0 - s1) / s0}[
-        procedure.statistic
+        statistic
     ]
     return value, float(stats.chi2.sf(value, q)), None

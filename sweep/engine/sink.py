@@ -242,8 +242,8 @@ class StoreSink:
         if isinstance(choice, ProcedureChoice):
             tests = plan.finding_axes[finding.number]["test"]
             held = tests.codes if code in tests.codes else tests.every
-            group = [getattr(plan.axes["test"][c], "covariance", "") for c in held]
-            return 1.0 / group.count(choice.covariance)
+            group = [_test_group(plan.axes["test"][c]) for c in held]
+            return 1.0 / group.count(_test_group(choice))
         if isinstance(choice, WindowChoice):
             if isinstance(plan.document.sweep.design, Table):
                 added = code not in plan.finding_axes[finding.number]["window"].codes
@@ -314,6 +314,12 @@ class StoreSink:
             "p_value": np.concatenate([part.p_value for part in parts]),
             "critical_value": np.full(row.size, np.nan),
         }
+
+
+def _test_group(choice: Choice) -> tuple[str, int]:
+    """Return what tests of one quantity in several dresses share: covariance and extra lags."""
+    assert isinstance(choice, ProcedureChoice)
+    return choice.covariance, choice.extra_lags
 
 
 def stored_numerics() -> str:

@@ -273,7 +273,7 @@ def _direction(
     statistic: float, p_value: float, total: float, error: float, partial_r2: float,
     standardised_sum: float | None, coefficients: list[float], errors: list[float],
 ) -> _Direction:  # fmt: skip
-    by_chance = 1.0 if procedure.statistic == "F" else float(q)
+    by_chance = 1.0 if (procedure.form or procedure.statistic) == "F" else float(q)
     values = {
         "statistic": statistic, "p_value": p_value, "coefficient_sum": total,
         "coefficient_sum_se": error, "signed_partial_r2": float(np.sign(total)) * partial_r2,

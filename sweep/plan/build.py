@@ -261,6 +261,14 @@ def procedure_choice(entry: str | ProcedureTable) -> ProcedureChoice:
         entry = ProcedureTable.model_validate({"test": entry})
     meaning: dict[str, Any] = {"statistic": entry.statistic}
     label: str = entry.statistic
+    augmented = entry.statistic == "lag augmented"
+    if augmented:
+        label += f" by {entry.extra_lags}"
+        if entry.extra_lags != 1:
+            meaning["extra_lags"] = entry.extra_lags
+        if entry.form != "F":
+            meaning["form"] = entry.form
+            label += f", {entry.form}"
     if entry.covariance != "classical":
         meaning["covariance"] = entry.covariance
         label += f", {entry.covariance}"
@@ -270,6 +278,7 @@ def procedure_choice(entry: str | ProcedureTable) -> ProcedureChoice:
     return ProcedureChoice(
         entry.name or label, meaning, entry.because, statistic=entry.statistic,
         covariance=entry.covariance, divisor=entry.divisor,
+        extra_lags=entry.extra_lags if augmented else 0, form=entry.form if augmented else "",
     )  # fmt: skip
 
 

@@ -167,16 +167,22 @@ class ProcedureChoice(Choice):
     Attributes
     ----------
     statistic : str
-        ``F``, ``Wald``, ``LR`` or ``LM``.
+        ``F``, ``Wald``, ``LR``, ``LM`` or ``lag augmented``.
     covariance : str
         ``classical``, ``HC0``, ``HC1``, ``HC2`` or ``HC3``.
     divisor : str
         ``T-k`` or ``T`` (classical Wald only).
+    extra_lags : int
+        Lags that the regression has beyond the tested ones; 0 unless it is augmented.
+    form : str
+        ``F`` or ``Wald``: statistic and law of an augmented test; empty otherwise.
     """
 
     statistic: str = "F"
     covariance: str = "classical"
     divisor: str = "T-k"
+    extra_lags: int = 0
+    form: str = ""
 
 
 @dataclass(frozen=True, slots=True)

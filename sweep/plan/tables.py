@@ -54,7 +54,7 @@ TRANSFORMATIONS = Literal[
     "Hodrick-Prescott cycle",
     "Hamilton cycle",
 ]
-STATISTICS = Literal["F", "Wald", "LR", "LM"]
+STATISTICS = Literal["F", "Wald", "LR", "LM", "lag augmented"]
 COVARIANCES = Literal["classical", "HC0", "HC1", "HC2", "HC3"]
 
 
@@ -90,9 +90,9 @@ Episodes = Annotated[
 
 # Names that design and documents speak of and that this version cannot do yet.
 LATER = {
-    "statistic": ("lag augmented", "error correction", "system Wald", "instantaneous"),
+    "statistic": ("error correction", "system Wald", "instantaneous"),
     "covariance": ("HAC",),
-    "keys": ("reference", "draws", "bandwidth", "kernel", "small_sample", "extra_lags", "form"),
+    "keys": ("reference", "draws", "bandwidth", "kernel", "small_sample"),
 }
 
 
@@ -265,6 +265,12 @@ class ProcedureTable(Named):
     divisor: Literal["T-k", "T"] = Field(
         default="T-k", description="Divisor of the residual variance in a classical Wald statistic."
     )
+    extra_lags: StrictInt = Field(
+        default=1, ge=1, description="Lags added and not tested, with lag augmented."
+    )
+    form: Literal["F", "Wald"] = Field(
+        default="F", description="Statistic and law of a lag augmented test."
+    )
 
     @model_validator(mode="before")
     @classmethod
@@ -278,11 +284,16 @@ class ProcedureTable(Named):
 
     @model_validator(mode="after")
     def _fits(self) -> ProcedureTable:
-        if self.covariance != "classical" and self.statistic not in ("F", "Wald"):
+        augmented = self.statistic == "lag augmented"
+        for key in ("extra_lags", "form"):
+            if key in self.model_fields_set and not augmented:
+                _refuse(f'"{key}" goes with the test "lag augmented"')
+        form = self.form if augmented else self.statistic
+        if self.covariance != "classical" and form not in ("F", "Wald"):
             _refuse(
                 f"{self.statistic} has no form with covariance {self.covariance}; use F or Wald"
             )
-        if self.divisor == "T" and (self.statistic != "Wald" or self.covariance != "classical"):
+        if self.divisor == "T" and (form != "Wald" or self.covariance != "classical"):
             _refuse('divisor = "T" belongs to the classical Wald statistic')
         return self
 

@@ -7,13 +7,14 @@ from __future__ import annotations
 
 from typing import cast
 
-from sweep.procedures import f_form, likelihood_ratio, score, wald
+from sweep.procedures import f_form, lag_augmented, likelihood_ratio, score, wald
 from sweep.procedures.record import Evidence, Procedure, Statistic
 
 __all__ = ["PROCEDURES", "Evidence", "Procedure", "Statistic", "numerics"]
 
 PROCEDURES: dict[str, Procedure] = {
-    module.NAME: cast(Procedure, module) for module in (f_form, wald, likelihood_ratio, score)
+    module.NAME: cast(Procedure, module)
+    for module in (f_form, wald, likelihood_ratio, score, lag_augmented)
 }
 
 ENGINE_NUMERICS = 2

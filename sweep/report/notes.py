@@ -37,6 +37,10 @@ METHOD_NOTES = (
             "χ²(q) for the Wald form. V = (X′X)⁻¹M(X′X)⁻¹ with M = Σ e²xx′ (HC0; White 1980), "
             "times T/(T − k) for HC1, with e²/(1 − h) for HC2 and e²/(1 − h)² for HC3 (MacKinnon "
             "& White 1985), h being the leverage of the row.",
+            "The lag augmented test (Toda & Yamamoto 1995; Dolado & Lütkepohl 1996) adds d lags of "
+            "every modelled series to the regression in levels or logarithms and tests the first p "
+            "of the cause, in the F or the Wald form; with d at least the largest order of "
+            "integration its law is the usual one whether or not the series are integrated.",
             "Tail probabilities come from survival functions, never from one minus a distribution "
             "function.",
         ),

@@ -16,6 +16,7 @@ from sweep.cli import COMMANDS
 from sweep.panel.deterministics import TERM_FAMILIES, TermContext
 from sweep.panel.transforms import TRANSFORMS
 from sweep.panel.windows import WINDOW_FAMILIES
+from sweep.plan.build import procedure_choice
 from sweep.plan.choices import ProcedureChoice
 from sweep.procedures import PROCEDURES, Evidence
 from sweep.report.tables import TABLES
@@ -41,7 +42,7 @@ def test_procedure(name: str) -> None:
     evidence = Evidence(
         np.array([1.0, 0.0]), np.array([2.0, 2.0]), np.array([100, 100]), 7, 3, {}
     )
-    choice = ProcedureChoice(name, {}, statistic=name)
+    choice = procedure_choice(name)
     assert procedure.applies(choice) is None
     found = procedure.compute(evidence, choice)
     assert found.value[0] > 0

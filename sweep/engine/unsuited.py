@@ -1,22 +1,45 @@
-"""Which rows of a plan take a filter of the whole window across an episode left out of it."""
+"""Rows of a plan whose choices make no sense together, known before anything is estimated."""
 
 from __future__ import annotations
+
+from collections.abc import Callable
 
 import numpy as np
 from numpy.typing import NDArray
 
 from sweep.engine.prepare import Prepared
+from sweep.engine.reasons import Reason
 from sweep.panel.transforms import TRANSFORMS
 from sweep.panel.windows import Positions
 from sweep.plan.choices import AXES, ConditioningChoice, MeasureChoice, TransformationChoice
 from sweep.plan.model import Finding, scale_of
+from sweep.procedures.lag_augmented import SCALES
 
-__all__ = ["filter_meets_episode", "meets_episode"]
+__all__ = ["meets_episode", "unsuited"]
 
 Flags = NDArray[np.bool_]
 
 
-def filter_meets_episode(prepared: Prepared) -> Flags:
+def unsuited(prepared: Prepared) -> dict[Reason, Flags]:
+    """Say which rows are ``not applicable``, by the reason that is stored with them.
+
+    Parameters
+    ----------
+    prepared : Prepared
+
+    Returns
+    -------
+    dict of Reason to ndarray of bool, shape (rows,)
+        No row has two reasons.
+    """
+    off_scale = _augmented_off_scale(prepared)
+    return {
+        Reason.AUGMENTED_SCALE: off_scale,
+        Reason.FILTER_EPISODE: _filter_meets_episode(prepared) & ~off_scale,
+    }
+
+
+def _filter_meets_episode(prepared: Prepared) -> Flags:
     """Say which rows have no numbers because a two-sided filter would cross an episode.
 
     Parameters
@@ -34,11 +57,34 @@ def filter_meets_episode(prepared: Prepared) -> Flags:
     for finding in prepared.plan.findings:
         mine = np.flatnonzero(rows.finding == finding.number)
         codes = {axis: rows.codes[axis][mine] for axis in AXES}
-        filtered = _filtered(prepared, finding)
+        filtered = _some_scale(prepared, finding, lambda name: TRANSFORMS[name].two_sided)
         here = filtered[codes["measures"], codes["transformation"], codes["conditioning"]]
         for code, positions in prepared.windows[finding.number].items():
             at = np.flatnonzero(here & (codes["window"] == code))
             found[mine[at]] = meets_episode(positions)[rows.position[mine[at]]]
+    return found
+
+
+def _augmented_off_scale(prepared: Prepared) -> Flags:
+    """Say which rows ask for extra lags on series that are not in levels or logarithms.
+
+    Parameters
+    ----------
+    prepared : Prepared
+
+    Returns
+    -------
+    ndarray of bool, shape (rows,)
+        True where the row is ``not applicable`` for that reason.
+    """
+    plan, rows = prepared.plan, prepared.rows
+    augmented = np.array([getattr(c, "extra_lags", 0) > 0 for c in plan.axes["test"]])
+    found = np.zeros(rows.count, bool)
+    for finding in plan.findings:
+        mine = np.flatnonzero((rows.finding == finding.number) & augmented[rows.codes["test"]])
+        codes = {axis: rows.codes[axis][mine] for axis in AXES}
+        changed = _some_scale(prepared, finding, lambda name: name not in SCALES, modelled=True)
+        found[mine] = changed[codes["measures"], codes["transformation"], codes["conditioning"]]
     return found
 
 
@@ -50,9 +96,17 @@ def meets_episode(positions: Positions) -> Flags:
     return meets
 
 
-def _filtered(prepared: Prepared, finding: Finding) -> Flags:
-    """Say where some series of the regression is filtered, (measures, transformation, given)."""
+def _some_scale(
+    prepared: Prepared, finding: Finding, is_meant: Callable[[str], bool], *, modelled: bool = False
+) -> Flags:
+    """Say where some series is on a scale that is meant, (measures, transformation, given).
+
+    All series of the regression count, or only those that are ``modelled``.
+    """
     plan = prepared.plan
+    roles = finding.roles
+    if modelled:
+        roles = (finding.cause, finding.effect, *finding.given)
     axes = ("measures", "transformation", "conditioning")
     table = np.zeros([len(plan.axes[axis]) for axis in axes], bool)
     held = [plan.finding_axes[finding.number][axis].every for axis in axes]
@@ -67,8 +121,8 @@ def _filtered(prepared: Prepared, finding: Finding) -> Flags:
                 assert isinstance(given, ConditioningChoice)
                 names = {
                     scale_of(scales, role, measure.column(role))
-                    for role in finding.roles
+                    for role in roles
                     if role not in given.without
                 }
-                table[m, t, c] = any(TRANSFORMS[name].two_sided for name in names)
+                table[m, t, c] = any(is_meant(name) for name in names)
     return table
