@@ -51,7 +51,8 @@ transformations = [
 tests = [
   "F", "Wald", "LR", "LM", { test = "Wald", divisor = "T" }, { test = "F", covariance = "HC0" },
   { test = "F", covariance = "HC1" }, { test = "Wald", covariance = "HC2" },
-  { test = "F", covariance = "HC3" },
+  { test = "F", covariance = "HC3" }, { test = "lag augmented", extra_lags = 2 },
+  { test = "lag augmented", form = "Wald", covariance = "HC1" },
 ]
 conditioning = ["given", "pairwise"]
 measures = { x = ["x", { series = "w", inverted = true }] }
