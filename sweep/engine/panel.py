@@ -35,7 +35,10 @@ class TaskPanel:
 
     def __init__(self, task: Task) -> None:
         self.task = task
-        orders = [max(c.own, c.cause, c.given, c.maximum, c.common) for c in task.lags]
+        extra = max(choice.extra_lags for choice in task.procedures)
+        orders = [
+            max(max(c.own, c.cause, c.given, c.maximum) + extra, c.common) for c in task.lags
+        ]
         exogenous = [lags for system in task.systems for _, lags in system.exogenous]
         self.lags = max([1, *orders, *exogenous])
         self._local: Floats | None = None
