@@ -7,8 +7,8 @@ from pathlib import Path
 import click
 from click.shell_completion import CompletionItem
 
-from sweep.cli.common import store_argument, sweep_option
-from sweep.cli.paths import DATA
+from sweep.cli.common import say_unfinished, store_argument, sweep_option
+from sweep.cli.paths import DATA, OUTPUT
 
 FORMATS = ("latex", "markdown", "csv")
 
@@ -40,7 +40,7 @@ def _names(ctx: click.Context, param: click.Parameter, incomplete: str) -> list[
 @click.option("--format", "form", type=click.Choice(FORMATS), default=None,
               help="How it is written; by the ending of --output (.tex, .md, .csv) if left out, "
               "else markdown.")
-@click.option("-o", "--output", type=click.Path(path_type=Path, dir_okay=False), default=None,
+@click.option("-o", "--output", type=OUTPUT, default=None,
               help="File to write; standard output if left out.")
 @click.option("--finding", default=None, help="Name of the finding; the first if left out.")
 @sweep_option
@@ -68,6 +68,7 @@ def command(
     if stars and form == "csv":
         raise click.UsageError("--stars marks p-values in print; CSV has none.")
     results = open_results(store, sweep)
+    say_unfinished(results)
     table = results.table(name, finding, rows=rows, stars=stars, data=data)
     count = len(results.findings)
     if finding is None and count > 1:

@@ -139,6 +139,28 @@ def test_charts_replace_files_of_their_kind_only(
     assert call("chart", "plan.duckdb", "windows", "-o", "numbers.csv") == 0
 
 
+@pytest.mark.parametrize(
+    ("target", "replaced"),
+    [("small.csv", False), ("table.csv", False), ("own.toml", False), ("plan.duckdb", False),
+     ("notes.md", True), ("notes.txt", False)],
+)  # fmt: skip
+def test_tables_replace_files_of_their_kind_only(
+    store: Path, target: str, replaced: bool, monkeypatch: pytest.MonkeyPatch,
+    capsys: pytest.CaptureFixture[str],
+) -> None:  # fmt: skip
+    monkeypatch.chdir(store.parent)
+    Path("notes.md").write_text("old", encoding="utf-8")
+    before = contents(store.parent)
+    form = "csv" if target.endswith(".csv") else "markdown"
+    arguments = ("table", "plan.duckdb", "survival", "--format", form, "-o")
+    assert call(*arguments, target) == (0 if replaced else 2)
+    assert ("not written over" in capsys.readouterr().err) is not replaced
+    assert (contents(store.parent) == before) is not replaced
+    assert call("table", "plan.duckdb", "survival", "-o", "numbers.csv") == 0
+    assert call("table", "plan.duckdb", "attrition", "-o", "numbers.csv") == 0
+    assert call(*arguments, "") == 2
+
+
 def test_an_export_replaces_only_exports(store: Path, capsys: pytest.CaptureFixture[str]) -> None:
     folder = store.parent / "files"
     assert call("export", store, folder) == 0

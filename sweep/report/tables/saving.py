@@ -7,6 +7,7 @@ from typing import TYPE_CHECKING
 
 from sweep.errors import Fault, InputFault
 from sweep.plan.suggest import suggestion
+from sweep.writing import may_replace
 
 if TYPE_CHECKING:
     from .model import Table
@@ -15,6 +16,7 @@ __all__ = ["ENDINGS", "form_of", "save"]
 
 # Ending of a file and how a table is written into it.
 ENDINGS = {".tex": "latex", ".md": "markdown", ".csv": "csv", ".html": "html"}
+_KINDS = {form: ending.removeprefix(".") for ending, form in ENDINGS.items()}
 
 
 def form_of(path: Path) -> str:
@@ -41,16 +43,18 @@ def save(table: Table, path: Path, form: str | None = None) -> Path:
     ----------
     table : Table
     path : Path
-        A file that is there already is replaced.
+        A file of the same kind that is there already is replaced.
     form : str or None
         ``latex``, ``markdown``, ``csv`` or ``html``; None for what the ending says.
 
     Raises
     ------
     InputFault
-        If the ending says nothing, or the file cannot be written.
+        If the ending says nothing, the file cannot be written, or there is one of another kind.
     """
     form = form or form_of(path)
+    header = next(iter(table.parts(form)), "").split("\n", 1)[0].strip()
+    may_replace(path, _KINDS[form], header=header)
     partial = path.with_name(path.name + ".part")
     try:
         with partial.open("w", encoding="utf-8", newline="") as file:
