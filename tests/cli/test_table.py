@@ -112,10 +112,10 @@ def test_a_failure_leaves_nothing_half_written(results: Results, tmp_path: Path)
 
     object.__setattr__(table, "stream", breaking)
     kept = tmp_path / "list.csv"
-    kept.write_text("as it was", encoding="utf-8")
+    kept.write_text("specification\nas it was", encoding="utf-8")
     with pytest.raises(RuntimeError):
         table.save(kept)
-    assert kept.read_text(encoding="utf-8") == "as it was"
+    assert kept.read_text(encoding="utf-8") == "specification\nas it was"
     assert list(tmp_path.iterdir()) == [kept]
 
 
