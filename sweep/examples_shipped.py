@@ -11,8 +11,11 @@ from sweep.plan.suggest import suggestion
 
 __all__ = ["EXAMPLES", "copy_example"]
 
-# Example and the data file that its plan reads.
-EXAMPLES = {"us_macro": "data/us_macro.csv", "harbour": "data/harbour.csv"}
+# Example and its files: the plan, a round of referees that starts from it, the data.
+EXAMPLES = {
+    "us_macro": ("us_macro.toml", "us_macro_referees.toml", "data/us_macro.csv"),
+    "harbour": ("harbour.toml", "harbour_referees.toml", "data/harbour.csv"),
+}
 
 
 def examples_folder() -> Path:
@@ -25,7 +28,7 @@ def examples_folder() -> Path:
 
 
 def copy_example(name: str, folder: Path, *, overwrite: bool = False) -> list[Path]:
-    """Copy a plan and its data into a folder.
+    """Copy the files of an example into a folder; the plan is the first path returned.
 
     Raises
     ------
@@ -37,7 +40,7 @@ def copy_example(name: str, folder: Path, *, overwrite: bool = False) -> list[Pa
             Fault("--example", f'no example is called "{name}"' + suggestion(name, EXAMPLES))
         )
     written = []
-    pairs = [(f"{name}.toml", folder / f"{name}.toml"), (EXAMPLES[name], folder / EXAMPLES[name])]
+    pairs = [(file, folder / file) for file in EXAMPLES[name]]
     for _, target in pairs:
         if target.exists() and not overwrite:
             raise InputFault(
