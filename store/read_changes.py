@@ -61,7 +61,8 @@ def single_changes(db: Database, sweep: int, finding: int) -> pd.DataFrame:
         (admissible rows whose answer differs from the baseline's), ``flips_forward,
         flips_reverse, flips_sign`` (those in which the test of cause to effect, the reverse
         one, or the sign answers otherwise; a row may count under several), ``p_value`` (the
-        row's, or the median over positions), ``p_low, p_high`` (least and greatest),
+        row's, or the median over admissible positions, over all that could be run where none
+        is; so for what follows), ``p_low, p_high`` (least and greatest),
         ``reverse_p_value`` (median), ``z_change, reverse_z_change`` (median z less the
         baseline's z, z the inverse normal survival function of p held to ±37),
         ``coefficient_sum`` (median), ``status`` (``ok`` where any row is admissible, else the

@@ -35,8 +35,9 @@ def answers(db: Database, sweep: int, finding: int) -> pd.DataFrame:
         ``request, request_name, asked_by, asks, changes`` (axes that differ), ``changed``
         (words, such as ``lags 8; test F, HC3``), ``planned`` (whether the plan had the row
         already), ``positions, admissible, survived, order_used, observations, statistic,
-        df_num, df_den, p_value`` (median over positions), ``p_low, p_high,
-        reverse_p_value, coefficient_sum`` (signs turned where a measure is inverted),
+        df_num, df_den, p_value`` (median over the admissible positions, over all that could be
+        run where none is), ``p_low, p_high, reverse_p_value, coefficient_sum`` (signs turned
+        where a measure is inverted),
         ``coefficient_sum_se, status, reason, specification`` (missing where several
         positions share the row), ``baseline_p_value, baseline_survives``.
     """

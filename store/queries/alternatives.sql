@@ -1,6 +1,7 @@
 -- The baseline and each choice that differs from it on one axis, with all that is stored of them.
--- Where the choice is a moving window, numbers are medians over its positions and what has no
--- median (statistic, degrees of freedom, standard error) is left out.
+-- Where the choice is a moving window, numbers are medians over its admissible positions (over all
+-- that could be run where none is) and what has no median (statistic, degrees of freedom, standard
+-- error) is left out.
 , near AS (
     SELECT
         *,
@@ -13,6 +14,15 @@
     FROM changed
     WHERE changes <= 1
 ),
+shown_near AS (
+    SELECT
+        *,
+        CASE WHEN bool_or(admissible) OVER (
+                PARTITION BY axis, lags, deterministics, "window", transformation, test,
+                    conditioning, measures) THEN admissible
+             ELSE TRUE END AS shown
+    FROM near
+),
 summed AS (
     SELECT
         axis, lags, deterministics, "window", transformation, test, conditioning, measures,
@@ -24,14 +34,15 @@ summed AS (
         min(observations) AS observations_least, max(observations) AS observations_most,
         median(statistic) AS statistic, median(reverse_statistic) AS reverse_statistic,
         min(df_num) AS df_num, min(df_den) AS df_den,
-        median(p_value) AS p_value, median(reverse_p_value) AS reverse_p_value,
-        median(coefficient_sum) AS coefficient_sum,
-        median(coefficient_sum_se) AS coefficient_sum_se,
-        median(reverse_coefficient_sum) AS reverse_coefficient_sum,
+        median(p_value) FILTER (shown) AS p_value,
+        median(reverse_p_value) FILTER (shown) AS reverse_p_value,
+        median(coefficient_sum) FILTER (shown) AS coefficient_sum,
+        median(coefficient_sum_se) FILTER (shown) AS coefficient_sum_se,
+        median(reverse_coefficient_sum) FILTER (shown) AS reverse_coefficient_sum,
         min(position) AS first_position, max(position) AS last_position,
         min(loss) AS loss, arg_min(reason, loss) AS reason, bool_or(lacks_sign) AS lacks_sign,
         min(spec_high) AS spec_high, min(spec_low) AS spec_low
-    FROM near
+    FROM shown_near
     GROUP BY ALL
 ),
 labels AS (

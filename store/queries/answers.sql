@@ -1,6 +1,7 @@
 -- What each request asks for, beside the baseline: every way to put the request's choices into
 -- the baseline, one axis or several.  Rows count whether they were planned or added.  Positions
--- of a moving window are one row.
+-- of a moving window are one row; its p-values and sum are over the admissible positions, over all
+-- that could be run where none is admissible.
 WITH wanted AS (
     SELECT
         request,
@@ -59,6 +60,15 @@ asked AS (
         AND (j.conditioning = h.conditioning OR list_contains(q.conditioning, j.conditioning))
         AND (j.measures = h.measures OR list_contains(q.measures, j.measures))
 ),
+shown_asked AS (
+    SELECT
+        *,
+        CASE WHEN bool_or(admissible) OVER (
+                PARTITION BY asked_by_request, lags, deterministics, "window", transformation,
+                    test, conditioning, measures) THEN admissible
+             ELSE counted_status = 0 END AS shown
+    FROM asked
+),
 summed AS (
     SELECT
         asked_by_request AS request,
@@ -70,11 +80,11 @@ summed AS (
         count(*) FILTER (admissible) AS admissible,
         count(*) FILTER (admissible AND survives) AS survived,
         bool_and(request = 0) AS planned,
-        median(p_value) FILTER (counted_status = 0) AS p_value,
-        min(p_value) FILTER (counted_status = 0) AS p_low,
-        max(p_value) FILTER (counted_status = 0) AS p_high,
-        median(reverse_p_value) FILTER (counted_status = 0) AS reverse_p_value,
-        median(coefficient_sum * orientation) FILTER (counted_status = 0) AS coefficient_sum,
+        median(p_value) FILTER (shown) AS p_value,
+        min(p_value) FILTER (shown) AS p_low,
+        max(p_value) FILTER (shown) AS p_high,
+        median(reverse_p_value) FILTER (shown) AS reverse_p_value,
+        median(coefficient_sum * orientation) FILTER (shown) AS coefficient_sum,
         CASE WHEN count(*) = 1 THEN any_value(coefficient_sum_se) END AS coefficient_sum_se,
         CASE WHEN count(*) = 1 THEN any_value(statistic) END AS statistic,
         CASE WHEN count(*) = 1 THEN any_value(df_num) END AS df_num,
@@ -87,7 +97,7 @@ summed AS (
         bool_or(lacks_sign) AS lacks_sign,
         CASE WHEN count(*) = 1 THEN printf('%016x%016x', any_value(spec_high), any_value(spec_low))
             END AS specification
-    FROM asked
+    FROM shown_asked
     GROUP BY ALL
     HAVING changes > 0
 ),

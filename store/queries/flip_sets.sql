@@ -2,7 +2,8 @@
 -- does alone at the same window position.  A pair that turns does so jointly where both changes
 -- alone are admissible and neither turns; contained where one of them turns alone already;
 -- unsettled where neither turns but one of them could not be judged.
--- "sets": one row for each set of changed choices, over the positions of its moving window.
+-- "sets": one row for each set of changed choices, over the positions of its moving window;
+-- p-values are those of admissible positions.
 , one_or_two AS (
     SELECT
         *,
@@ -37,6 +38,7 @@ near AS (
         r.*,
         coalesce(a.admissible AND (r.changes = 1 OR b.admissible), FALSE) AS settled,
         coalesce(a.turns OR b.turns, FALSE) AS holds_a_flip,
+        a.admissible AS first_admissible, b.admissible AS second_admissible,
         CASE WHEN a.counted_status = 0 THEN a.p_value END AS first_p,
         CASE WHEN b.counted_status = 0 THEN b.p_value END AS second_p
     FROM one_or_two AS r
@@ -62,17 +64,19 @@ sets AS (
         count(*) FILTER (n.turns_forward) AS flips_forward,
         count(*) FILTER (n.turns_reverse) AS flips_reverse,
         count(*) FILTER (n.turns_sign) AS flips_sign,
-        median(n.p_value) FILTER (n.counted_status = 0) AS p_value,
-        min(n.p_value) FILTER (n.counted_status = 0) AS p_low,
-        max(n.p_value) FILTER (n.counted_status = 0) AS p_high,
-        quantile_disc(n.p_value, 0.5) FILTER (n.counted_status = 0) AS p_middle_low,
-        -quantile_disc(-n.p_value, 0.5) FILTER (n.counted_status = 0) AS p_middle_high,
-        median(n.reverse_p_value) FILTER (n.counted_status = 0) AS reverse_p_value,
-        quantile_disc(n.reverse_p_value, 0.5) FILTER (n.counted_status = 0) AS reverse_middle_low,
-        -quantile_disc(-n.reverse_p_value, 0.5) FILTER (n.counted_status = 0)
+        median(n.p_value) FILTER (n.admissible) AS p_value,
+        min(n.p_value) FILTER (n.admissible) AS p_low,
+        max(n.p_value) FILTER (n.admissible) AS p_high,
+        quantile_disc(n.p_value, 0.5) FILTER (n.admissible) AS p_middle_low,
+        -quantile_disc(-n.p_value, 0.5) FILTER (n.admissible) AS p_middle_high,
+        median(n.reverse_p_value) FILTER (n.admissible) AS reverse_p_value,
+        quantile_disc(n.reverse_p_value, 0.5) FILTER (n.admissible) AS reverse_middle_low,
+        -quantile_disc(-n.reverse_p_value, 0.5) FILTER (n.admissible)
             AS reverse_middle_high,
-        median(n.first_p) AS first_p_value,
-        median(n.second_p) AS second_p_value,
+        coalesce(median(n.first_p) FILTER (n.first_admissible), median(n.first_p))
+            AS first_p_value,
+        coalesce(median(n.second_p) FILTER (n.second_admissible), median(n.second_p))
+            AS second_p_value,
         min(w.window_start) FILTER (n.turns) AS window_start,
         max(w.window_end) FILTER (n.turns) AS window_end,
         any_value(n.spec_high) AS spec_high,

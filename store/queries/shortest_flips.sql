@@ -1,6 +1,7 @@
 -- Sets of changed choices under which the finding turns, fewest changes first; the positions of a
 -- moving window are one set.  Among equals comes first what turns in the larger part of its
--- positions, then the p-value nearest to the baseline's.
+-- positions, then the p-value nearest to the baseline's.  p-values are medians over admissible
+-- positions.
 , sets AS (
     SELECT
         c.changes,
@@ -8,8 +9,8 @@
         count(*) AS positions,
         count(*) FILTER (c.admissible) AS admissible,
         count(*) FILTER (c.turns) AS flips,
-        median(c.p_value) FILTER (c.counted_status = 0) AS p_value,
-        median(c.reverse_p_value) FILTER (c.counted_status = 0) AS reverse_p_value,
+        median(c.p_value) FILTER (c.admissible) AS p_value,
+        median(c.reverse_p_value) FILTER (c.admissible) AS reverse_p_value,
         min(c.position) FILTER (c.turns) AS first_position,
         max(c.position) FILTER (c.turns) AS last_position,
         min(c.spec_high) AS spec_high, min(c.spec_low) AS spec_low,

@@ -1,6 +1,7 @@
 -- One row for each choice that differs from the baseline on its axis alone.
 -- p_middle_low and p_middle_high are the two middle values, from which the reader takes the
--- median of z; p_value is their mean, the median.  So for the reverse.
+-- median of z; p_value is their mean, the median.  So for the reverse.  All of these and the sum
+-- are over the admissible positions; over all that could be run where none is admissible.
 , singles AS (
     SELECT
         *,
@@ -16,6 +17,13 @@
     FROM changed
     WHERE changes = 1
 ),
+shown_singles AS (
+    SELECT
+        *,
+        CASE WHEN bool_or(admissible) OVER (PARTITION BY axis, code) THEN admissible
+             ELSE counted_status = 0 END AS shown
+    FROM singles
+),
 summed AS (
     SELECT
         axis, code,
@@ -27,21 +35,21 @@ summed AS (
         count(*) FILTER (turns_forward) AS flips_forward,
         count(*) FILTER (turns_reverse) AS flips_reverse,
         count(*) FILTER (turns_sign) AS flips_sign,
-        median(p_value) FILTER (counted_status = 0) AS p_value,
-        min(p_value) FILTER (counted_status = 0) AS p_low,
-        max(p_value) FILTER (counted_status = 0) AS p_high,
-        quantile_disc(p_value, 0.5) FILTER (counted_status = 0) AS p_middle_low,
-        -quantile_disc(-p_value, 0.5) FILTER (counted_status = 0) AS p_middle_high,
-        median(reverse_p_value) FILTER (counted_status = 0) AS reverse_p_value,
-        quantile_disc(reverse_p_value, 0.5) FILTER (counted_status = 0) AS reverse_middle_low,
-        -quantile_disc(-reverse_p_value, 0.5) FILTER (counted_status = 0) AS reverse_middle_high,
-        median(coefficient_sum) FILTER (counted_status = 0) AS coefficient_sum,
+        median(p_value) FILTER (shown) AS p_value,
+        min(p_value) FILTER (shown) AS p_low,
+        max(p_value) FILTER (shown) AS p_high,
+        quantile_disc(p_value, 0.5) FILTER (shown) AS p_middle_low,
+        -quantile_disc(-p_value, 0.5) FILTER (shown) AS p_middle_high,
+        median(reverse_p_value) FILTER (shown) AS reverse_p_value,
+        quantile_disc(reverse_p_value, 0.5) FILTER (shown) AS reverse_middle_low,
+        -quantile_disc(-reverse_p_value, 0.5) FILTER (shown) AS reverse_middle_high,
+        median(coefficient_sum) FILTER (shown) AS coefficient_sum,
         min(loss) AS loss,
         arg_min(reason, loss) AS reason,
         bool_or(lacks_sign) AS lacks_sign,
         any_value(spec_high) AS spec_high,
         any_value(spec_low) AS spec_low
-    FROM singles
+    FROM shown_singles
     GROUP BY axis, code
 )
 SELECT

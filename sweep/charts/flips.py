@@ -7,7 +7,7 @@ from typing import Any
 
 import pandas as pd
 
-from sweep.verdicts.flips import pair_sentence, step_words, turned_by
+from sweep.verdicts.flips import pair_sentence, positions, step_words, turned_by
 from sweep.verdicts.words import counted, missing, number, p_text, period_text
 
 from . import marks, p_track
@@ -99,8 +99,8 @@ def _subtitle(context: Context, frames: Mapping[str, pd.DataFrame], arranged: Ar
         context.lead,
         p_track.baseline_words(baseline, context, "after the changes named at the left"),
         "Disc: survives then; square: does not. Small ticks: each change of a pair alone. Moving "
-        "windows: median over all positions, mark for what most of them do; of a pair they "
-        "stand where neither turns alone if that is so in a position.",
+        "windows: median over the admissible positions, mark for what most of them do; of a pair "
+        "they stand where neither turns alone if that is so in a position.",
         _counts(frames["flip_counts"], baseline),
         context.losses,
     ]
@@ -261,7 +261,6 @@ def _named(record: Record, context: Context) -> str:
     steps = [step_words(record, which) for which in ("first", "second")]
     found = f"p {p_text(record['p_value'])}"
     if int(record["positions"]) > 1:
-        flips, rows = int(record["flips"]), int(record["admissible"])
-        found = f"{flips:,} of {rows:,} positions; median {found}"
+        found = f"{int(record['flips']):,} of {positions(record)}; median {found}"
     by = turned_by(record, context.claim)
     return f"{' with '.join(step for step in steps if step)} ({found}; by {by})"

@@ -64,7 +64,8 @@ def _subtitle(context: Context, baseline: Mapping[str, Any], arranged: Arrangeme
     words.append(p_track.baseline_words(baseline, context, stroke))
     words.append(
         "Disc: survives; square: does not; grey ring: screened out; small dot: not run. Moving "
-        "windows: median position, band over all positions."
+        "windows: median and band over the admissible positions, over all that were run where "
+        "none is."
     )
     words.append(f"{counted(arranged.total, 'choice')} changed one at a time. {context.losses}")
     words.append(arranged.thinned)

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from typing import TYPE_CHECKING, Any
 
+from .flips import positions
 from .words import missing, p_text, percent, reason_text, share_text
 
 if TYPE_CHECKING:
@@ -42,7 +43,7 @@ def answer_words(row: Any) -> str:
         return f"{where} nothing can be said ({reason_text(row['status'], row['reason'])})"
     if int(row["positions"]) > 1:
         return (
-            f"{where} it holds in {kept:,} of {rows:,} positions (median p "
+            f"{where} it holds in {kept:,} of {positions(row)} (median p "
             f"{p_text(row['p_value'])})"
         )
     return f"{where} it {'holds' if kept else 'does not hold'} (p {p_text(row['p_value'])})"

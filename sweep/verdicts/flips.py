@@ -14,6 +14,7 @@ __all__ = [
     "change_words",
     "pair_sentence",
     "path_sentence",
+    "positions",
     "single_sentence",
     "step_words",
     "turned",
@@ -37,12 +38,26 @@ def turned(single_changes: pd.DataFrame) -> pd.DataFrame:
     return rows.loc[order]
 
 
+def positions(row: Any) -> str:
+    """Count the positions of a moving window that are judged, and say if others are not.
+
+    Examples
+    --------
+    >>> positions({"admissible": 31, "positions": 31})
+    '31 positions'
+    >>> positions({"admissible": 9, "positions": 31})
+    '9 admissible positions'
+    """
+    judged = int(row["admissible"])
+    return counted(judged, "position" if judged == int(row["positions"]) else "admissible position")
+
+
 def change_words(row: Any) -> str:
     """Write one single change with what it does, e.g. ``test HC3 (p 0.107)``."""
-    flips, rows = int(row["flips"]), int(row["admissible"])
+    flips = int(row["flips"])
     where = f"{row['axis']} {row['choice']}"
     if int(row["positions"]) > 1:
-        return f"{where} ({flips:,} of {rows:,} positions; median p {p_text(row['p_value'])})"
+        return f"{where} ({flips:,} of {positions(row)}; median p {p_text(row['p_value'])})"
     return f"{where} (p {p_text(row['p_value'])})"
 
 
@@ -155,7 +170,7 @@ def path_sentence(shortest_flips: pd.DataFrame, baseline_survives: Any) -> str:
     p_value = p_text(first["p_value"])
     found = f"p {p_value}"
     if int(first["positions"]) > 1:
-        found = f"{int(first['flips']):,} of {int(first['admissible']):,} positions; median {found}"
+        found = f"{int(first['flips']):,} of {positions(first)}; median {found}"
     return (
         f"The finding {state} after {counted(int(first['changes']), 'changed choice')} at the "
         f"fewest: {first['changed']} ({found})."

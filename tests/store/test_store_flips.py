@@ -43,7 +43,9 @@ def around(twin: pd.DataFrame, finding: int) -> Neighbourhood:
 
 
 def numbers(rows: list[dict[str, object]], name: str) -> pd.Series:
-    kept = [row[name] for row in rows if row["counted_status"] == 0]
+    """Return the numbers of admissible rows; of all that were run where none is admissible."""
+    kept = [row[name] for row in rows if row["admissible"]]
+    kept = kept or [row[name] for row in rows if row["counted_status"] == 0]
     return pd.Series(kept, dtype="float64").dropna()
 
 

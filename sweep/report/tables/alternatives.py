@@ -155,7 +155,8 @@ def build(frames: Mapping[str, pd.DataFrame], context: Context) -> Table:
         "the order used, and in brackets the rule that chose it. The statistic is the one of the "
         "specification's test, on the law named beside it. T: rows of the regression. Sample: "
         "window, its first and last observation before lags are taken. For moving windows p and "
-        "the sum are medians over positions; what has no median is left out. The standard error "
+        "the sum are medians over the admissible positions, or over all that could be run where "
+        "none is admissible; what has no median is left out. The standard error "
         f"is kept for cause to effect alone. {context.losses}"
     ]
     return Table(

@@ -82,7 +82,8 @@ def build(frames: Mapping[str, pd.DataFrame], context: Context) -> Table:
     ]
     notes = [
         f"{context.lead} Each row is the baseline with the named choices put in, all others kept. "
-        "For moving windows p and the sum are medians over positions. Rows that a request added "
+        "For moving windows p and the sum are medians over the admissible positions, or over all "
+        "that could be run where none is admissible. Rows that a request added "
         f"do not count in the headline share. {context.losses}"
     ]
     notes += [f"{'; '.join(part)}." for part in (added,) if part]

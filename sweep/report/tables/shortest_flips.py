@@ -50,8 +50,8 @@ def build(frames: Mapping[str, pd.DataFrame], context: Context) -> Table:
     notes = [
         f"{context.lead} At most {len(rows):,} are listed, nearest first, then what turns in the "
         "larger part of its positions, then the p-value nearest to the baseline's. The positions "
-        "of a moving window are one row: p is their median, and the dates run from the first to "
-        "the last window that turns."
+        "of a moving window are one row: p is the median of those that are admissible, and the "
+        "dates run from the first to the last window that turns."
     ]
     if by_distance:
         notes.append(f"What turns, by changes from the baseline: {by_distance}.")

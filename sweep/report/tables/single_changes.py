@@ -55,7 +55,8 @@ def build(frames: Mapping[str, pd.DataFrame], context: Context) -> Table:
         f"{context.lead} Baseline: p {p_text(baseline['p_value'])}"
         f"{reverse if context.claim in TWO_WAY else ''}. Turned: rows in which the "
         "finding holds where it does not at the baseline, or the other way round. For moving "
-        "windows p, z and the sum are medians over positions. z is the inverse normal survival "
+        "windows p, z and the sum are medians over the admissible positions, or over all that "
+        "could be run where none is admissible. z is the inverse normal survival "
         "function of p, capped at 37; a change in z says how far the evidence moved, whether or "
         f"not the level was crossed. {context.losses}"
     )
