@@ -92,9 +92,9 @@ def build(frames: Mapping[str, pd.DataFrame], context: Context) -> Table:
         f"{reverse if context.claim in TWO_WAY else ''}. The positions of a moving window are one "
         "row: p-values and changes in z are medians over those that are admissible, and the dates "
         "run from the first to the last window that turns. z is the inverse normal survival "
-        f"function of p, capped at {number(37)}. One turns alone: the finding turns after one of the two changes by "
-        "itself already; jointly: neither does, and both could be judged. A moving window stands "
-        "with the first if a position of it does. "
+        f"function of p, capped at {number(37)}. One turns alone: the finding turns after one of "
+        "the two changes by itself already; jointly: neither does, and both could be judged. A "
+        "moving window stands with the first if a position of it does. "
         f"{context.losses} How many flips a stable effect would show is not calibrated."
     )
     return Table(
