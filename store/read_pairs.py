@@ -114,7 +114,8 @@ def pair_cells(db: Database, sweep: int, finding: int, cells: int = 5000) -> pd.
         earlier axis of the two first), ``row_choice, column_choice, row_position,
         column_position, row_is_baseline, column_is_baseline, planned, not_applicable,
         screened_out, admissible, survived, weight`` (sum of the weights of admissible rows),
-        ``share`` (weighted), ``expected`` (:func:`additive_fit` over the pair's cells),
+        ``share`` (weighted), ``expected`` (:func:`additive_fit` over the pair's cells, held to
+        [0, 1]),
         ``departure`` (:func:`departure` of the pair, the same in all its cells), ``row_pooled,
         column_pooled`` (choices that the row or column stands for: 1, or more where pooled).
         Shares are in [0, 1] and missing where nothing is admissible.  Fit and departure are
@@ -208,6 +209,8 @@ def _pair(
     counted = own["admissible"] > 0
     weight, share = own["weight"][counted], own["share"][counted]
     fitted = additive_fit(tall[held][counted], wide[held][counted], weight, share)
+    # No cell can be expected below 0 or above 1: an end that is reached is no acting together.
+    fitted = np.clip(fitted, 0.0, 1.0)
     expected = np.full(held.size, np.nan)
     expected[counted] = fitted
     found = own | {

@@ -388,7 +388,7 @@ def _with_fit(cells: list[dict[str, object]]) -> list[dict[str, object]]:
     share = np.array([one["share"] for one in counted], dtype=float)
     design = np.hstack([rows, columns])
     effects = np.linalg.lstsq(design * root[:, None], share * root, rcond=None)[0]
-    fitted = design @ effects
+    fitted = np.clip(design @ effects, 0, 1)
     gap = float(np.sqrt((root**2 * (share - fitted) ** 2).sum() / (root**2).sum()))
     fits = iter(fitted)
     return [

@@ -20,7 +20,7 @@ from sweep.verdicts.survival import OVERALL
 from sweep.verdicts.words import counted, level_text, missing, number, p_text, percent
 
 from . import marks
-from .arrangement import Arrangement, arrange, by_axis, held_fixed, label_room
+from .arrangement import Arrangement, Record, arrange, by_axis, held_fixed, label_room
 from .context import Context
 from .layout import spread_evenly, text_width
 from .marks import Layers, Scale, Specification
@@ -118,6 +118,10 @@ def _asked(frame: pd.DataFrame, scale: str | None) -> str:
         held = frame[frame["baseline_scale"].fillna(False).astype(bool)]
         if not held.empty:
             return _names(held)[0]
+    # The first words of a name will do where no other scale begins so.
+    begun = [name for name in names if name.startswith(f"{scale} · ")]
+    if len(begun) == 1:
+        return begun[0]
     if scale not in (*names, OVERALL):
         known = ("baseline", OVERALL, *names)
         raise InputFault(Fault("scale", f'no scale "{scale}"' + suggestion(scale, known)))
@@ -204,6 +208,9 @@ def _subtitle(
             "others."
         )
     words.append(_spread(curve))
+    elsewhere = context.counts.admissible - curve.admissible
+    if elsewhere:
+        words.append(f"{elsewhere:,} admissible rows are on other scales.")
     lost = curve.admissible - curve.rows
     if lost:
         words.append(f"{lost:,} admissible rows have no estimate.")
@@ -254,9 +261,9 @@ def build(
         said = f"{context.lead} {context.losses}"
         return marks.without_marks(_NOTHING, width, QUESTION, said)
     survival = frames["survival"]
-    parts, fixed = held_fixed(by_axis(survival[survival["axis"] != OVERALL]))
+    parts, fixed = held_fixed(_choices_of(curve, by_axis(survival[survival["axis"] != OVERALL])))
     bounds = _bounds(curve)
-    ticks = round_ticks(*bounds, 6)
+    ticks = round_ticks(*bounds, 7)
     strips = (f"survives {curve.survived:,}", f"does not {curve.rows - curve.survived:,}")
     room = max(
         label_room(parts, _LABEL[width], _ROWS), *(text_width(text) - _INDENT for text in strips),
@@ -285,6 +292,20 @@ def build(
         QUESTION,
         _subtitle(context, curve, bounds, arranged, fixed),
     )
+
+
+def _choices_of(
+    curve: _Curve, groups: list[tuple[str, list[Record]]]
+) -> list[tuple[str, list[Record]]]:
+    """Leave out the choices that belong to other scales than the one that is drawn."""
+    if curve.scale == OVERALL:
+        return groups
+    scaling = ("transformation", "measures")
+    held = {axis: {str(row[axis]) for row in curve.drawn} for axis in scaling}
+    return [
+        (axis, [one for one in records if axis not in held or str(one["choice"]) in held[axis]])
+        for axis, records in groups
+    ]
 
 
 def _ground(

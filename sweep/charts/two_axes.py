@@ -401,8 +401,8 @@ def describe(
         row = known.loc[place]
         side = "above" if gaps[place] > 0 else "below"
         words.append(
-            f"{row['row_axis']} {row['row_choice']} with {row['column_axis']} "
-            f"{row['column_choice']}: {share_text(int(row['survived']), int(row['admissible']))}, "
+            f"With {row['row_axis']}: {row['row_choice']} and {row['column_axis']}: "
+            f"{row['column_choice']}, {share_text(int(row['survived']), int(row['admissible']))}, "
             f"weighted {percent(float(row['share']))}, {100 * abs(gaps[place]):.0f} points {side} "
             "what the two alone would give."
         )

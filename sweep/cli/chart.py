@@ -55,8 +55,8 @@ def _split(ctx: click.Context, param: click.Parameter, value: tuple[str, ...]) -
 @click.option("--axes", default=None, metavar="A,B",
               help="Of two axes: which two; the pair that acts together most if left out.")
 @click.option("--scale", default=None,
-              help="Of specification curve: one scale by name, baseline, or all; the only one "
-              "there is or all if left out.")
+              help="Of specification curve: one scale by its name or the first words of it, "
+              "baseline, or all; the only one there is or all if left out.")
 @sweep_option  # fmt: skip
 def command(
     store: Path, name: str, output: Path | None, formats: tuple[str, ...], finding: str | None,

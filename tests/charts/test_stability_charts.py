@@ -272,15 +272,24 @@ def test_intervals_are_normal_at_the_level(sweeps):
 
 @pytest.mark.parametrize(
     ("scale", "expected"),
-    [("all", "all"), ("baseline", "log difference · as named"), ("log · as named",) * 2],
+    [
+        ("all", "all"), ("baseline", "log difference · as named"), ("log · as named",) * 2,
+        ("log", "log · as named"),
+    ],
 )
 def test_a_scale_can_be_asked_for(usual, scale, expected):
     frames, context = usual
     module = chart("specification curve")
     found = module.numbers(frames, context, scale=scale)
     assert found["scale"].unique().tolist() == [expected]
-    said = subtitle(module.build(frames, context, scale=scale))
+    drawn = module.build(frames, context, scale=scale)
+    said = subtitle(drawn)
     assert (f"on the scale {expected}" in said) == (expected != "all")
+    held = expected.partition(" · ")[0]
+    assert (f"transformation: {held}" in said) == (expected != "all"), "other scales have no row"
+    assert ("transformation" in written(drawn)) == (expected == "all")
+    elsewhere = context.counts.admissible - int(found["admissible"].iloc[0])
+    assert (f"{elsewhere:,} admissible rows are on other scales" in said) == (expected != "all")
     assert module.describe(frames, context, scale=scale)
 
 
