@@ -16,7 +16,7 @@ from store.read_compare import window_pairs, window_paths
 from store.read_cube import cube, cube_windows
 from store.read_curve import curve
 from store.read_list import LIST_COLUMNS, alternatives, list_rows, list_size
-from store.read_outcomes import baseline, details, outcomes, specification
+from store.read_outcomes import baseline, details, outcome_columns, outcomes, specification
 from store.read_pairs import pair_cells
 from store.read_requests import answers, requests
 from store.read_sample import sample, sample_details, sample_strata
@@ -51,6 +51,7 @@ __all__ = [
     "latest_sweep",
     "list_rows",
     "list_size",
+    "outcome_columns",
     "outcomes",
     "pair_cells",
     "requests",

@@ -11,7 +11,7 @@ from store.database import Database
 from store.errors import Ambiguous, NotFound
 from store.schema import query
 
-__all__ = ["baseline", "details", "outcomes", "specification"]
+__all__ = ["baseline", "details", "outcome_columns", "outcomes", "specification"]
 
 _FULL = 2**64 - 1
 _NAMED = {
@@ -40,6 +40,11 @@ _FIXED = {
 }
 # Texts whose values are known only from the rows; they become categories after reading.
 _FREE = ("reason", "failed_screens")
+
+
+def outcome_columns(db: Database) -> list[str]:
+    """Return the names of the columns of the view ``outcomes``."""
+    return [str(row[0]) for row in db.execute("SELECT column_name FROM (DESCRIBE outcomes)")]
 
 
 def outcomes(
@@ -75,8 +80,10 @@ def outcomes(
     ------
     ValueError
         A column that the view does not have, or a condition that is no single expression.
+    QueryFault
+        A condition that cannot be answered.
     """
-    known = [row[0] for row in db.execute("SELECT column_name FROM (DESCRIBE outcomes)")]
+    known = outcome_columns(db)
     wanted = list(known if columns is None else columns)
     unknown = [name for name in wanted if name not in known]
     if unknown or not wanted:
@@ -94,7 +101,7 @@ def outcomes(
         sql += f" WHERE {' AND '.join(conditions)}"
     if limit is not None:
         sql += f" LIMIT {int(limit)}"
-    frame = db.frame(sql)
+    frame = db.frame(sql) if where is None else db.asked(sql)
     for name in wanted:
         if name in _FREE or (name in _NAMED and frame[name].dtype != "category"):
             frame[name] = frame[name].astype("category")

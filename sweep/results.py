@@ -13,7 +13,7 @@ from typing import TYPE_CHECKING, Any
 
 from store import read
 from store.database import Database, open_reading
-from store.errors import NotFound, NothingStored
+from store.errors import NotFound, NothingStored, QueryFault
 from store.query import query_frame, query_stream
 from sweep.errors import Fault, InputFault
 from sweep.plan.choices import AXES
@@ -136,9 +136,30 @@ class Results:
             Columns of the view ``outcomes``; None for all.
         where : str or None
             SQL condition on its columns.
+
+        Raises
+        ------
+        InputFault
+            If there is no such column, or the condition cannot be answered.
         """
+        if isinstance(columns, str):
+            mend = f'Write ["{columns}"].'
+            raise InputFault(Fault("columns", "a list of names is needed, not one text", mend))
         with self._open() as database:
-            return read.outcomes(database, self.sweep, columns, where)
+            known = read.outcome_columns(database)
+            wanted = known if columns is None else list(columns)
+            faults = [
+                Fault("columns", f'"{name}" is no column of outcomes'
+                      + suggestion(name, known, list_all=len(known)))
+                for name in wanted
+                if name not in known
+            ]
+            if faults or not wanted:
+                raise InputFault(*faults or [Fault("columns", "no column is named")])
+            try:
+                return read.outcomes(database, self.sweep, wanted, where)
+            except (QueryFault, ValueError) as error:
+                raise InputFault(Fault("where", str(error).rstrip("."))) from None
 
     def chart(
         self,

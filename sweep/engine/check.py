@@ -14,11 +14,12 @@ from sweep.engine.cost import estimate_seconds
 from sweep.engine.prepare import Prepared, prepare
 from sweep.engine.reasons import REASONS, Reason
 from sweep.engine.unsuited import unsuited
+from sweep.errors import Fault, InputFault
 from sweep.notebook import check_html, duration
 from sweep.plan.choices import AXES
 from sweep.plan.model import Plan
 
-__all__ = ["Asked", "AxisSize", "Check", "RuledOut", "check_plan", "default_jobs"]
+__all__ = ["Asked", "AxisSize", "Check", "RuledOut", "check_plan", "default_jobs", "workers"]
 
 
 @dataclass(frozen=True, slots=True)
@@ -124,6 +125,21 @@ def default_jobs() -> int:
     return os.cpu_count() or 1
 
 
+def workers(jobs: int | None) -> int:
+    """Return the number of worker processes: what was asked for, or one a core.
+
+    Raises
+    ------
+    InputFault
+        If it is no number of workers.
+    """
+    if jobs is None:
+        return default_jobs()
+    if isinstance(jobs, bool) or not isinstance(jobs, int) or jobs < 1:
+        raise InputFault(Fault("jobs", f"{jobs!r} is no number of workers", "Give 1 or more."))
+    return jobs
+
+
 def check_plan(plan: Plan, *, jobs: int | None = None) -> Check:
     """Validate a plan with its data and count its specifications; estimates nothing.
 
@@ -132,8 +148,8 @@ def check_plan(plan: Plan, *, jobs: int | None = None) -> Check:
     InputFault
         With every fault of the data.
     """
+    jobs = workers(jobs)
     prepared = prepare(plan)
-    jobs = jobs or default_jobs()
     calendar = prepared.dataset.calendar
     rows = prepared.rows
     senseless = {reason: there & (rows.rule < 0) for reason, there in unsuited(prepared).items()}

@@ -17,6 +17,7 @@ from sweep.panel.load import (
     collinear_faults,
     constant_faults,
     data_digest,
+    magnitude_faults,
     missing_faults,
     positive_faults,
     read_dataset,
@@ -94,6 +95,9 @@ def prepare(plan: Plan) -> Prepared:
         plan.data_path, data.date, data.frequency, plan.every_column(),
         calendar_rule=data.calendar,
     )  # fmt: skip
+    faults = magnitude_faults(dataset, dataset.names)
+    if faults:
+        raise InputFault(*faults)  # nothing can be computed with such numbers
     faults = constant_faults(dataset, dataset.names)
     faults += _log_faults(plan, dataset)
     if not faults:

@@ -12,7 +12,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from store.database import open_writing
-from sweep.engine.check import default_jobs
+from sweep.engine.check import workers
 from sweep.engine.group import make_tasks
 from sweep.engine.prepare import Prepared
 from sweep.engine.reasons import Status
@@ -128,6 +128,7 @@ def run_prepared(
         If the store is locked, damaged or of another version.
     """
     began = time.monotonic()
+    jobs = workers(jobs)
     stop = StopRequest()
     with stop.listening(), open_writing(store) as database:
         sink = StoreSink(database, prepared)
@@ -135,7 +136,7 @@ def run_prepared(
             details = _wants_lags(prepared)
             missing, stored, reused = sink.missing(details)
             tasks = make_tasks(prepared, missing, details)
-            done, failed = _compute(sink, tasks, jobs or default_jobs(), progress, stop)
+            done, failed = _compute(sink, tasks, jobs, progress, stop)
         except KeyboardInterrupt:
             raise _interrupted(sink, store) from None
         if done < missing.size:

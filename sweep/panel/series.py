@@ -19,6 +19,7 @@ __all__ = [
     "collinear_faults",
     "constant_faults",
     "data_digest",
+    "magnitude_faults",
     "missing_faults",
     "positive_faults",
     "values_digest",
@@ -27,6 +28,9 @@ __all__ = [
 # Series count as tied when what one adds to the others is below this share of its spread;
 # printed sums that were rounded to a few decimals stay far above it.
 _TIED = 1e-10
+
+# Largest size of a value: sums of products of four such numbers are still finite.
+_LARGEST = 1e75
 
 
 @dataclass(frozen=True, slots=True, eq=False)
@@ -121,6 +125,29 @@ def _value_bytes(dataset: Dataset, name: str) -> bytes:
     column = dataset.column(name).astype("<f8") + 0.0  # -0.0 and 0.0 are one value
     column[np.isnan(column)] = np.nan  # one bit pattern for all missing values
     return column.tobytes()
+
+
+def magnitude_faults(dataset: Dataset, names: Sequence[str]) -> list[Fault]:
+    """Find series whose squares would leave the range of floating-point numbers.
+
+    A value may not exceed 1e75 in size, nor may all values of a series lie below 1e-75.
+    """
+    faults = []
+    for name in names:
+        size = np.abs(dataset.column(name))
+        large = np.flatnonzero(size > _LARGEST)
+        if large.size:
+            what = "value is" if large.size == 1 else "values are"
+            problem = (
+                f"{large.size} {what} larger than {_LARGEST:g} in size: {dataset.periods(large)}"
+            )
+            mend = "Such numbers cannot be squared and summed; give the series in another unit."
+            faults.append(Fault(dataset.place(name, int(large[0])), problem, mend))
+        elif 0.0 < np.max(size, where=np.isfinite(size), initial=0.0) < 1.0 / _LARGEST:
+            problem = f"every value is smaller than {1.0 / _LARGEST:g} in size"
+            mend = "Such numbers cannot be squared and summed; give the series in another unit."
+            faults.append(Fault(dataset.place(name), problem, mend))
+    return faults
 
 
 def missing_faults(

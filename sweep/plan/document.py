@@ -248,7 +248,9 @@ class PlanDocument(Table):
     significance: float = Field(
         default=0.05, gt=0, lt=1, description="Level at which a hypothesis is rejected."
     )
-    seed: StrictInt = Field(default=0, ge=0, description="Seed of everything random.")
+    seed: StrictInt = Field(
+        default=0, ge=0, le=2**63 - 1, description="Seed of everything random."
+    )
     data: DataTable
     findings: list[FindingTable] = Field(min_length=1)
     baseline: BaselineTable

@@ -4,8 +4,12 @@ from __future__ import annotations
 
 from datetime import date, timedelta
 
+import pandas as pd
 import pytest
+import small_plans
 
+import sweep
+from sweep.cli import main
 from sweep.errors import InputFault
 from sweep.panel.calendar import advance, period_label
 from sweep.panel.load import read_dataset
@@ -302,3 +306,44 @@ def test_a_damaged_file(tmp_path, name, kind):
     (message,) = faults_of(tmp_path / name)
     assert f"cannot be read as {kind}" in message
     assert "\n" not in message
+
+
+@pytest.mark.parametrize(
+    ("size", "problem"),
+    [("3e301", "1 value is larger than 1e+75 in size: 1990-05"),
+     ("-1e76", "1 value is larger than 1e+75 in size: 1990-05")],
+)  # fmt: skip
+def test_a_number_too_large_to_be_squared(tmp_path, capsys, size, problem):
+    plan = small_plans.write_plan(tmp_path)
+    data = tmp_path / "small.csv"
+    lines = data.read_text().splitlines()
+    cells = lines[5].split(",")
+    lines[5] = ",".join([*cells[:2], size, *cells[3:]])
+    data.write_text("\n".join(lines))
+    before = sorted(tmp_path.iterdir())
+    for command in ("check", "run"):
+        with pytest.raises(SystemExit) as left:
+            main([command, str(plan)])
+        assert left.value.code == 2
+        assert capsys.readouterr().err.startswith(f"small.csv, line 6, column y: {problem}. Such")
+    assert sorted(tmp_path.iterdir()) == before
+
+
+@pytest.mark.parametrize("unit", [1e70, 1e-70])
+def test_numbers_may_be_large_or_small(tmp_path, unit):
+    plan = small_plans.write_plan(tmp_path)
+    expected = sweep.run(plan, jobs=1).specification("baseline")
+    data = tmp_path / "small.csv"
+    frame = pd.read_csv(data)
+    numbers = frame.drop(columns="month") * unit
+    numbers.insert(0, "month", frame["month"])
+    numbers.to_csv(data, index=False)
+    found = sweep.run(plan, jobs=1).specification("baseline")
+    # A change of unit is exact but for the last digit of each value.
+    assert found["statistic"] == pytest.approx(expected["statistic"], rel=1e-9)
+    tiny = numbers.drop(columns="month") * (1e-78 / unit)
+    tiny.insert(0, "month", frame["month"])
+    tiny.to_csv(data, index=False)
+    if unit < 1:
+        with pytest.raises(InputFault, match="every value is smaller than 1e-75 in size"):
+            sweep.run(plan, jobs=1)

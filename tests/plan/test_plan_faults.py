@@ -93,6 +93,20 @@ def test_one_fault_one_message(
     assert sorted(tmp_path.iterdir()) == before
 
 
+def test_a_seed_that_the_store_cannot_hold(
+    tmp_path: Path, capsys: pytest.CaptureFixture[str]
+) -> None:
+    plan = small_plans.write_plan(tmp_path)
+    text = plan.read_text(encoding="utf-8")
+    for seed, code in ((2**63, 2), (-1, 2), (2**63 - 1, 0)):
+        plan.write_text(f"seed = {seed}\n{text}", encoding="utf-8")
+        with pytest.raises(SystemExit) as left:
+            main(["run", str(plan), "--no-report", "--quiet"])
+        assert (left.value.code or 0) == code
+        assert plan.with_suffix(".duckdb").exists() == (code == 0)
+        assert capsys.readouterr().err.startswith(f"seed: {seed} is out of range." if code else "")
+
+
 def test_all_faults_at_once(tmp_path: Path) -> None:
     plan = small_plans.write_plan(
         tmp_path, '[axes]\nlags = [0, "AIK"]\ntests = ["G"]\n[calibration]\ndraws = 9', 'sing = "x"'
