@@ -309,11 +309,12 @@ class Results:
 
     def _long_list(self, number: int) -> Iterator[tuple[Any, ...]]:
         """Yield the cells of every row of a finding's long list."""
-        from sweep.report.tables.long_list import row_of
+        from sweep.report.tables.long_list import reader
 
         with self._open() as database:
-            for row in read.list_rows(database, self.sweep, number):
-                yield row_of(dict(zip(read.LIST_COLUMNS, row, strict=True)))
+            yield from map(
+                reader(read.LIST_COLUMNS), read.list_rows(database, self.sweep, number)
+            )
 
     def content(self) -> ReportContent:
         """Return everything that the report and the summary are made from."""

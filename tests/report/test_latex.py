@@ -190,9 +190,7 @@ def test_stars_are_off_unless_asked_for_and_never_on_medians():
 
 def test_a_table_without_p_values_says_that_it_has_no_stars():
     table = Table("t", "T", (Column("A"),), (("a",),), ("A note.",)).with_stars()
-    assert table.notes[-1] == (
-        "This table has no p-value of a single specification, so it has no stars."
-    )
+    assert table.notes[-1] == "No column of this table is marked by stars."
 
 
 def test_code_points_are_explained_in_the_notes():

@@ -9,7 +9,7 @@ from typing import TYPE_CHECKING, Any
 from sweep.charts.context import baseline_record
 from sweep.verdicts.words import missing, period_text, reason_text
 
-from .model import Column, Pooled, Table, Target
+from .model import Column, Table, Target, pooled
 
 if TYPE_CHECKING:
     import pandas as pd
@@ -122,12 +122,10 @@ def _shared(record: Mapping[Any, Any]) -> dict[str, Any]:
 def _side(record: Mapping[Any, Any], direction: str) -> dict[str, Any]:
     """Return the numbers of one direction; medians carry no stars."""
     start = "reverse_" if direction == "reverse" else ""
-    p_value = record[f"{start}p_value"]
-    if int(record["positions"]) > 1 and not missing(p_value):
-        p_value = Pooled(p_value)
+    name = f"{start}p_value"
     return {
         "statistic": record[f"{start}statistic"],
-        "p_value": p_value,
+        "p_value": pooled(record, name).get(name, record[name]),
         "coefficient_sum": record[f"{start}coefficient_sum"],
         # The store keeps the standard error of the sum of cause to effect alone.
         "coefficient_sum_se": None if start else record["coefficient_sum_se"],

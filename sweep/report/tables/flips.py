@@ -9,7 +9,7 @@ from sweep.charts.context import baseline_record
 from sweep.verdicts.flips import TWO_WAY, pair_sentence, step_words, turned_by
 from sweep.verdicts.words import counted, number, p_text
 
-from .model import Column, Table, Target
+from .model import Column, Table, Target, pooled
 
 if TYPE_CHECKING:
     import pandas as pd
@@ -42,11 +42,11 @@ _COLUMNS = (
     Column("Turned with one alone", "count", "contained", within=_DATA),
     Column("Turned, unsettled", "count", "unsettled", within=_DATA),
     Column("Turned by", name="turned_by"),
-    Column("p after", "p", "p_value"),
+    Column("p after", "p", "p_value", starred=True),
     Column("Lowest p", "p", "p_low", within=_DATA),
     Column("Highest p", "p", "p_high", within=_DATA),
     Column("Change in z", "number", "z_change"),
-    Column("Reverse p", "p", "reverse_p_value"),
+    Column("Reverse p", "p", "reverse_p_value", starred=True),
     Column("Change in reverse z", "number", "reverse_z_change", within=("page", "data")),
     Column("p after first alone", "p", "first_p_value"),
     Column("p after second alone", "p", "second_p_value"),
@@ -79,6 +79,7 @@ def build(frames: Mapping[str, pd.DataFrame], context: Context) -> Table:
         record["turning"] = f"{int(record['flips']):,} of {int(record['admissible']):,}"
         if 0 < int(record["joint"]) < int(record["flips"]):
             record["turning"] += f" ({int(record['joint']):,} jointly)"
+        record.update(pooled(record, "p_value", "reverse_p_value"))
         record["turned_by"] = turned_by(record, context.claim)
         rows.append(tuple(record[column.field] for column in _COLUMNS))
     baseline = baseline_record(frames["baseline"])

@@ -2,7 +2,8 @@
 
 from __future__ import annotations
 
-from collections.abc import Mapping
+from collections.abc import Callable, Mapping, Sequence
+from operator import itemgetter
 from typing import TYPE_CHECKING, Any
 
 from .model import Column, Kind, Table, Target
@@ -12,7 +13,7 @@ if TYPE_CHECKING:
 
     from sweep.charts.context import Context
 
-__all__ = ["NAME", "NEEDS", "SHOWS", "build", "row_of"]
+__all__ = ["NAME", "NEEDS", "SHOWS", "build", "reader"]
 
 NAME = "long list"
 NEEDS = ("list_size",)
@@ -59,15 +60,31 @@ _COLUMNS = (
 )
 
 
-def row_of(record: Mapping[str, Any]) -> tuple[Any, ...]:
-    """Return the cells of one row of the store's long list."""
-    order, choice = record["lags"], str(record["lags_choice"])
-    words = choice if order is None or str(order) == choice else f"{order} ({choice})"
-    outcome = str(record["counted_as"])
-    if outcome == "admissible":
-        outcome = "holds" if record["survives"] else "does not hold"
-    cells = {**record, "lag_words": words, "outcome": outcome}
-    return tuple(cells[column.field] for column in _COLUMNS)
+def reader(names: Sequence[str]) -> Callable[[tuple[Any, ...]], tuple[Any, ...]]:
+    """Return the function that turns a row of the store's long list into the table's cells.
+
+    Parameters
+    ----------
+    names : sequence of str
+        Columns of the store's rows, in order.
+    """
+    place = {name: number for number, name in enumerate(names)}
+    order, choice = place["lags"], place["lags_choice"]
+    counted, survives = place["counted_as"], place["survives"]
+    # Words that print makes of several columns stand behind the row's own.
+    place |= {"lag_words": len(names), "outcome": len(names) + 1}
+    pick = itemgetter(*(place[column.field] for column in _COLUMNS))
+
+    def cells(row: tuple[Any, ...]) -> tuple[Any, ...]:
+        used, label = row[order], row[choice]
+        words = label if used is None or str(used) == label else f"{used} ({label})"
+        outcome = row[counted]
+        if outcome == "admissible":
+            outcome = "holds" if row[survives] else "does not hold"
+        picked: tuple[Any, ...] = pick((*row, words, outcome))
+        return picked
+
+    return cells
 
 
 def build(frames: Mapping[str, pd.DataFrame], context: Context) -> Table:

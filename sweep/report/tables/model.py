@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable, Iterator
+from collections.abc import Callable, Iterable, Iterator, Mapping
 from dataclasses import dataclass, field, replace
 from itertools import islice
 from pathlib import Path
@@ -10,7 +10,9 @@ from typing import Any, Literal
 
 from sweep.verdicts.words import MISSING, fixed, missing, number, p_text, percent, period_text
 
-__all__ = ["PRINT_ROWS", "Column", "Kind", "Pooled", "Table", "Target", "cell_text", "stars_of"]
+__all__ = [
+    "PRINT_ROWS", "Column", "Kind", "Pooled", "Table", "Target", "cell_text", "pooled", "stars_of",
+]  # fmt: skip
 
 Kind = Literal["text", "count", "share", "p", "number", "fixed", "figure", "date", "mark"]
 
@@ -23,7 +25,7 @@ _EVERYWHERE: tuple[Target, ...] = ("page", "print", "data")
 # Levels of the stars, most stars first.
 _STARS = ((0.01, "***"), (0.05, "**"), (0.10, "*"))
 _LEGEND = "Stars: * p at most 0.10, ** at most 0.05, *** at most 0.01; none on medians."
-_NO_STARS = "This table has no p-value of a single specification, so it has no stars."
+_NO_STARS = "No column of this table is marked by stars."
 
 
 class Pooled(float):
@@ -158,13 +160,15 @@ class Table:
         if len(kept) == len(self.columns):
             return self
         stream = self.stream
+
+        def pick(rows: Iterable[tuple[Any, ...]]) -> Iterator[tuple[Any, ...]]:
+            return (tuple([row[place] for place in kept]) for row in rows)
+
         return replace(
             self,
             columns=tuple(self.columns[place] for place in kept),
-            rows=tuple(tuple(row[place] for place in kept) for row in self.rows),
-            stream=None if stream is None else lambda: (
-                tuple(row[place] for place in kept) for row in stream()
-            ),
+            rows=tuple(pick(self.rows)),
+            stream=None if stream is None else lambda: pick(stream()),
         )
 
     def first(self, rows: int | None) -> Table:
@@ -210,6 +214,14 @@ def stars_of(value: Any, column: Column) -> str:
     if not column.starred or missing(value) or isinstance(value, Pooled):
         return ""
     return next((signs for level, signs in _STARS if float(value) <= level), "")
+
+
+def pooled(record: Mapping[Any, Any], *names: str) -> dict[Any, Any]:
+    """Return a row's named numbers; medians where it stands for several positions."""
+    if int(record["positions"]) <= 1:
+        return {}
+    found = {name: record[name] for name in names}
+    return {name: v if missing(v) else Pooled(v) for name, v in found.items()}
 
 
 def cell_text(value: Any, kind: Kind) -> str:

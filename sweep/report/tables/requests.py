@@ -9,7 +9,7 @@ from sweep.charts.context import baseline_record
 from sweep.verdicts.answers import request_name
 from sweep.verdicts.words import missing, reason_text
 
-from .model import Column, Table
+from .model import Column, Table, pooled
 
 if TYPE_CHECKING:
     import pandas as pd
@@ -30,8 +30,8 @@ _COLUMNS = (
     Column("Survived", "count"),
     Column("Lags used", "count", "order_used"),
     Column("Statistic", "number"),
-    Column("p", "p", "p_value"),
-    Column("Reverse p", "p", "reverse_p_value"),
+    Column("p", "p", "p_value", starred=True),
+    Column("Reverse p", "p", "reverse_p_value", starred=True),
     Column("Sum of coefficients", "number", "coefficient_sum"),
     Column("Standard error", "number", "coefficient_sum_se"),
     Column("Observations", "count"),
@@ -64,6 +64,7 @@ def build(frames: Mapping[str, pd.DataFrame], context: Context) -> Table:
     """Return the baseline and, request by request, what its choices give instead."""
     rows = [_baseline(baseline_record(frames["baseline"]))]
     for record in frames["answers"].to_dict("records"):
+        record.update(pooled(record, "p_value", "reverse_p_value"))
         origin = "planned" if record["planned"] else "added"
         numbers = (record[column.field] for column in _COLUMNS[3:-1])
         rows.append(

@@ -7,7 +7,7 @@ from typing import TYPE_CHECKING
 
 from sweep.verdicts.words import counted
 
-from .model import Column, Table
+from .model import Column, Table, pooled
 
 if TYPE_CHECKING:
     import pandas as pd
@@ -27,8 +27,8 @@ _COLUMNS = (
     Column("Positions", "count", within=("data",)),
     Column("Admissible", "count", within=("data",)),
     Column("Turned", "count", "flips", within=("data",)),
-    Column("p after", "p", "p_value"),
-    Column("Reverse p", "p", "reverse_p_value"),
+    Column("p after", "p", "p_value", starred=True),
+    Column("Reverse p", "p", "reverse_p_value", starred=True),
     Column("Turning windows from", "date", "window_start"),
     Column("to", "date", "window_end"),
     Column("Specification", within=("data",)),
@@ -40,6 +40,7 @@ def build(frames: Mapping[str, pd.DataFrame], context: Context) -> Table:
     rows = []
     for record in frames["shortest_flips"].to_dict("records"):
         record["turning"] = f"{int(record['flips']):,} of {int(record['admissible']):,}"
+        record.update(pooled(record, "p_value", "reverse_p_value"))
         rows.append(tuple(record[column.field] for column in _COLUMNS))
     by_distance = "; ".join(
         f"{counted(int(record['changes']), 'change')}: {int(record['turning']):,} of "

@@ -9,7 +9,7 @@ from sweep.charts.context import baseline_record
 from sweep.verdicts.flips import TWO_WAY, turned_by
 from sweep.verdicts.words import p_text, reason_text
 
-from .model import Column, Table
+from .model import Column, Table, pooled
 
 if TYPE_CHECKING:
     import pandas as pd
@@ -30,10 +30,10 @@ _COLUMNS = (
     Column("Survived", "count"),
     Column("Turned", "count", "flips"),
     Column("Turned by", name="turned_by"),
-    Column("p after", "p", "p_value"),
+    Column("p after", "p", "p_value", starred=True),
     Column("lowest p", "p", "p_low"),
     Column("highest p", "p", "p_high"),
-    Column("Reverse p", "p", "reverse_p_value"),
+    Column("Reverse p", "p", "reverse_p_value", starred=True),
     Column("Change in z", "number", "z_change"),
     Column("Change in reverse z", "number", "reverse_z_change", within=("page", "data")),
     Column("Sum of coefficients", "number", "coefficient_sum"),
@@ -45,6 +45,7 @@ def build(frames: Mapping[str, pd.DataFrame], context: Context) -> Table:
     """Return the single changes of one finding in plan order."""
     rows = []
     for record in frames["single_changes"].to_dict("records"):
+        record.update(pooled(record, "p_value", "reverse_p_value"))
         record["turned_by"] = turned_by(record, context.claim)
         fields = (column.field for column in _COLUMNS[:-1])
         status = reason_text(record["status"], record["reason"])

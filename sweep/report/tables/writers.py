@@ -5,6 +5,7 @@ from __future__ import annotations
 import csv
 import io
 import itertools
+import string
 from collections.abc import Callable, Iterable, Iterator
 from html import escape
 from typing import Any
@@ -19,6 +20,7 @@ __all__ = ["WRITERS", "as_csv", "as_html", "as_markdown", "csv_parts", "parts"]
 # Leading characters that spreadsheets take for a formula.
 _FORMULA = ("=", "+", "-", "@", "＝", "＋", "－", "＠")
 _BREAKS = ("\t", "\r", "\n")
+_HARMLESS = frozenset(string.ascii_letters + string.digits)
 
 # Rows of CSV that are put together at once.
 _PORTION = 1000
@@ -113,12 +115,14 @@ def as_csv(table: Table) -> str:
 def csv_parts(table: Table) -> Iterator[str]:
     """Yield the CSV of a table some rows at a time, as :func:`as_csv` writes it."""
     table = table.only("data")
-    kinds = [column.kind for column in table.columns]
+    write = [_RAW.get(column.kind, _raw_text) for column in table.columns]
     yield _lines([[column.field for column in table.columns]])
     rows = table.every_row()
     while portion := list(itertools.islice(rows, _PORTION)):
         yield _lines(
-            [_raw(value, kind) for value, kind in zip(row, kinds, strict=True)] for row in portion
+            ["" if value is None or missing(value) else one(value)
+             for value, one in zip(row, write, strict=True)]
+            for row in portion
         )
 
 
@@ -128,21 +132,30 @@ def _lines(rows: Iterable[list[str]]) -> str:
     return buffer.getvalue()
 
 
-def _raw(value: Any, kind: str) -> str:
-    if missing(value):
-        return ""
-    if kind == "date":
-        return period_text(value)
-    if kind == "mark":
-        return "true" if value else "false"
-    if kind == "count":
-        return str(int(value))
-    if kind in ("share", "p", "number", "fixed"):
-        return repr(float(value))
+def _raw_text(value: Any) -> str:
+    """Return a text as a data file holds it, safe in spreadsheets."""
     if isinstance(value, bool):
         return "true" if value else "false"
     text = str(value)
+    if text[:1] in _HARMLESS:
+        return text
     return "'" + text if text.lstrip().startswith(_FORMULA) or text[:1] in _BREAKS else text
+
+
+def _raw_number(value: Any) -> str:
+    return repr(float(value))
+
+
+# How values of a kind are written in data files; texts otherwise.
+_RAW: dict[str, Callable[[Any], str]] = {
+    "date": period_text,
+    "mark": lambda value: "true" if value else "false",
+    "count": lambda value: str(int(value)),
+    "share": _raw_number,
+    "p": _raw_number,
+    "number": _raw_number,
+    "fixed": _raw_number,
+}
 
 
 WRITERS: dict[str, Callable[[Table], str]] = {
