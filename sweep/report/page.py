@@ -150,7 +150,7 @@ def _tabled(table: Table, context: Context) -> Tabled:
     for said in (context.lead, context.losses):
         notes = notes.replace(said, "")
     short = replace(table, title=title, notes=tuple(filter(None, [" ".join(notes.split())])))
-    short = short.first(_MOST_ROWS)
+    short = short.first(min(table.page_rows or _MOST_ROWS, _MOST_ROWS))
     return Tabled(title, len(short.rows), Markup(as_html(short)))
 
 

@@ -169,3 +169,19 @@ def test_columns_appear_where_they_are_wanted():
     assert "b" not in WRITERS["markdown"](table).splitlines()[4]
     assert WRITERS["csv"](table) == "a,b\na,b\n"
     assert ">c<" not in WRITERS["html"](table)
+
+
+@pytest.mark.parametrize("claim", ["leads", "leads one way"])
+def test_what_turned_is_a_column_where_it_says_something(sweeps, claim):
+    sweep = sweeps.Sweep(claim=claim, centre=3.2, seed=1)
+    frames = sweeps.frames_of(sweep)
+    context = context_of(
+        sweeps.finding_of(sweep), frames["survival"], significance=0.05, title="A title"
+    )
+    for name in ("single changes", "flips"):
+        table = TABLES[name].build(frames, context)
+        headings = [column.heading for column in table.only("page").columns]
+        for heading in ("Turned by", "Change in reverse z"):
+            assert (heading in headings) == (claim == "leads one way"), (name, heading)
+        fields = [column.field for column in table.only("data").columns]
+        assert {"turned_by", "reverse_z_change"} <= set(fields)

@@ -10,6 +10,7 @@ from sweep.verdicts.flips import TWO_WAY, pair_sentence, step_words, turned_by
 from sweep.verdicts.words import counted, number, p_text
 
 from .model import Column, Table, Target, pooled
+from .single_changes import one_way
 
 if TYPE_CHECKING:
     import pandas as pd
@@ -22,6 +23,7 @@ NAME = "flips"
 NEEDS = ("flips", "flip_counts", "baseline")
 SHOWS = "every change of one or two choices under which the finding turns"
 
+_PAGE_ROWS = 50
 _WORDS: tuple[Target, ...] = ("page", "print")
 _DATA: tuple[Target, ...] = ("data",)
 _COLUMNS = (
@@ -101,8 +103,9 @@ def build(frames: Mapping[str, pd.DataFrame], context: Context) -> Table:
     return Table(
         NAME,
         f"Changes of one or two choices that turn the finding: {context.statement}.",
-        _COLUMNS,
+        tuple(one_way(column, context.claim, frames["flips"]) for column in _COLUMNS),
         tuple(rows),
         tuple(notes),
         grouped=True,
+        page_rows=_PAGE_ROWS,
     )

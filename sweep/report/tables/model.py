@@ -92,6 +92,8 @@ class Table:
         Sentences below the table: what is counted, what was left out.
     grouped : bool
         Whether rows with the same value in the first column stand under one heading.
+    page_rows : int or None
+        Most rows on the page, for a list whose first rows say most; None for the page's own limit.
     stars : bool
         Whether print marks small p-values by stars.
     total : int or None
@@ -106,6 +108,7 @@ class Table:
     rows: tuple[tuple[Any, ...], ...]
     notes: tuple[str, ...] = ()
     grouped: bool = False
+    page_rows: int | None = None
     stars: bool = False
     total: int | None = None
     stream: Callable[[], Iterator[tuple[Any, ...]]] | None = field(

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Mapping
+from dataclasses import replace
 from typing import TYPE_CHECKING
 
 from sweep.charts.context import baseline_record
@@ -16,7 +17,7 @@ if TYPE_CHECKING:
 
     from sweep.charts.context import Context
 
-__all__ = ["NAME", "NEEDS", "SHOWS", "build"]
+__all__ = ["NAME", "NEEDS", "SHOWS", "build", "one_way"]
 
 NAME = "single changes"
 NEEDS = ("single_changes", "baseline")
@@ -39,6 +40,24 @@ _COLUMNS = (
     Column("Sum of coefficients", "number", "coefficient_sum"),
     Column("Status"),
 )
+
+
+def one_way(column: Column, claim: str, changes: pd.DataFrame) -> Column:
+    """Keep to data files what says nothing where a claim looks at one direction and has no sign.
+
+    Parameters
+    ----------
+    column : Column
+        A column of a table of changes.
+    claim : str
+        The claim's kind.
+    changes : DataFrame
+        The changes, with ``flips_sign``.
+    """
+    only = column.field == "reverse_z_change" or (
+        column.field == "turned_by" and not (changes["flips_sign"].fillna(0) > 0).any()
+    )
+    return replace(column, within=("data",)) if only and claim not in TWO_WAY else column
 
 
 def build(frames: Mapping[str, pd.DataFrame], context: Context) -> Table:
@@ -64,7 +83,7 @@ def build(frames: Mapping[str, pd.DataFrame], context: Context) -> Table:
     return Table(
         NAME,
         f"Single changes from the baseline: {context.statement}.",
-        _COLUMNS,
+        tuple(one_way(column, context.claim, frames["single_changes"]) for column in _COLUMNS),
         tuple(rows),
         (notes,),
         grouped=True,
