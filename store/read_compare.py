@@ -17,7 +17,12 @@ __all__ = ["LARGEST", "Sides", "compare_frames", "paired", "sides", "window_pair
 # Most rows of a frame that lists specifications.
 LARGEST = 5000
 
-_ROWS = ("counts", "verdicts", "changed", "p_values")
+_ROWS = {
+    "counts": "compare_counts",
+    "verdicts": "compare_verdicts",
+    "changed": "compare_changed",
+    "p_values": "compare_p_values",
+}
 
 # Name of the temporary view, the store's table or view, and the columns it is cut to.
 _VIEWS = {
@@ -131,9 +136,9 @@ def compare_frames(
     """
     chosen = {"mine": mine, "theirs": theirs}
     frames = {}
-    for name in _ROWS:
+    for name, rows in _ROWS.items():
         parameters = chosen | ({"limit": limit} if name == "changed" else {})
-        text = query("compare_pairs") + query(f"compare_{name}")
+        text = query("compare_pairs") + query(rows)
         frames[name] = both.database.frame(text, parameters)
     frames["survival"] = both.database.frame(query("compare_survival"), chosen)
     return frames
