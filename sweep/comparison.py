@@ -74,7 +74,8 @@ class Comparison:
         """Return the figure of a finding, of the first if none is named."""
         from sweep.charts.render import altair_chart
 
-        return altair_chart(self._of(self._drawn, finding)[0][0])
+        plain, words = self._of(self._drawn, finding)[0]
+        return altair_chart({**plain, "description": words})
 
     def tables(self, finding: str | None = None) -> list[Table]:
         """Return the tables of a finding, of the first if none is named."""

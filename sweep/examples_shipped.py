@@ -1,4 +1,4 @@
-"""The examples that come with the package: plans and their data."""
+"""The examples that come with the package: plans, their data and a notebook."""
 
 from __future__ import annotations
 
@@ -11,10 +11,12 @@ from sweep.plan.suggest import suggestion
 
 __all__ = ["EXAMPLES", "copy_example"]
 
-# Example and its files: the plan, a round of referees that starts from it, the data.
+# Example and its files: the plan, a round of referees that starts from it, the data, a notebook.
 EXAMPLES = {
     "us_macro": ("us_macro.toml", "us_macro_referees.toml", "data/us_macro.csv"),
-    "harbour": ("harbour.toml", "harbour_referees.toml", "data/harbour.csv"),
+    "harbour": (
+        "harbour.toml", "harbour_referees.toml", "data/harbour.csv", "harbour.ipynb",
+    ),
 }
 
 

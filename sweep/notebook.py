@@ -16,11 +16,31 @@ if TYPE_CHECKING:
     from sweep.engine.verify import Verification
     from sweep.plan.model import Plan
 
-__all__ = ["check_html", "duration", "explanation_html", "plan_html", "rows_html",
-           "verification_html"]  # fmt: skip
+__all__ = [
+    "check_html", "duration", "explanation_html", "number_words", "plan_html", "rows_html",
+    "verification_html",
+]  # fmt: skip
 
 SHOWN = 20
 """Disagreements that are listed."""
+WORDS = {
+    "p_value": "p-value", "reverse_p_value": "reverse p-value",
+    "coefficient_sum_se": "its standard error", "signed_partial_r2": "signed partial R²",
+    "lag_standard_error": "standard error of a lag", "df_num": "restrictions",
+    "df_den": "degrees of freedom", "window": "window dates", "status": "status and reason",
+}  # fmt: skip
+
+
+def number_words(name: str) -> str:
+    """Return what people call a number of the store.
+
+    Examples
+    --------
+    >>> number_words("p_value"), number_words("coefficient_sum"), number_words("p_value, lag 2")
+    ('p-value', 'coefficient sum', 'p-value, lag 2')
+    """
+    first, comma, rest = name.partition(",")
+    return WORDS.get(first, first.replace("_", " ")) + comma + rest
 
 
 def rows_html(columns: Sequence[str], rows: Iterable[Sequence[Any]], caption: str = "") -> str:
@@ -31,9 +51,19 @@ def rows_html(columns: Sequence[str], rows: Iterable[Sequence[Any]], caption: st
     return f"<table>{title}<thead><tr>{head}</tr></thead><tbody>{body}</tbody></table>"
 
 
+class _Figure(str):
+    """A number that is written already."""
+
+
+def _short(difference: float | None) -> _Figure:
+    return _Figure("–" if difference is None else f"{difference:.0e}")
+
+
 def _cell(value: Any) -> str:
     if value is None:
         return "<td></td>"
+    if isinstance(value, _Figure):
+        return f'<td style="text-align:right">{value}</td>'
     if isinstance(value, int | float) and not isinstance(value, bool):
         text = f"{value:,}" if isinstance(value, int) else f"{value:.6g}"
         return f'<td style="text-align:right">{text}</td>'
@@ -128,8 +158,8 @@ def explanation_html(found: Explanation) -> str:
             rows_html(
                 ["number", "stored", "recomputed", "relative difference"],
                 [
-                    (c.name.replace("_", " "), c.stored, c.slow,
-                     "–" if c.difference is None else f"{c.difference:.0e}")
+                    (number_words(c.name), c.stored, c.slow,
+                     _short(c.difference))
                     for c in found.compared
                 ],
                 "Stored beside recomputed by least squares on the rows",
@@ -145,23 +175,20 @@ def explanation_html(found: Explanation) -> str:
 def verification_html(found: Verification) -> str:
     """Return what came of recomputing a sample."""
 
-    def short(value: float | None) -> str:
-        return "–" if value is None else f"{value:.0e}"
-
     words = "every stored value came out again" if found.agrees else "stored values differ"
     parts = [
         _strong(f"{found.rows:,} of {found.stored:,} rows recomputed: {words}"),
         rows_html(
             ["number", "compared", "least squares", "statsmodels", "differing"],
             [
-                (q.name.replace("_", " "), q.compared, short(q.slow), short(q.outside), q.differing)
+                (number_words(q.name), q.compared, _short(q.slow), _short(q.outside), q.differing)
                 for q in found.quantities
                 if q.compared
             ],
             "Largest relative difference from the stored number",
         ),
         _lines(
-            f"{item.specification} ({item.finding}), {item.quantity.replace('_', ' ')}: stored "
+            f"{item.specification} ({item.finding}), {number_words(item.quantity)}: stored "
             f"{item.stored}, {item.by} gives {item.recomputed}"
             for item in found.disagreements[:SHOWN]
         ),

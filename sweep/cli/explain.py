@@ -12,6 +12,7 @@ import click
 
 from sweep.cli.common import print_rows, store_argument, sweep_option
 from sweep.cli.paths import DATA
+from sweep.notebook import number_words
 
 if TYPE_CHECKING:
     from sweep.engine.explain import Explanation
@@ -49,7 +50,7 @@ def command(
         click.echo("\nStored beside recomputed by least squares on the rows:")
         print_rows(
             ["number", "stored", "recomputed", "relative difference"],
-            [[_words(c.name), _number(c.stored), _number(c.slow),
+            [[number_words(c.name), _number(c.stored), _number(c.slow),
               "–" if c.difference is None else f"{c.difference:.0e}"] for c in found.compared],
         )  # fmt: skip
     if found.coefficients:
@@ -72,15 +73,6 @@ def _lines(found: Explanation) -> list[str]:
     for sentence in (*found.sample, *found.regression, hypothesis, *found.verdict):
         lines.append(textwrap.fill(sentence, width))
     return lines
-
-
-def _words(name: str) -> str:
-    return {
-        "p_value": "p-value",
-        "reverse_p_value": "reverse p-value",
-        "coefficient_sum_se": "its standard error",
-        "signed_partial_r2": "signed partial R²",
-    }.get(name, name.replace("_", " "))
 
 
 def _number(value: float | None) -> str:

@@ -13,19 +13,13 @@ import click
 from sweep.cli.common import print_rows, store_argument, sweep_option
 from sweep.cli.paths import DATA
 from sweep.errors import RuleNotMet
+from sweep.notebook import number_words
 
 if TYPE_CHECKING:
     from sweep.engine.verify import Verification
 
 SHOWN = 20
 """Disagreements that the table names; the rest are counted."""
-WORDS = {
-    "p_value": "p-value", "coefficient_sum_se": "its standard error",
-    "signed_partial_r2": "signed partial R²", "reverse_p_value": "reverse p-value",
-    "lag_standard_error": "standard error of a lag", "df_num": "restrictions",
-    "df_den": "degrees of freedom", "window": "window dates", "status": "status and reason",
-    "order_used": "order used",
-}  # fmt: skip
 
 
 @click.command()
@@ -90,7 +84,7 @@ def _print(found: Verification) -> None:
     print_rows(
         ["number", "compared", "least squares", "statsmodels", "allowed", "differing"],
         [
-            [WORDS.get(q.name, q.name.replace("_", " ")), f"{q.compared:,}", _short(q.slow),
+            [number_words(q.name), f"{q.compared:,}", _short(q.slow),
              _short(q.outside), _allowed(q.name, found.tolerance), f"{q.differing:,}"]
             for q in found.quantities
             if q.compared
@@ -101,9 +95,8 @@ def _print(found: Verification) -> None:
         return
     click.echo("\nThese did not:")
     for item in found.disagreements[:SHOWN]:
-        name = WORDS.get(item.quantity, item.quantity.replace("_", " "))
-        click.echo(f"  {item.specification} ({item.finding}), {name}: stored {item.stored}, "
-                   f"{item.by} gives {item.recomputed}")  # fmt: skip
+        click.echo(f"  {item.specification} ({item.finding}), {number_words(item.quantity)}: "
+                   f"stored {item.stored}, {item.by} gives {item.recomputed}")  # fmt: skip
     more = len(found.disagreements) - SHOWN
     if more > 0:
         click.echo(f"  and {more:,} more (--format json lists them all)")

@@ -63,7 +63,7 @@ class Asked:
     added: int
 
 
-@dataclass(frozen=True, slots=True)
+@dataclass(frozen=True, slots=True, repr=False)
 class Check:
     """A plan found sound, and its size.
 
@@ -113,6 +113,9 @@ class Check:
             f"{self.planned + self.added:,} specifications in all{added}; about "
             f"{duration(self.seconds)} with {workers}."
         )
+
+    def __repr__(self) -> str:
+        return f"{self.plan!r}\n{self}"
 
     def _repr_html_(self) -> str:
         return check_html(self)

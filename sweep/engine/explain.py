@@ -43,7 +43,7 @@ class Compared:
         return abs(self.stored - self.slow) / max(abs(self.slow), 1e-300)
 
 
-@dataclass(frozen=True, slots=True)
+@dataclass(frozen=True, slots=True, repr=False)
 class Explanation:
     """Everything known about one specification.
 
@@ -76,6 +76,12 @@ class Explanation:
     compared: tuple[Compared, ...]
     coefficients: tuple[tuple[int, float, float], ...]
     verdict: tuple[str, ...]
+
+    def __repr__(self) -> str:
+        sentences = (*self.sample, *self.regression, f"Hypothesis: {self.null}.", *self.verdict)
+        numbers = (f"{c.name}: stored {c.stored}, recomputed {c.slow}" for c in self.compared)
+        head = f"{self.statement}: specification {self.row['specification']}"
+        return "\n".join([head, *sentences, *numbers])
 
     def _repr_html_(self) -> str:
         return explanation_html(self)

@@ -77,7 +77,7 @@ class Disagreement:
     by: str
 
 
-@dataclass(frozen=True, slots=True)
+@dataclass(frozen=True, slots=True, repr=False)
 class Verification:
     """What came of recomputing a sample of a sweep.
 
@@ -118,6 +118,13 @@ class Verification:
             if value is not None
         ]
         return max(found, default=0.0)
+
+    def __repr__(self) -> str:
+        many = len({(item.finding, item.specification) for item in self.disagreements})
+        words = "every stored value came out again"
+        if many:
+            words = f"{many:,} rows do not hold what their plan and data give"
+        return f"{self.rows:,} of {self.stored:,} rows recomputed: {words}"
 
     def _repr_html_(self) -> str:
         return verification_html(self)

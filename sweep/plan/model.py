@@ -133,7 +133,7 @@ class Request:
     codes: tuple[Mapping[str, tuple[int, ...]], ...]
 
 
-@dataclass(frozen=True, slots=True)
+@dataclass(frozen=True, slots=True, repr=False)
 class Plan:
     """A validated plan file.
 
@@ -230,6 +230,9 @@ class Plan:
             for request in self.requests
             if code in request.codes[finding.number].get(axis, ())
         )
+
+    def __repr__(self) -> str:
+        return f"Plan {self.path.name}: {self.title}"
 
     def _repr_html_(self) -> str:
         return plan_html(self)

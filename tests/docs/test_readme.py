@@ -208,8 +208,9 @@ def test_ci_is_executable() -> None:
 def test_wheel_is_asked_to_hold_every_example() -> None:
     project = tomllib.loads((ROOT / "pyproject.toml").read_text(encoding="utf-8"))
     forced = project["tool"]["hatch"]["build"]["targets"]["wheel"]["force-include"]
-    plans = {f"configs/{path.name}" for path in (ROOT / "configs").glob("*.toml")}
-    assert plans | {"configs/data"} == set(forced)
+    kinds = ("*.toml", "*.ipynb")
+    held = {f"configs/{path.name}" for kind in kinds for path in (ROOT / "configs").glob(kind)}
+    assert held | {"configs/data"} == set(forced)
 
 
 def test_wheel_faults_are_found() -> None:

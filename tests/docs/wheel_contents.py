@@ -21,7 +21,7 @@ def wanted() -> set[str]:
         for kind in ("*.py", *DATA_FILES)
         for path in (ROOT / package).rglob(kind)
     }
-    for kind in ("*.toml", "data/*"):
+    for kind in ("*.toml", "*.ipynb", "data/*"):
         for path in (ROOT / "configs").glob(kind):
             if path.is_file():
                 names.add(f"sweep/examples/{path.relative_to(ROOT / 'configs').as_posix()}")

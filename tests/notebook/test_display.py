@@ -84,7 +84,9 @@ def no_network(monkeypatch: pytest.MonkeyPatch) -> None:
 
 
 def test_a_plan(plan_path: Path) -> None:
-    shown = seen(sweep.load_plan(plan_path))
+    plan = sweep.load_plan(plan_path)
+    assert repr(plan) == f"Plan plan.toml: {HOSTILE}"
+    shown = seen(plan)
     assert HOSTILE in shown.words
     assert "x → y, given z" in shown.words
     assert "rolling 80, step 20" in shown.words
@@ -98,6 +100,7 @@ def test_a_check(plan_path: Path) -> None:
     assert "with 2 workers" in shown.words
     assert "are ruled out, because" in shown.words
     assert str(check) in shown.words
+    assert repr(check).splitlines()[1] == str(check)
     assert str(check).startswith(f"{check.planned} specifications in all; about ")
 
 
@@ -110,6 +113,7 @@ def test_results(results: Results) -> None:
 def test_an_explanation(results: Results) -> None:
     explanation = results.explain()
     shown = seen(explanation)
+    assert str(explanation.row["specification"]) in repr(explanation).splitlines()[0]
     for item in explanation.compared:
         assert f"{item.stored:.6g}" in shown.words
     assert "Coefficients of x" in shown.words
@@ -119,7 +123,9 @@ def test_an_explanation(results: Results) -> None:
 
 
 def test_a_verification(results: Results) -> None:
-    assert "every stored value came out again" in seen(results.verify(rows=5)).words
+    verification = results.verify(rows=5)
+    assert "every stored value came out again" in seen(verification).words
+    assert repr(verification).endswith("rows recomputed: every stored value came out again")
 
 
 @pytest.mark.parametrize("name", TABLES)

@@ -1,0 +1,35 @@
+"""Run a notebook in a kernel of its own and write it with its outputs.
+
+    python tests/notebook/run_notebook.py NOTEBOOK FOLDER
+
+A program beside the tests, since its libraries leave sockets to the end of their process.  Kernel
+and program talk through files in FOLDER, not through a network; the kernel ends with the program.
+"""
+
+from __future__ import annotations
+
+import sys
+from pathlib import Path
+
+import nbformat
+from jupyter_client import AsyncKernelManager
+from nbclient import NotebookClient
+
+LONGEST_CELL = 300
+"""Seconds that a cell may take."""
+
+
+def main(notebook: Path, folder: Path) -> None:
+    """Run every cell in the folder; the first that fails ends it all."""
+    content = nbformat.read(notebook, as_version=4)
+    manager = AsyncKernelManager(
+        kernel_name="python3", transport="ipc", connection_file=str(folder / "kernel.json")
+    )
+    NotebookClient(
+        content, km=manager, timeout=LONGEST_CELL, resources={"metadata": {"path": str(folder)}}
+    ).execute()
+    nbformat.write(content, folder / notebook.name)
+
+
+if __name__ == "__main__":
+    main(Path(sys.argv[1]), Path(sys.argv[2]))
