@@ -174,7 +174,6 @@ def explanation_html(found: Explanation) -> str:
 
 def verification_html(found: Verification) -> str:
     """Return what came of recomputing a sample."""
-
     words = "every stored value came out again" if found.agrees else "stored values differ"
     parts = [
         _strong(f"{found.rows:,} of {found.stored:,} rows recomputed: {words}"),
