@@ -14,9 +14,7 @@ __all__ = ["EXAMPLES", "copy_example"]
 # Example and its files: the plan, a round of referees that starts from it, the data, a notebook.
 EXAMPLES = {
     "us_macro": ("us_macro.toml", "us_macro_referees.toml", "data/us_macro.csv"),
-    "harbour": (
-        "harbour.toml", "harbour_referees.toml", "data/harbour.csv", "harbour.ipynb",
-    ),
+    "harbour": ("harbour.toml", "harbour_referees.toml", "data/harbour.csv", "harbour.ipynb"),
 }
 
 

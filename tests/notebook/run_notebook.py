@@ -18,6 +18,12 @@ from nbclient import NotebookClient
 LONGEST_CELL = 300
 """Seconds that a cell may take."""
 
+# A kernel is ended from outside, so the workers of its runs would outlive it by minutes.
+END_WORKERS = """
+from joblib.externals.loky import get_reusable_executor
+get_reusable_executor().shutdown(wait=True)
+"""
+
 
 def main(notebook: Path, folder: Path) -> None:
     """Run every cell in the folder; the first that fails ends it all."""
@@ -25,11 +31,19 @@ def main(notebook: Path, folder: Path) -> None:
     manager = AsyncKernelManager(
         kernel_name="python3", transport="ipc", connection_file=str(folder / "kernel.json")
     )
-    NotebookClient(
+    client = NotebookClient(
         content, km=manager, timeout=LONGEST_CELL, resources={"metadata": {"path": str(folder)}}
-    ).execute()
+    )
+    *cells, last = content.cells = [*content.cells, nbformat.v4.new_code_cell(END_WORKERS)]
+    with client.setup_kernel():
+        try:
+            for number, cell in enumerate(cells):
+                client.execute_cell(cell, number)
+        finally:
+            client.execute_cell(last, len(cells))
+    content.cells = cells
     nbformat.write(content, folder / notebook.name)
 
 
 if __name__ == "__main__":
-    main(Path(sys.argv[1]), Path(sys.argv[2]))
+    main(Path(sys.argv[1]), Path(sys.argv[2]).resolve())

@@ -42,7 +42,7 @@ def test_its_code_parses_and_calls_what_there_is() -> None:
     }
     verbs = {"new", "load_plan", "check", "run", "chart", "table", "survival", "explain", "verify",
              "report", "export", "query", "compare", "frame"}  # fmt: skip
-    assert called == verbs | {"write_text"}
+    assert called == verbs | {"read_text", "write_text"}
 
 
 @pytest.mark.slow
