@@ -27,34 +27,49 @@ def shortest_faults(
 ) -> list[Fault]:
     """Find windows too short for every lag choice, and lags too long for every window.
 
-    A window that is short for some specifications only is no fault: those become infeasible.
+    A window that is short for some specifications or some findings only is no fault: those
+    become infeasible.
     """
     faults: list[Fault] = []
     lags = [choice for choice in plan.axes["lags"] if isinstance(choice, LagChoice)]
-    for finding in plan.findings:
-        lost = _lost_rows(plan, calendar)
-        for code, positions in windows[finding.number].items():
-            size = int((positions.last - positions.first).max()) + 1
-            # A moving or fixed window that starts later may read the values lost at the start.
-            room = size - (lost if int(positions.first.min()) == 0 and positions.count == 1 else 0)
-            if not any(_fits(plan, finding, lag, room) for lag in lags):
-                label = plan.axes["window"][code].label
-                faults.append(
-                    Fault("axes.windows", f'"{label}" has {size} periods, fewer than the smallest '
-                          f'regression of "{finding.name}" needs', "Lengthen it or use fewer lags.")
-                )  # fmt: skip
-        longest = max(
-            (int((p.last - p.first).max()) + 1 for p in windows[finding.number].values()),
-            default=0,
+    lost = _lost_rows(plan, calendar)
+    for code, choice in enumerate(plan.axes["window"]):
+        sizes = [
+            (finding, *_size(windows[finding.number][code], lost))
+            for finding in plan.findings
+            if code in windows[finding.number] and not windows[finding.number][code].lack
+        ]
+        fits = [_fits(plan, finding, lag, room) for finding, _, room in sizes for lag in lags]
+        if sizes and not any(fits):
+            finding, size, _ = sizes[0]
+            whose = f'"{finding.name}"' if len(plan.findings) == 1 else "any finding"
+            faults.append(
+                Fault("axes.windows", f'"{choice.label}" has {size} periods, fewer than the '
+                      f"smallest regression of {whose} needs", "Lengthen it or use fewer lags.")
+            )  # fmt: skip
+    longest = {
+        finding.number: max(
+            (_size(p, 0)[0] for p in windows[finding.number].values() if not p.lack), default=0
         )
-        for lag in lags:
-            if not _fits(plan, finding, lag, longest):
-                faults.append(
-                    Fault("axes.lags", f'"{lag.label}" lags leave no degree of freedom in the '
-                          f'longest window of "{finding.name}" ({longest} periods)',
-                          "Use fewer lags or longer windows.")
-                )  # fmt: skip
+        for finding in plan.findings
+    }
+    for lag in lags:
+        if not any(_fits(plan, f, lag, longest[f.number]) for f in plan.findings):
+            finding = max(plan.findings, key=lambda f: longest[f.number])
+            faults.append(
+                Fault("axes.lags", f'"{lag.label}" lags leave no degree of freedom in the '
+                      f'longest window of "{finding.name}" ({longest[finding.number]} periods)',
+                      "Use fewer lags or longer windows.")
+            )  # fmt: skip
     return faults
+
+
+def _size(positions: Positions, lost: int) -> tuple[int, int]:
+    """Return the periods of the longest position, and those that a regression may use."""
+    size = int((positions.last - positions.first).max()) + 1
+    # A moving or fixed window that starts later may read the values lost at the start.
+    starts = int(positions.first.min()) == 0 and positions.count == 1
+    return size, size - (lost if starts else 0)
 
 
 def fewest_terms(plan: Plan) -> int:

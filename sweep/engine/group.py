@@ -10,6 +10,7 @@ from numpy.typing import NDArray
 
 from sweep.engine.cost import task_seconds
 from sweep.engine.prepare import Prepared
+from sweep.engine.reasons import REASON_OF_LACK
 from sweep.engine.task import Scale, System, Task
 from sweep.panel.load import values_digest
 from sweep.panel.transforms import TRANSFORMS
@@ -141,6 +142,7 @@ def _task(
         episodes=windows.episodes,
         block=windows.block,
         unequal=windows.unequal,
+        lacking=windows.lacking,
         spans=windows.spans,
         systems=systems,
         lags=tuple(_lag(plan.axes["lags"][c]) for c in used["lags"]),
@@ -177,6 +179,7 @@ class _Windows:
     episodes: tuple[tuple[tuple[int, int], ...], ...]
     block: Ints
     unequal: NDArray[np.bool_]
+    lacking: Ints
     spans: dict[int, tuple[int, int]]
     window: NDArray[np.int32]
 
@@ -191,6 +194,7 @@ def _window_rows(prepared: Prepared, members: Ints, scales: tuple[Scale, ...]) -
     code, position = kinds // longest, kinds % longest
     first, last = np.empty_like(kinds), np.empty_like(kinds)
     block, unequal = np.full(kinds.size, -1, np.int64), np.zeros(kinds.size, bool)
+    lacking = np.zeros(kinds.size, np.int64)
     spans: dict[int, tuple[int, int]] = {}
     episodes: list[tuple[tuple[int, int], ...]] = [()] * kinds.size
     local = all(TRANSFORMS[scale.name].kind == "local" for scale in scales)
@@ -203,15 +207,17 @@ def _window_rows(prepared: Prepared, members: Ints, scales: tuple[Scale, ...]) -
             episodes[w] = positions.episodes
         choice = prepared.plan.axes["window"][entry]
         assert isinstance(choice, WindowChoice)
+        lacking[here] = REASON_OF_LACK[positions.lack]
         unequal[here] = choice.moving in ("expanding", "shrinking")
-        if choice.moving and local and not positions.episodes:
+        if choice.moving and local and not positions.episodes and not positions.lack:
             number = position[here] // _block_limit(choice)
             block[here] = entry * 2**32 + number
             for b in np.unique(number).tolist():
                 spans[entry * 2**32 + b] = _block_span(positions, b, _block_limit(choice))
     return _Windows(
-        first, last, tuple(episodes), block, unequal, spans, window.reshape(-1).astype(np.int32)
-    )
+        first, last, tuple(episodes), block, unequal, lacking, spans,
+        window.reshape(-1).astype(np.int32),
+    )  # fmt: skip
 
 
 def _block_span(positions: Positions, block: int, limit: int) -> tuple[int, int]:

@@ -71,6 +71,9 @@ class OrderBook:
         own, cause, given = (np.zeros(count, np.int64) for _ in range(3))
         reason = np.zeros(count, np.int64)
         unmodelled = max((lags for _, lags in system.exogenous), default=0)
+        lacking = self._panel.task.lacking[windows]
+        reason[windows] = lacking
+        windows = windows[lacking == 0]
         if choice.criterion:
             chosen, reason[windows] = self._choose(system, choice, term, windows)
             own[windows] = cause[windows] = given[windows] = chosen

@@ -6,8 +6,7 @@ from collections.abc import Iterator, Mapping
 from dataclasses import dataclass, replace
 from pathlib import Path
 
-import numpy as np
-
+from sweep.engine.cutting import cut_windows, spans_of, unused_rows, window_notes
 from sweep.engine.feasible import shortest_faults
 from sweep.errors import Fault, InputFault
 from sweep.panel.calendar import Calendar
@@ -24,13 +23,12 @@ from sweep.panel.load import (
     values_digest,
 )
 from sweep.panel.transforms import TRANSFORMS
-from sweep.panel.windows import Positions, WindowRequest, resolve_window
+from sweep.panel.windows import Positions
 from sweep.plan.canonical import Token, add_tokens, digest_text, halves, position_tokens
 from sweep.plan.choices import (
     DeterministicChoice,
     MeasureChoice,
     TransformationChoice,
-    WindowChoice,
 )
 from sweep.plan.expand import FindingPositions, PlanRows, expand_plan, request_axes
 from sweep.plan.model import Finding, FindingAxis, Plan, scale_of
@@ -55,8 +53,9 @@ class Prepared:
     data_keys : tuple of Token, one a finding
         Digest of the values that the finding uses.
     spans : tuple of (int, int), one a finding
-        First and last row at which the baseline's series all exist; windows are cut from
-        these rows, whatever the measures and the conditioning set.
+        First and last row at which the series of the baseline's measures and all given and
+        exogenous series exist; windows are cut from these rows, whatever the measures and
+        the conditioning set of a specification.
     terms : mapping of deterministics code to tuple of Term
     notes : tuple of str
         Choices that give the same numbers by construction, in words.
@@ -102,12 +101,14 @@ def prepare(plan: Plan) -> Prepared:
     faults += _log_faults(plan, dataset)
     if not faults:
         faults += _collinear_faults(plan, dataset)
-    spans = _spans(plan, dataset, faults)
-    windows = _windows(plan, spans, dataset.calendar, faults)
+    spans = spans_of(plan, dataset, faults)
+    windows = cut_windows(plan, spans, dataset.calendar, faults)
     terms = _terms(plan, dataset.calendar, faults)
     if faults:
         raise InputFault(*_unique(faults))
-    faults = missing_faults(dataset, dataset.names, _covered(windows, len(dataset.calendar)))
+    for finding in plan.findings:
+        unused = unused_rows(windows[finding.number], len(dataset.calendar))
+        faults += missing_faults(dataset, sorted(_columns(plan, finding)), unused)
     faults += shortest_faults(plan, windows, dataset.calendar)
     if faults:
         raise InputFault(*_unique(faults))
@@ -115,7 +116,7 @@ def prepare(plan: Plan) -> Prepared:
     _check_size(plan, positions)
     rows = expand_plan(plan, positions)
     keys = tuple(data_digest(dataset, sorted(_columns(plan, f))) for f in plan.findings)
-    notes = (*plan.notes, *_window_notes(plan, windows), *_measure_notes(dataset))
+    notes = (*plan.notes, *window_notes(plan, windows), *_measure_notes(dataset))
     return Prepared(plan, dataset, windows, rows, keys, terms, notes, tuple(spans))
 
 
@@ -169,49 +170,6 @@ def _collinear_faults(plan: Plan, dataset: Dataset) -> list[Fault]:
     return faults
 
 
-def _spans(plan: Plan, dataset: Dataset, faults: list[Fault]) -> list[tuple[int, int]]:
-    """Return, for each finding, the first and last row at which all its series exist."""
-    spans = []
-    for finding in plan.findings:
-        measure = next(_measures(plan, finding))
-        low, high = 0, len(dataset.calendar) - 1
-        for name in plan.columns(finding, measure):
-            rows = np.flatnonzero(np.isfinite(dataset.column(name)))
-            if rows.size:
-                low, high = max(low, int(rows[0])), min(high, int(rows[-1]))
-        if low > high:
-            names = ", ".join(plan.columns(finding, measure))
-            faults.append(
-                Fault(dataset.path.name, f"no date has a value of every series of "
-                      f'"{finding.name}" ({names})', "Use series that overlap in time.")
-            )  # fmt: skip
-        spans.append((low, high))
-    return spans
-
-
-def _windows(
-    plan: Plan, spans: list[tuple[int, int]], calendar: Calendar, faults: list[Fault]
-) -> tuple[dict[int, Positions], ...]:
-    result = []
-    for finding, span in zip(plan.findings, spans, strict=True):
-        found: dict[int, Positions] = {}
-        for code in plan.finding_axes[finding.number]["window"].every:
-            choice = plan.axes["window"][code]
-            assert isinstance(choice, WindowChoice)
-            request = WindowRequest(
-                choice.first, choice.last, choice.without, choice.drop_first, choice.drop_last,
-                choice.moving, choice.length, choice.step,
-            )  # fmt: skip
-            if span[0] > span[1]:
-                continue
-            try:
-                found[code] = resolve_window(request, span, calendar)
-            except ValueError as error:
-                faults.append(Fault("axes.windows", f'"{choice.label}": {error}'))
-        result.append(found)
-    return tuple(result)
-
-
 def _terms(plan: Plan, calendar: Calendar, faults: list[Fault]) -> dict[int, tuple[Term, ...]]:
     found = {}
     for code, choice in enumerate(plan.axes["deterministics"]):
@@ -240,22 +198,6 @@ def terms_of(choice: DeterministicChoice, calendar: Calendar) -> tuple[Term, ...
     for number in range(1, choice.fourier + 1):
         terms += [Term("sine", number), Term("cosine", number)]
     return tuple(terms)
-
-
-def _covered(windows: tuple[Mapping[int, Positions], ...], count: int) -> list[tuple[int, int]]:
-    """Return the runs of rows that no window of any finding uses."""
-    used = np.zeros(count, bool)
-    for found in windows:
-        for positions in found.values():
-            here = np.zeros(count, bool)
-            for first, last in zip(positions.first, positions.last, strict=True):
-                here[first : last + 1] = True
-            for first, last in positions.episodes:
-                here[first : last + 1] = False
-            used |= here
-    idle = np.flatnonzero(~used)
-    runs = np.split(idle, np.flatnonzero(np.diff(idle) > 1) + 1) if idle.size else []
-    return [(int(run[0]), int(run[-1])) for run in runs]
 
 
 def _tokens(plan: Plan, windows: Mapping[int, Positions], calendar: Calendar) -> FindingPositions:
@@ -297,20 +239,6 @@ def _full_size(axes: Mapping[str, FindingAxis], counts: Mapping[int, int]) -> in
         if axis != "window":
             size *= len(held.codes)
     return size
-
-
-def _window_notes(plan: Plan, windows: tuple[Mapping[int, Positions], ...]) -> list[str]:
-    """Name window choices that come down to the same rows."""
-    notes: dict[str, None] = {}
-    for found in windows:
-        seen: dict[tuple[bytes, bytes, object], str] = {}
-        for code, positions in found.items():
-            label = plan.axes["window"][code].label
-            key = (positions.first.tobytes(), positions.last.tobytes(), positions.episodes)
-            if key in seen:
-                notes[f'The windows "{seen[key]}" and "{label}" hold the same dates.'] = None
-            seen.setdefault(key, label)
-    return list(notes)
 
 
 def _measure_notes(dataset: Dataset) -> list[str]:

@@ -5,8 +5,9 @@ from __future__ import annotations
 from enum import IntEnum
 
 from sweep.kernels.stacks import Flag
+from sweep.panel.windows import Lack
 
-__all__ = ["FLAG_REASON", "REASONS", "RULED", "Reason", "Status"]
+__all__ = ["FLAG_REASON", "REASONS", "REASON_OF_LACK", "RULED", "Reason", "Status"]
 
 
 class Status(IntEnum):
@@ -33,6 +34,8 @@ class Reason(IntEnum):
     NO_COVARIANCE = 9
     NO_NUMBER = 10
     AUGMENTED_SCALE = 11
+    NO_DATES = 12
+    LONGER_THAN_SAMPLE = 13
 
 
 REASONS: dict[Reason, tuple[Status, str]] = {
@@ -62,10 +65,24 @@ REASONS: dict[Reason, tuple[Status, str]] = {
         Status.NOT_APPLICABLE,
         "a lag augmented test takes the series in levels or logarithms, not changed otherwise",
     ),
+    Reason.NO_DATES: (
+        Status.INFEASIBLE,
+        "the window leaves no date at which all series of the finding exist",
+    ),
+    Reason.LONGER_THAN_SAMPLE: (
+        Status.INFEASIBLE,
+        "the moving window is longer than the sample of the finding",
+    ),
     Reason.NO_NUMBER: (Status.FAILED, "the computation gave no finite number"),
 }
 RULED = 100
 """Rule r of the plan is reason ``RULED + r`` while rows travel; the store has its own codes."""
+
+REASON_OF_LACK = {
+    Lack.NOTHING: Reason.NONE,
+    Lack.DATES: Reason.NO_DATES,
+    Lack.LENGTH: Reason.LONGER_THAN_SAMPLE,
+}
 
 FLAG_REASON = {
     Flag.FINE: Reason.NONE,

@@ -71,6 +71,8 @@ class Task:
         Which running sums serve the window, -1 where its own rows do.
     unequal : ndarray of bool, shape (w,)
         Windows of an expanding or shrinking entry, which differ in length.
+    lacking : ndarray of int, shape (w,)
+        Reason why a window cannot be run, 0 for none.
     spans : mapping of block to (int, int)
         Calendar rows that each block's running sums cover.
     systems, lags, terms, procedures : tuple
@@ -97,6 +99,7 @@ class Task:
     episodes: tuple[tuple[tuple[int, int], ...], ...]
     block: Ints
     unequal: NDArray[np.bool_]
+    lacking: Ints
     spans: dict[int, tuple[int, int]]
     systems: tuple[System, ...]
     lags: tuple[LagChoice, ...]

@@ -1,4 +1,4 @@
-"""Rows of a plan whose choices make no sense together, known before anything is estimated."""
+"""Rows of a plan that are known to have no number before anything is estimated."""
 
 from __future__ import annotations
 
@@ -8,9 +8,9 @@ import numpy as np
 from numpy.typing import NDArray
 
 from sweep.engine.prepare import Prepared
-from sweep.engine.reasons import Reason
+from sweep.engine.reasons import REASON_OF_LACK, Reason
 from sweep.panel.transforms import TRANSFORMS
-from sweep.panel.windows import Positions
+from sweep.panel.windows import Lack, Positions
 from sweep.plan.choices import AXES, ConditioningChoice, MeasureChoice, TransformationChoice
 from sweep.plan.model import Finding, scale_of
 from sweep.procedures.lag_augmented import SCALES
@@ -21,7 +21,9 @@ Flags = NDArray[np.bool_]
 
 
 def unsuited(prepared: Prepared) -> dict[Reason, Flags]:
-    """Say which rows are ``not applicable``, by the reason that is stored with them.
+    """Say which rows cannot be run, as far as windows, scales and tests say so, by reason.
+
+    The plan's own rules are not looked at.
 
     Parameters
     ----------
@@ -36,7 +38,22 @@ def unsuited(prepared: Prepared) -> dict[Reason, Flags]:
     return {
         Reason.AUGMENTED_SCALE: off_scale,
         Reason.FILTER_EPISODE: _filter_meets_episode(prepared) & ~off_scale,
+        **{
+            REASON_OF_LACK[lack]: _lacking(prepared, lack) & ~off_scale
+            for lack in (Lack.DATES, Lack.LENGTH)
+        },
     }
+
+
+def _lacking(prepared: Prepared, lack: Lack) -> Flags:
+    """Say which rows choose a window that the sample of their finding cannot fill."""
+    rows = prepared.rows
+    found = np.zeros(rows.count, bool)
+    for finding in prepared.plan.findings:
+        held = prepared.windows[finding.number]
+        codes = [code for code, positions in held.items() if positions.lack == lack]
+        found |= (rows.finding == finding.number) & np.isin(rows.codes["window"], codes)
+    return found
 
 
 def _filter_meets_episode(prepared: Prepared) -> Flags:

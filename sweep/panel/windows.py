@@ -4,13 +4,14 @@ from __future__ import annotations
 
 from collections.abc import Callable
 from dataclasses import dataclass
+from enum import IntEnum
 
 import numpy as np
 from numpy.typing import NDArray
 
 from sweep.panel.calendar import Calendar
 
-__all__ = ["WINDOW_FAMILIES", "Positions", "WindowRequest", "resolve_window"]
+__all__ = ["WINDOW_FAMILIES", "Lack", "Positions", "WindowRequest", "resolve_window"]
 
 Ints = NDArray[np.int64]
 
@@ -43,6 +44,14 @@ class WindowRequest:
     step: int = 1
 
 
+class Lack(IntEnum):
+    """Why a window cannot be cut from the sample of a finding."""
+
+    NOTHING = 0
+    DATES = 1
+    LENGTH = 2
+
+
 @dataclass(frozen=True, slots=True)
 class Positions:
     """Rows of every position of one window choice.
@@ -52,12 +61,22 @@ class Positions:
     first, last : ndarray of int, shape (w,)
         First and last calendar row of each position, before lags are taken.
     episodes : tuple of (int, int)
-        First and last row of each episode left out.
+        First and last row of each episode left out, as far as they meet the window.
+    lack : Lack
+        What the finding's sample lacks for this window; then there is one position, which
+        cannot be run.
+    words : str
+        The same in words, ``""`` where nothing is lacking.
+    idle : tuple of (str, str)
+        Episodes of the plan that do not meet the window.
     """
 
     first: Ints
     last: Ints
     episodes: tuple[tuple[int, int], ...]
+    lack: Lack = Lack.NOTHING
+    words: str = ""
+    idle: tuple[tuple[str, str], ...] = ()
 
     @property
     def count(self) -> int:
@@ -67,6 +86,10 @@ class Positions:
 
 def resolve_window(request: WindowRequest, span: tuple[int, int], calendar: Calendar) -> Positions:
     """Return the rows of a window choice for a finding observed over ``span``.
+
+    A window that reaches beyond the finding's sample, but not beyond the calendar, is cut down
+    to it; an episode that does not meet the window leaves it as it is.  What another finding of
+    the plan may well have is no fault here but a window that lacks something.
 
     Parameters
     ----------
@@ -78,43 +101,41 @@ def resolve_window(request: WindowRequest, span: tuple[int, int], calendar: Cale
     Raises
     ------
     ValueError
-        In plain words: dates outside the sample, an episode that leaves nothing, a window
-        longer than the sample.
+        In plain words: a date outside the calendar.
     """
-    low, high = span
-    if request.first:
-        low = max(low, _row(calendar, request.first, "first", span))
-    if request.last:
-        high = min(high, _row(calendar, request.last, "last", span))
+    opens = calendar.find(request.first, "first") if request.first else 0
+    closes = calendar.find(request.last, "last") if request.last else len(calendar) - 1
+    low, high = max(opens, span[0]), min(closes, span[1])
+    sample = f"{calendar.label(span[0])} to {calendar.label(span[1])}"
     if low > high:
-        raise ValueError("leaves no date of the sample")
+        words = f"leaves no date at which all series exist ({sample})"
+        return _lacking(opens, max(opens, closes), Lack.DATES, words)
     size = high - low + 1
     low, high = low + int(request.drop_first * size), high - int(request.drop_last * size)
-    episodes = []
+    episodes, idle = [], []
     for start, end in request.without:
-        first, last = _row(calendar, start, "first", span), _row(calendar, end, "last", span)
+        first, last = calendar.find(start, "first"), calendar.find(end, "last")
         if first <= low and last >= high:
-            raise ValueError(f"the episode {start} to {end} leaves no date of the window")
-        if last < low or first > high:
-            raise ValueError(f"the episode {start} to {end} lies outside the window")
-        episodes.append((first, last))
+            words = f"the episode {start} to {end} leaves no date of the window"
+            return _lacking(low, high, Lack.DATES, words)
+        if last < low or first > high or last < first:
+            idle.append((start, end))
+        else:
+            episodes.append((first, last))
     if request.moving and request.length > high - low + 1:
-        raise ValueError(
+        words = (
             f"a window of {request.length} periods is longer than the sample "
             f"({high - low + 1} periods, {calendar.label(low)} to {calendar.label(high)})"
         )
+        return _lacking(low, high, Lack.LENGTH, words)
     first_rows, last_rows = WINDOW_FAMILIES[request.moving](low, high, request.length, request.step)
-    return Positions(first_rows, last_rows, tuple(episodes))
+    return Positions(first_rows, last_rows, tuple(episodes), idle=tuple(idle))
 
 
-def _row(calendar: Calendar, label: str, side: str, span: tuple[int, int]) -> int:
-    row = calendar.find(label, "first" if side == "first" else "last")
-    if not span[0] <= row <= span[1]:
-        raise ValueError(
-            f"{label} lies outside the dates at which all series exist "
-            f"({calendar.label(span[0])} to {calendar.label(span[1])})"
-        )
-    return row
+def _lacking(first: int, last: int, lack: Lack, words: str) -> Positions:
+    return Positions(
+        np.array([first], dtype=np.int64), np.array([last], dtype=np.int64), (), lack, words
+    )
 
 
 def _fixed(low: int, high: int, length: int, step: int) -> tuple[Ints, Ints]:

@@ -67,6 +67,11 @@ METHOD_NOTES = (
             "are computed inside it. A row is left out when any raw value that it uses, through "
             "lags or transformation, lies inside an excluded episode, so that time never closes "
             "up. Window dates are the first and last observation before lags are taken.",
+            "Windows are cut from the dates at which the series of the finding's baseline measures "
+            "and all its given and exogenous series exist. The same windows serve every "
+            "conditioning set and every measure, so that leaving a series out, or measuring one "
+            "otherwise, is compared on the same dates and not on others; a regression that leaves "
+            "out a short series could use more of them.",
             "The Hodrick–Prescott cycle is two-sided: it uses later values, which blurs what came "
             "first.",
         ),
