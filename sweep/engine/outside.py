@@ -18,6 +18,7 @@ from sweep.engine.outside_rows import (
     OutsideChoices,
     Panel,
     Rows,
+    dates_there,
     panel_of,
     rows_of,
     term_frame,
@@ -102,8 +103,13 @@ def outside(prepared: Prepared, chosen: OutsideChoices) -> dict[bool, OutsideDir
 
 def obstacles(prepared: Prepared, chosen: OutsideChoices, *, reverse: bool) -> set[Reason]:
     """Return every reason why a direction cannot have a number, as its rows show."""
+    dates = dates_there(prepared, chosen)
+    if not dates:
+        return {Reason.NO_DATES}
     panel = panel_of(prepared, chosen)
     found = {Reason.FILTER_EPISODE} if panel.filtered_across else set()
+    if chosen.window.length > dates:
+        found.add(Reason.LONGER_THAN_SAMPLE)
     scales = {scale_of(chosen.scale, role, chosen.columns[role]) for role in chosen.series}
     if chosen.procedure.extra_lags and not scales <= {"level", "log"}:
         found.add(Reason.AUGMENTED_SCALE)

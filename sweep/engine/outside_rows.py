@@ -28,8 +28,8 @@ from sweep.plan.choices import (
 from sweep.plan.model import Exogenous, Finding, scale_of
 
 __all__ = [
-    "CONSTANT", "OutsideChoices", "Panel", "Rows", "choices_of", "panel_of", "rows_of",
-    "term_frame",
+    "CONSTANT", "OutsideChoices", "Panel", "Rows", "choices_of", "dates_there", "panel_of",
+    "rows_of", "term_frame",
 ]  # fmt: skip
 
 CONSTANT = "time^0"
@@ -153,15 +153,35 @@ def choices_of(
     )
 
 
-def panel_of(prepared: Prepared, chosen: OutsideChoices) -> Panel:
-    """Transform the series of a specification and cut its window."""
+def dates_there(prepared: Prepared, chosen: OutsideChoices) -> int:
+    """Return how many dates of the window hold every series of the finding's baseline."""
+    plan, finding = prepared.plan, chosen.finding
+    measure = plan.axes["measures"][plan.finding_axes[finding.number]["measures"].baseline]
+    assert isinstance(measure, MeasureChoice)
+    raw = {role: prepared.dataset.column(measure.column(role)) for role in finding.roles}
+    dates, left_out = _left_out(prepared, chosen)
+    whole = pd.DataFrame(raw, index=dates).notna().all(axis=1) & ~left_out
+    return int(whole[chosen.first : chosen.last].sum())
+
+
+def _left_out(
+    prepared: Prepared, chosen: OutsideChoices
+) -> tuple[pd.DatetimeIndex, pd.Series[bool]]:
+    """Return the dates of the data, and which of them lie in an episode left out."""
     calendar = prepared.dataset.calendar
-    frequency = calendar.frequency
     dates = pd.DatetimeIndex(pd.to_datetime(list(calendar.dates)))
     left_out = pd.Series(False, index=dates)
     for start, end in chosen.window.without:
-        opens, closes = parse_period(start, frequency)[0], parse_period(end, frequency)[1]
+        opens = parse_period(start, calendar.frequency)[0]
+        closes = parse_period(end, calendar.frequency)[1]
         left_out |= (dates >= pd.Timestamp(opens)) & (dates <= pd.Timestamp(closes))
+    return dates, left_out
+
+
+def panel_of(prepared: Prepared, chosen: OutsideChoices) -> Panel:
+    """Transform the series of a specification and cut its window."""
+    frequency = prepared.dataset.calendar.frequency
+    dates, left_out = _left_out(prepared, chosen)
     inside = slice(chosen.first, chosen.last)
     finding = chosen.finding
     roles = (*chosen.series, *(item.series for item in finding.exogenous))

@@ -59,6 +59,7 @@ def test_what_one_finding_cannot_do_is_infeasible_there(
     assert (late["reverse_status"] == "infeasible").all()
     assert set(late["reason"]) == {reason}
     assert late["window_start"].notna().all()
+    assert sweep.open_results(plan.with_suffix(".duckdb")).verify().agrees
     announced = {(item.finding, item.because): item.specifications
                  for item in sweep.check(plan).ruled_out}  # fmt: skip
     foreseen = {} if reason == TOO_FEW else {("w leads y", reason): len(late)}
