@@ -96,29 +96,28 @@ def build(
         ``narrow`` (85 mm) or ``wide`` (175 mm).
     """
     frame = frames["window_paths"]
+    if frame.empty:
+        said = f"{context.lead} {context.losses}"
+        return marks.without_marks(_NONE, width, QUESTION, said)
     names = _names(frame)
     runs = episodes(frame)
     bars = _bars(frame, runs, names)
     across = WIDTHS[width]
     track = (_LEFT[width], across - 4.0)
-    height = _TOP + max(len(names), 1) * (_HEAD + 2 * _ROW + _AFTER) + 30
-    low = min((bar["day"] for bar in bars), default=0.0)
-    high = max((bar["to"] for bar in bars), default=1.0)
+    height = _TOP + len(names) * (_HEAD + 2 * _ROW + _AFTER) + 30
+    low, high = min(bar["day"] for bar in bars), max(bar["to"] for bar in bars)
     x = Scale("day", (low, high), track)
-    layers: Layers = []
-    if bars:
-        layers += _ground(names, height, x, (low, high), width)
-        layers += marks.areas(bars, height, x, "to", tips=_TIPS)
-        absent = [
-            {"y": (bar["y"] + bar["y2"]) / 2, "day": (bar["day"] + bar["to"]) / 2}
-            for bar in bars
-            if bar["state"] == "not admissible"
-        ]
-        layers += marks.dots(absent, height, x, colour=ABSENT, area=7)
-        layers += _labels(names, runs, height, across, width)
-    else:
-        layers += marks.texts([{"y": _TOP + 10, "text": _NONE}], height, 0, colour=QUIET)
-        layers += marks.strokes([{"y": _TOP + 22}], height, 0, across, colour=WASH)
+    absent = [
+        {"y": (bar["y"] + bar["y2"]) / 2, "day": (bar["day"] + bar["to"]) / 2}
+        for bar in bars
+        if bar["state"] == "not admissible"
+    ]
+    layers = [
+        *_ground(names, height, x, (low, high), width),
+        *marks.areas(bars, height, x, "to", tips=_TIPS),
+        *marks.dots(absent, height, x, colour=ABSENT, area=7),
+        *_labels(names, runs, height, across, width),
+    ]
     return marks.figure(layers, width, height, QUESTION, _subtitle(context, frame, names))
 
 

@@ -160,8 +160,8 @@ def build(
     return marks.figure(
         [
             *p_track.ground(arranged.height, height, track, context),
-            *_labels(arranged, height, across),
             *p_track.baseline_marks(baseline, context, arranged.height, height, track),
+            *_labels(arranged, height, across),
             *p_track.strokes(drawn, height, track),
             *_singles(drawn, height, track),
             *p_track.ends(drawn, height, track),
@@ -197,7 +197,13 @@ def _labels(arranged: Arrangement, height: float, across: float) -> Layers:
         {"y": group.middle, "text": shortened(group.text, across, bold=True)}
         for group in arranged.groups
     ]
-    layers = marks.texts(heads, height, 0, bold=True)
+    layers: Layers = []
+    for group in arranged.groups:
+        # The level's line and the baseline's stop for a name that reaches across them.
+        ground = [{"y": group.middle - 6, "y2": group.middle + 6}]
+        end = text_width(shortened(group.text, across, bold=True), bold=True) + 2
+        layers += marks.areas(ground, height, 0, end, colour="white")
+    layers += marks.texts(heads, height, 0, bold=True)
     lines = [{"y": group.bottom - 1} for group in arranged.groups]
     layers += marks.strokes(lines, height, 1, across - 1, colour=HAIRLINE, width=0.6)
     names = [line for row in arranged.choices for line in row.label_rows()]
