@@ -6,7 +6,6 @@ import os
 import re
 from collections.abc import Iterator, Mapping, Sequence
 from contextlib import contextmanager, suppress
-from dataclasses import dataclass
 from datetime import UTC, datetime
 from importlib import metadata
 from pathlib import Path
@@ -26,9 +25,10 @@ from store.errors import (
     StoreLocked,
     StoreMissing,
 )
+from store.records import Statement
 from store.schema import SCHEMA_VERSION, STORAGE_VERSION, VIEWS, query, schema_sql
 
-__all__ = ["Database", "Statement", "create", "now", "open_reading", "open_writing"]
+__all__ = ["Database", "create", "now", "open_reading", "open_writing"]
 
 # The log is folded into the file in larger portions than DuckDB's 16 MB: a million rows in
 # batches of 50,000 then take 2.4 s instead of 3.4 s.
@@ -46,22 +46,6 @@ Parameters = Sequence[Any] | Mapping[str, Any] | None
 def now() -> datetime:
     """Return the time in universal time without a zone, as the store keeps it."""
     return datetime.now(UTC).replace(tzinfo=None)
-
-
-@dataclass(frozen=True, slots=True)
-class Statement:
-    """One statement of a user's SQL.
-
-    Attributes
-    ----------
-    kind : str
-        ``SELECT`` for everything that only reads; otherwise its verb, such as ``COPY``.
-    parameters : frozenset of str
-        Names after a ``$``.
-    """
-
-    kind: str
-    parameters: frozenset[str]
 
 
 class Database:

@@ -1,4 +1,4 @@
-"""Frozen records that callers hand to the writer; one for each kind of dictionary row."""
+"""Frozen records: what callers hand to the writer, and a statement of a user's SQL."""
 
 from __future__ import annotations
 
@@ -9,6 +9,7 @@ __all__ = [
     "FindingRecord",
     "RequestChoiceRecord",
     "RequestRecord",
+    "Statement",
     "SweepChoiceRecord",
     "SweepRecord",
 ]
@@ -218,3 +219,19 @@ class RequestChoiceRecord:
     axis: str
     code: int
     position: int
+
+
+@dataclass(frozen=True, slots=True)
+class Statement:
+    """One statement of a user's SQL.
+
+    Attributes
+    ----------
+    kind : str
+        ``SELECT`` for everything that only reads; otherwise its verb, such as ``COPY``.
+    parameters : frozenset of str
+        Names after a ``$``.
+    """
+
+    kind: str
+    parameters: frozenset[str]
