@@ -63,7 +63,7 @@ def compute_task(task: Task) -> Outcome:
     for group in groups:
         for forward, backward, members in _pieces(task, group):
             windows = np.unique(task.window[members]).astype(np.int64)
-            names = {task.procedures[p].covariance for p in np.unique(task.procedure[members])}
+            names = {task.procedures[p].sandwich for p in np.unique(task.procedure[members])}
             single = bool(task.coefficients[members].any())
             fits.ask(forward, windows, names, single_lags=single)
             fits.ask(backward, windows, names, single_lags=single)
@@ -233,7 +233,7 @@ class _Sheet:
         good = self.integers["status"][rows] == Status.OK
         for name, values in (
             ("coefficient_sum", total),
-            ("coefficient_sum_se", fitted.errors[choice.covariance][window]),
+            ("coefficient_sum_se", fitted.errors[choice.sandwich][window]),
             ("signed_partial_r2", np.sign(total) * partial),
             ("standardised_sum", fitted.standardised_sum[window]),
         ):
@@ -246,7 +246,7 @@ class _Sheet:
         rows, window = rows[good], window[good]
         count, q = rows.size, fitted.restrictions
         value = fitted.lag_values[window]
-        error = fitted.lag_errors[choice.covariance][window]
+        error = fitted.lag_errors[choice.sandwich][window]
         freedom = (fitted.observations[window] - fitted.regressors).astype(float)
         with np.errstate(invalid="ignore", divide="ignore"):
             p_value = student_tail(value / error, freedom[:, None])

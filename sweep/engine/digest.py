@@ -64,7 +64,7 @@ class Digests:
         meaning = [
             *(self._equation(equation) for equation, _ in (forward, backward)),
             sorted([item.kind, item.number] for item in terms),
-            [choice.form or choice.statistic, choice.covariance, choice.divisor],
+            [choice.form or choice.statistic, str(choice.sandwich), choice.divisor],
         ]
         words = mix(forward[1].rows[windows] ^ np.uint64(_word(canonical_json(meaning))))
         with np.errstate(over="ignore"):

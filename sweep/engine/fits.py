@@ -13,7 +13,7 @@ from sweep.engine.panel import TaskPanel
 from sweep.engine.reasons import FLAG_REASON, Reason
 from sweep.engine.task import System
 from sweep.kernels.layout import Gram, Layout, Moments
-from sweep.kernels.robust import RobustFit, robust_stack
+from sweep.kernels.robust import RobustFit, Sandwich, robust_stack
 from sweep.kernels.stacks import Flag, Regression, StackFit, fit_stack
 from sweep.kernels.words import Words
 
@@ -149,22 +149,22 @@ class Fitted:
     regressors: int
     restrictions: int
     coefficient_sum: Floats
-    errors: dict[str, Floats]
-    robust_wald: dict[str, Floats]
+    errors: dict[Sandwich, Floats]
+    robust_wald: dict[Sandwich, Floats]
     standardised_sum: Floats
     solver: Ints
     reason: Ints
     exact_row: NDArray[np.bool_]
     rows: Words
     lag_values: Floats
-    lag_errors: dict[str, Floats]
+    lag_errors: dict[Sandwich, Floats]
 
 
 @dataclass(slots=True)
 class _Request:
     windows: NDArray[np.bool_]
     effects: set[int] = field(default_factory=set)
-    covariances: set[str] = field(default_factory=set)
+    covariances: set[Sandwich] = field(default_factory=set)
     equation: Equation | None = None
     single_lags: bool = False
 
@@ -183,7 +183,7 @@ class FitBook:
         self._fitted: dict[Equation, Fitted] = {}
 
     def ask(
-        self, equation: Equation, windows: Ints, covariances: set[str], *, single_lags: bool
+        self, equation: Equation, windows: Ints, covariances: set[Sandwich], *, single_lags: bool
     ) -> None:
         """Note that an equation is needed in some windows, and with which covariances."""
         key = equation.right_hand_side
@@ -238,8 +238,8 @@ class FitBook:
         regression = _regression(equation, effects, columns, layout)
         fit = fit_stack(moments, gram, windows, layout, equation.start, regression)
         reason = self._reasons(equation, gram, windows, columns, fit)
-        robust: dict[str, RobustFit] = {}
-        names = sorted(request.covariances - {"classical"})
+        robust: dict[Sandwich, RobustFit] = {}
+        names = sorted(request.covariances - {"classical"}, key=str)
         if names:
             robust = robust_stack(
                 moments, windows, layout, equation.start, regression, fit, names, wanted
@@ -270,7 +270,7 @@ class FitBook:
     def _spread_out(
         self,
         fit: StackFit,
-        robust: dict[str, RobustFit],
+        robust: dict[Sandwich, RobustFit],
         position: int,
         unit: Floats,
         windows: Ints,
@@ -287,21 +287,22 @@ class FitBook:
             out[windows] = values
             return out
 
-        errors = {"classical": wide(fit.coefficient_sum_error[:, position] * unit)}
+        plain = wide(fit.coefficient_sum_error[:, position] * unit)
+        errors: dict[Sandwich, Floats] = {"classical": plain}
         exact = np.zeros(count, bool)
         for name, result in robust.items():
             errors[name] = wide(result.coefficient_sum_error[:, position] * unit)
             exact[windows] |= result.exact_row
         words = np.zeros(count, np.uint64)
         words[windows] = rows
-        lag_values, lag_errors = np.empty((count, 0)), {}
+        lag_values = np.empty((count, 0))
+        lag_errors: dict[Sandwich, Floats] = {}
         if single_lags:
             values, error = fit.lag_coefficients(position)
             lag_values = wide(values * unit[:, None])
-            lag_errors = {"classical": wide(error * unit[:, None])} | {
-                name: wide(result.lag_errors[:, position] * unit[:, None])
-                for name, result in robust.items()
-            }
+            lag_errors["classical"] = wide(error * unit[:, None])
+            for name, result in robust.items():
+                lag_errors[name] = wide(result.lag_errors[:, position] * unit[:, None])
         return Fitted(
             explained=wide(fit.explained[:, position]),
             residual=wide(fit.residual[:, position]),

@@ -25,12 +25,14 @@ from sweep.engine.outside_rows import (
 )
 from sweep.engine.prepare import Prepared
 from sweep.engine.reasons import Reason
+from sweep.kernels.longrun import chosen_bandwidth, kernel_weights
 from sweep.plan.choices import LagChoice, ProcedureChoice
 from sweep.plan.model import scale_of
 
 __all__ = ["OutsideDirection", "obstacles", "outside"]
 
 Floats = NDArray[np.float64]
+Ints = NDArray[np.int64]
 
 FREEDOM = 20
 """Degrees of freedom that a criterion's largest order leaves, as the README says."""
@@ -140,7 +142,10 @@ def obstacles(prepared: Prepared, chosen: OutsideChoices, *, reverse: bool) -> s
         part = NO_PART if chosen.procedure.covariance in RECIPROCAL else RANK
         if ((left**2).sum(axis=1) > FULL)[own > part].any():
             found.add(Reason.LEVERAGE)
-        if _singular(left[:, -rows.cause.shape[1] :], residual):
+        # A long-run covariance is as good as singular where White's is, or by its weights.
+        if chosen.procedure.covariance == "HAC" or _singular(
+            left[:, -rows.cause.shape[1] :], residual
+        ):
             found.add(Reason.NO_COVARIANCE)
     return found
 
@@ -294,12 +299,14 @@ def _estimate(rows: Rows, procedure: ProcedureChoice) -> OutsideDirection:
         # statsmodels warns of poor conditioning, which comparing the numbers finds out.
         warnings.simplefilter("ignore")
         full, restricted = _fits(effect, design, procedure, q)
-        statistic, p_value, df_den = _tested(full, restricted, procedure, q)
+        covariance = _over_time(full, columns[:, rows.terms.shape[1] :], rows.times, procedure)
+        statistic, p_value, df_den = _tested(full, restricted, procedure, q, covariance)
         # Back to raw units: a coefficient of a column divided by the column's length.
         size = _length(columns - columns.mean(axis=0) if rows.constant else columns)[k - q :]
         weights = np.zeros((q, k))
         weights[np.arange(q), k - q + np.arange(q)] = 1.0 / size
-        total, single = full.t_test(weights.sum(axis=0)), full.t_test(weights)
+        total = full.t_test(weights.sum(axis=0), cov_p=covariance)
+        single = full.t_test(weights, cov_p=covariance)
     s0 = float(restricted @ restricted)
     spread = rows.current.std(ddof=0)
     coefficient_sum = float(np.squeeze(total.effect))
@@ -318,7 +325,8 @@ def _fits(
     """Return the unrestricted fit, and the residuals of the restricted one."""
     import statsmodels.api as sm
 
-    kind = "nonrobust" if procedure.covariance == "classical" else procedure.covariance
+    own = procedure.covariance in ("classical", "HAC")  # HAC takes gaps in time: see below
+    kind = "nonrobust" if own else procedure.covariance
     kept = _spared(design, q) if kind in RECIPROCAL else np.ones(len(effect), bool)
     full = sm.OLS(effect[kept], design[kept]).fit(cov_type=kind, use_t=True)
     if design.shape[1] == q:
@@ -336,8 +344,33 @@ def _spared(design: Floats, q: int) -> NDArray[np.bool_]:
     return np.asarray((whole < 1.0 - 1e-10) | (own > NO_PART))
 
 
+def _over_time(
+    full: Any, columns: Floats, times: Ints, procedure: ProcedureChoice
+) -> Floats | None:
+    """Return the autocorrelation-robust covariance by statsmodels' sums over lags.
+
+    Rows that are missing stand in the scores as zeros, so that no gap closes up.
+    """
+    how = procedure.sandwich
+    if isinstance(how, str):
+        return None
+    from statsmodels.stats.sandwich_covariance import S_hac_simple
+
+    residuals, design = np.asarray(full.resid), full.model.exog
+    weights = kernel_weights(
+        how.kernel, chosen_bandwidth(how, columns, residuals, times), int(np.ptp(times)) + 1
+    )
+    # The sums are of what each row adds to the estimate, (X′X)⁻¹x_t e_t, not of x_t e_t: the
+    # inverse is then not taken twice, which costs digits.
+    parts = np.zeros((int(np.ptp(times)) + 1, design.shape[1]))
+    parts[times - times[0]] = np.asarray(full.model.pinv_wexog).T * residuals[:, None]
+    every = np.concatenate([[1.0], weights])
+    found = S_hac_simple(parts, nlags=weights.size, weights_func=lambda _: every)
+    return np.asarray(found * (full.nobs / full.df_resid if how.small_sample else 1.0))
+
+
 def _tested(
-    full: Any, restricted: Floats, procedure: ProcedureChoice, q: int
+    full: Any, restricted: Floats, procedure: ProcedureChoice, q: int, covariance: Floats | None
 ) -> tuple[float, float, int | None]:
     """Return statistic, p-value and denominator degrees of freedom by statsmodels' own tests."""
     import statsmodels.api as sm
@@ -347,10 +380,10 @@ def _tested(
     block = np.eye(k)[k - q :]
     statistic = procedure.form or procedure.statistic
     if statistic == "F":
-        found = full.f_test(block)
+        found = full.f_test(block, cov_p=covariance)
         return float(np.squeeze(found.fvalue)), float(found.pvalue), freedom
     if statistic == "Wald" and procedure.divisor != "T":
-        found = full.wald_test(block, use_f=False, scalar=True)
+        found = full.wald_test(block, cov_p=covariance, use_f=False, scalar=True)
         return float(found.statistic), float(found.pvalue), None
     if statistic == "LM":
         # T times the uncentred R² of the restricted residuals on all regressors.

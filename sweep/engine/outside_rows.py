@@ -106,6 +106,8 @@ class Rows:
         Deterministic terms; own, given and exogenous regressors; lags of the cause.
     current : DataFrame
         Values of the cause and the effect in the same rows.
+    times : ndarray of int, shape (T,)
+        Place of each row in the window, gaps counted.
     """
 
     effect: pd.Series[float]
@@ -113,6 +115,7 @@ class Rows:
     nuisance: pd.DataFrame
     cause: pd.DataFrame
     current: pd.DataFrame
+    times: NDArray[np.int64]
 
     @property
     def regressors(self) -> int:
@@ -243,6 +246,7 @@ def rows_of(
         pd.DataFrame(nuisance, index=panel.values.index).loc[index],
         pd.DataFrame(tested).loc[index],
         panel.values.loc[index, [cause, effect]],
+        np.flatnonzero(complete),
     )
 
 

@@ -20,6 +20,7 @@ from sweep.kernels.plain import (
     PlainFit,
     plain_design,
     plain_fit,
+    plain_long_run,
     plain_order,
     plain_orders,
     plain_robust,
@@ -179,10 +180,10 @@ def _direction(
     regressors = rows[:, :-current]
     effect = rows[:, regressors.shape[1]]
     fit = plain_fit(effect, regressors[:, :-cause], regressors[:, -cause:])
-    statistic, p_value, df_den = _statistic(fit, procedure)
+    statistic, p_value, df_den = _statistic(fit, procedure, which, terms.shape[1])
     covariance = fit.covariance
     if procedure.covariance != "classical":
-        covariance = plain_robust(fit, procedure.covariance)
+        covariance = _sandwich(fit, procedure, which, terms.shape[1])
     block = covariance[-cause:, -cause:]
     s0, s1 = fit.restricted_squares, fit.unrestricted_squares
     return (
@@ -218,14 +219,26 @@ def _orders(
     raise ValueError("no order leaves 20 degrees of freedom in this window")
 
 
-def _statistic(fit: PlainFit, procedure: ProcedureChoice) -> tuple[float, float, int | None]:
+def _sandwich(
+    fit: PlainFit, procedure: ProcedureChoice, times: NDArray[np.int64], terms: int
+) -> Floats:
+    """Return the sandwich covariance of the tested lags that an entry asks for."""
+    how = procedure.sandwich
+    if isinstance(how, str):
+        return plain_robust(fit, how)
+    return plain_long_run(fit, how, times, terms)
+
+
+def _statistic(
+    fit: PlainFit, procedure: ProcedureChoice, times: NDArray[np.int64], terms: int
+) -> tuple[float, float, int | None]:
     """Return statistic, p-value and denominator degrees of freedom, from scipy.stats' laws."""
     from scipy import stats
 
     s0, s1, q = fit.restricted_squares, fit.unrestricted_squares, fit.restrictions
     t, freedom = fit.observations, fit.observations - fit.regressors
     if procedure.covariance != "classical":
-        block = plain_robust(fit, procedure.covariance)
+        block = _sandwich(fit, procedure, times, terms)
         b = fit.lag_coefficients
         wald = float(b @ np.linalg.solve(block, b))
     else:

@@ -316,10 +316,10 @@ class StoreSink:
         }
 
 
-def _test_group(choice: Choice) -> tuple[str, int]:
+def _test_group(choice: Choice) -> tuple[object, int]:
     """Return what tests of one quantity in several dresses share: covariance and extra lags."""
     assert isinstance(choice, ProcedureChoice)
-    return choice.covariance, choice.extra_lags
+    return choice.sandwich, choice.extra_lags
 
 
 def stored_numerics() -> str:

@@ -111,6 +111,10 @@ class RunningMoments:
             groups.append((members.astype(np.int64), np.concatenate(parts, axis=2)))
         return groups
 
+    def times(self, select: Ints, layout: Layout, start: int) -> list[Ints]:
+        """Return the period of every row of the design, one array a selected window."""
+        return [np.arange(count) for count in self.observations(select, layout, start).tolist()]
+
     def _address(self, layout: Layout) -> Ints:
         """Return flat offsets into the running sums, shape (c, c), for the row before ``t``."""
         if layout not in self._addresses:

@@ -132,3 +132,7 @@ class Moments(Protocol):
     def design(self, select: Ints, layout: Layout, start: int) -> list[tuple[Ints, Floats]]:
         """Return (positions in ``select``, rows (w, t, c)) in groups of equal length."""
         ...
+
+    def times(self, select: Ints, layout: Layout, start: int) -> list[Ints]:
+        """Return the period of every row of the design, one array a selected window."""
+        ...

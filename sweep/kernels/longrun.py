@@ -8,13 +8,40 @@ is missing has score zero, so that rows on both sides of a gap are never taken f
 
 from __future__ import annotations
 
+from dataclasses import dataclass
+
 import numpy as np
 
 from sweep.kernels.layout import Floats, Ints
 
 __all__ = [
-    "andrews_bandwidth", "kernel_weights", "long_run", "newey_west_bandwidth", "on_time_grid",
+    "LongRun", "andrews_bandwidth", "chosen_bandwidth", "kernel_weights", "long_run",
+    "newey_west_bandwidth", "on_time_grid",
 ]  # fmt: skip
+
+
+@dataclass(frozen=True, slots=True)
+class LongRun:
+    """An autocorrelation-robust covariance as an entry of a plan means it.
+
+    Attributes
+    ----------
+    kernel : str
+        ``Bartlett`` or ``quadratic spectral``.
+    bandwidth : float or str
+        Periods, or the rule ``Newey-West`` or ``Andrews``.
+    small_sample : bool
+        Whether the covariance is scaled by T/(T − k).
+    """
+
+    kernel: str
+    bandwidth: float | str
+    small_sample: bool = False
+
+    def __str__(self) -> str:
+        scaled = ", T/(T-k)" if self.small_sample else ""
+        return f"HAC, {self.kernel}, {self.bandwidth}{scaled}"
+
 
 # A quadratic spectral weight never reaches zero; below this it adds nothing that counts.
 SMALLEST_WEIGHT = 1e-7
@@ -177,3 +204,42 @@ def andrews_bandwidth(scores: Floats, counted: Floats, rows: int, kernel: str) -
         above = (weight * 4 * root**2 / (1 - root) ** 8).sum()
     constant, rate = _NEWEY_WEST[kernel]
     return float(constant * (above / below * rows) ** rate)
+
+
+def chosen_bandwidth(how: LongRun, regressors: Floats, residuals: Floats, times: Ints) -> float:
+    """Return the bandwidth of one regression, by the fixed number or the rule.
+
+    The rules sum over the scores of all regressors that are not deterministic.  Regressors are
+    standardised first, so that the bandwidth depends neither on units of measurement nor on how
+    a trend is written (rules as they are usually programmed do).  Newey & West's is cut to
+    whole lags; Andrews's Bartlett bandwidth counts the lag at which the weight reaches zero,
+    one more than ours.
+
+    Parameters
+    ----------
+    how : LongRun
+    regressors : ndarray, shape (t, s)
+        Without the deterministic terms.
+    residuals : ndarray, shape (t,)
+    times : ndarray of int, shape (t,)
+        Period of each row.
+
+    Returns
+    -------
+    float
+        For :func:`kernel_weights`; NaN where the scores do not move.
+    """
+    if not isinstance(how.bandwidth, str):
+        return float(how.bandwidth)
+    centred = regressors - regressors.mean(axis=0)
+    spread = np.sqrt((centred**2).mean(axis=0))
+    if not (spread > 0).all():
+        return float("nan")
+    grid = on_time_grid(centred / spread * residuals[:, None], times)
+    counted = np.ones(grid.shape[1])
+    rows = residuals.size
+    if how.bandwidth == "Newey-West":
+        found = newey_west_bandwidth(grid, counted, rows, how.kernel)
+        return float(np.floor(found)) if how.kernel == "Bartlett" else found
+    found = andrews_bandwidth(grid, counted, rows, how.kernel)
+    return max(found - 1.0, 0.0) if how.kernel == "Bartlett" else found

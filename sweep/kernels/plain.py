@@ -10,9 +10,13 @@ from dataclasses import dataclass
 import numpy as np
 from scipy import special
 
-from sweep.kernels.layout import Floats
+from sweep.kernels.layout import Floats, Ints
+from sweep.kernels.longrun import LongRun, chosen_bandwidth, kernel_weights
 
-__all__ = ["PlainFit", "plain_design", "plain_fit", "plain_order", "plain_orders", "plain_robust"]
+__all__ = [
+    "PlainFit", "plain_design", "plain_fit", "plain_long_run", "plain_order", "plain_orders",
+    "plain_robust",
+]  # fmt: skip
 
 
 @dataclass(frozen=True, slots=True)
@@ -163,6 +167,33 @@ def plain_robust(fit: PlainFit, covariance: str) -> Floats:
     }[covariance]
     weight[exact] = 0.0
     return np.asarray((estimator * (weight * fit.residuals**2)) @ estimator.T)
+
+
+def plain_long_run(fit: PlainFit, how: LongRun, times: Ints, terms: int) -> Floats:
+    """Return the autocorrelation-robust covariance of the cause's lag coefficients, (q, q).
+
+    Sums over all pairs of rows: Σ_t Σ_s w(|t − s|) a_t a_s′ with a_t = (X′X)⁻¹x_t e_t what a row
+    adds to the estimate and w the kernel's weight of the distance in time, 1 at zero; so that
+    gaps need no grid.
+
+    Parameters
+    ----------
+    fit : PlainFit
+    how : LongRun
+    times : ndarray of int, shape (t,)
+        Period of each row.
+    terms : int
+        Deterministic terms, the first columns of the design.
+    """
+    t, k, q = fit.observations, fit.regressors, fit.restrictions
+    bandwidth = chosen_bandwidth(how, fit.design[:, terms:], fit.residuals, times)
+    weights = np.concatenate([[1.0], kernel_weights(how.kernel, bandwidth, int(np.ptp(times)) + 1)])
+    distance = np.abs(times[:, None] - times)
+    pairs = np.where(distance < weights.size, weights[np.minimum(distance, weights.size - 1)], 0.0)
+    size = np.sqrt((fit.design**2).sum(axis=0))
+    parts = (np.linalg.pinv(fit.design / size) * fit.residuals / size[:, None])[-q:]
+    scale = t / (t - k) if how.small_sample else 1.0
+    return np.asarray(parts @ pairs @ parts.T * scale)
 
 
 def plain_orders(

@@ -1,4 +1,4 @@
-"""Heteroskedasticity-consistent Wald statistics of a stack.
+"""Wald statistics of a stack with sandwich covariances.
 
 With the orthonormal columns Q of a regression's factor, the estimate of the restricted
 block is b = L_cc⁻ᵀ Q_cᵀy and its sandwich (White 1980; MacKinnon & White 1985) is
@@ -7,7 +7,8 @@ L_cc⁻ᵀ M L_cc⁻¹ with M = Q_cᵀ diag(ω e²) Q_c, so that
     b′V⁻¹b = (Q_cᵀy)′ M⁻¹ (Q_cᵀy).
 
 ω is 1 (HC0), T/(T−k) (HC1), 1/(1−h) (HC2), 1/(1−h)² (HC3), h the leverage in the whole
-regression.
+regression.  Under autocorrelation M is the long-run covariance of the scores Q_cᵀe of
+:mod:`sweep.kernels.longrun`, on the grid of time.
 """
 
 from __future__ import annotations
@@ -18,9 +19,18 @@ from dataclasses import dataclass
 import numpy as np
 
 from sweep.kernels.layout import Floats, Ints, Layout, Moments
+from sweep.kernels.longrun import (
+    LongRun,
+    chosen_bandwidth,
+    kernel_weights,
+    long_run,
+    on_time_grid,
+)
 from sweep.kernels.stacks import Flag, Regression, Solver, StackFit, forward
 
-__all__ = ["COVARIANCES", "RobustFit", "robust_stack"]
+__all__ = ["COVARIANCES", "RobustFit", "Sandwich", "robust_stack"]
+
+Sandwich = str | LongRun
 
 COVARIANCES = ("HC0", "HC1", "HC2", "HC3")
 FULL_LEVERAGE = 1e-10
@@ -63,10 +73,10 @@ def robust_stack(
     start: int,
     regression: Regression,
     fit: StackFit,
-    covariances: Sequence[str],
+    covariances: Sequence[Sandwich],
     effects: Sequence[int] | None = None,
-) -> dict[str, RobustFit]:
-    """Return heteroskedasticity-consistent Wald statistics for every covariance asked for.
+) -> dict[Sandwich, RobustFit]:
+    """Return Wald statistics for every sandwich covariance asked for.
 
     Parameters
     ----------
@@ -74,17 +84,17 @@ def robust_stack(
         As for :func:`sweep.kernels.stacks.fit_stack`.
     fit : StackFit
         Its result; windows flagged there stay NaN.
-    covariances : sequence of str
-        Members of :data:`COVARIANCES`.
+    covariances : sequence of str or LongRun
+        Members of :data:`COVARIANCES`, or autocorrelation-robust ones.
     effects : sequence of int or None
         Positions on the axis e that are wanted, the others stay NaN; None for all.
 
     Returns
     -------
-    dict of str to RobustFit
+    dict of str or LongRun to RobustFit
     """
     count = select.size, regression.effects.size
-    results = {
+    results: dict[Sandwich, RobustFit] = {
         name: RobustFit(
             np.full(count, np.nan),
             np.full(count, np.nan),
@@ -96,11 +106,15 @@ def robust_stack(
     wanted = range(regression.effects.size) if effects is None else effects
     fine = np.flatnonzero((fit.flag == Flag.FINE).any(axis=1))
     order = regression.order
+    in_time = any(isinstance(name, LongRun) for name in covariances)
+    times = moments.times(select, layout, start) if in_time else []
+    stochastic = np.flatnonzero(order[: regression.regressors] >= layout.terms)
     for inside, rows in moments.design(select[fine], layout, start) if fine.size else []:
         members = fine[inside]
         for part in np.array_split(np.arange(members.size), _pieces(rows, members.size)):
             matrix = np.ascontiguousarray(rows[part][:, :, order])
-            _fill(matrix, fit, members[part], regression, results, wanted)
+            held = [times[w] for w in members[part].tolist()] if in_time else []
+            _fill(matrix, fit, members[part], regression, results, wanted, held, stochastic)
     return results
 
 
@@ -114,8 +128,10 @@ def _fill(
     fit: StackFit,
     members: np.ndarray,
     regression: Regression,
-    results: dict[str, RobustFit],
+    results: dict[Sandwich, RobustFit],
     effects: Sequence[int],
+    times: list[Ints],
+    stochastic: Ints,
 ) -> None:
     k, q = regression.regressors, regression.restricted.size
     basis = _orthonormal(matrix[:, :, :k], fit.lower[members], fit.solver[members] == Solver.QR, k)
@@ -126,12 +142,20 @@ def _fill(
     direction = inverse.sum(axis=2)
     observed = matrix[:, :, k:]
     projection = basis.transpose(0, 2, 1) @ observed
-    squares = (observed - basis @ projection) ** 2
+    residuals = observed - basis @ projection
+    squares = residuals**2
     for name, result in results.items():
-        weight, exact = _weight(name, leverage, own, k)
+        hetero = isinstance(name, str)
+        weight, exact = _weight(name if isinstance(name, str) else "HC0", leverage, own, k)
         for effect in effects:
-            weighted = block * (weight * squares[:, :, effect])[:, :, None]
-            middle = weighted.transpose(0, 2, 1) @ block
+            if hetero:
+                weighted = block * (weight * squares[:, :, effect])[:, :, None]
+                middle = weighted.transpose(0, 2, 1) @ block
+            else:
+                assert isinstance(name, LongRun)
+                middle = _over_time(
+                    name, block, matrix[:, :, stochastic], residuals[:, :, effect], times, k
+                )
             wald = _wald(middle, projection[:, k - q :, effect])
             error = np.sqrt((direction[:, None] @ middle @ direction[:, :, None])[:, 0, 0])
             sandwich = inverse.transpose(0, 2, 1) @ middle @ inverse
@@ -142,6 +166,39 @@ def _fill(
             result.wald[members, effect] = wald
             result.coefficient_sum_error[members, effect] = error
         result.exact_row[members] |= exact
+
+
+def _over_time(
+    how: LongRun, block: Floats, regressors: Floats, residuals: Floats, times: list[Ints], k: int
+) -> Floats:
+    """Return the long-run covariance of the restricted block's scores, (w, q, q).
+
+    Windows with one bandwidth and no gap go together; NaN where a rule gives no bandwidth.
+    """
+    count, rows, _ = regressors.shape
+    scores = block * residuals[:, :, None]
+    bandwidth = np.array(
+        [
+            chosen_bandwidth(how, regressors[w], residuals[w], times[w])
+            for w in range(count)
+        ]
+        if isinstance(how.bandwidth, str)
+        else [float(how.bandwidth)] * count
+    )
+    gaps = np.array([moments[-1] - moments[0] + 1 > rows for moments in times])
+    middle = np.full((count, block.shape[2], block.shape[2]), np.nan)
+    for value in np.unique(bandwidth[np.isfinite(bandwidth)]):
+        together = np.flatnonzero((bandwidth == value) & ~gaps)
+        if together.size:
+            weights = kernel_weights(how.kernel, float(value), rows)
+            middle[together] = long_run(scores[together], weights)
+        for w in np.flatnonzero((bandwidth == value) & gaps).tolist():
+            grid = on_time_grid(scores[w], times[w])
+            weights = kernel_weights(how.kernel, float(value), grid.shape[0])
+            middle[w] = long_run(grid[None], weights)[0]
+    if how.small_sample:
+        middle *= rows / (rows - k)
+    return middle
 
 
 def _orthonormal(columns: Floats, lower: Floats, by_qr: np.ndarray, k: int) -> Floats:
@@ -177,9 +234,11 @@ def _weight(name: str, leverage: Floats, own: Floats, k: int) -> tuple[Floats, n
 
 
 def _wald(middle: Floats, projection: Floats) -> Floats:
-    """Return b′V⁻¹b, shape (w,), NaN where V is singular."""
+    """Return b′V⁻¹b, shape (w,), NaN where V is singular or does not exist."""
     wald = np.full(middle.shape[0], np.nan)
-    _solve_into(middle, projection, wald, np.arange(wald.size))
+    there = np.flatnonzero(np.isfinite(middle).all(axis=(1, 2)))
+    if there.size:
+        _solve_into(middle, projection, wald, there)
     return wald
 
 

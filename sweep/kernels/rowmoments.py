@@ -92,6 +92,22 @@ class RowMoments:
             for _, members in sorted(groups.items())
         ]
 
+    def times(self, select: Ints, layout: Layout, start: int) -> list[Ints]:
+        """Return the period of every row of the design, one array a selected window."""
+        first, last = self.usable(layout.columns)
+        found = []
+        for w in select.tolist():
+            low, high = int(first[w]) + start, int(last[w])
+            values = self._values[w]
+            parts = [
+                np.isfinite(values[low - lag : high - lag + 1, column])
+                for column, lag in layout.series()
+            ]
+            count = max(high - low + 1, 0)
+            whole = np.logical_and.reduce(parts) if count and parts else np.ones(count, bool)
+            found.append(np.flatnonzero(whole) + low)
+        return found
+
     def _designs(
         self, select: Ints, layout: Layout, start: int
     ) -> list[tuple[Floats, np.uint64]]:

@@ -79,6 +79,14 @@ class JoinedMoments:
             words[places] = part.rows
         return Gram(products, cancellation, observations, words)
 
+    def times(self, select: Ints, layout: Layout, start: int) -> list[Ints]:
+        """Return the period of every row of the design, one array a selected window."""
+        found: list[Ints] = [np.empty(0, np.int64)] * select.size
+        for moments, places, local in self._members(select):
+            for place, rows in zip(places, moments.times(local, layout, start), strict=True):
+                found[int(place)] = rows
+        return found
+
     def design(self, select: Ints, layout: Layout, start: int) -> list[tuple[Ints, Floats]]:
         """Return (positions in ``select``, rows (w, t, c)) in groups of equal length."""
         groups: dict[int, list[tuple[Ints, Floats]]] = defaultdict(list)

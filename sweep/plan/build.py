@@ -272,6 +272,16 @@ def procedure_choice(entry: str | ProcedureTable) -> ProcedureChoice:
     if entry.covariance != "classical":
         meaning["covariance"] = entry.covariance
         label += f", {entry.covariance}"
+    if entry.covariance == "HAC":
+        bandwidth = entry.bandwidth
+        meaning["bandwidth"] = bandwidth
+        label += f" {bandwidth}" if isinstance(bandwidth, str) else f" {bandwidth:g}"
+        if entry.kernel != "Bartlett":
+            meaning["kernel"] = entry.kernel
+            label += f", {entry.kernel}"
+        if entry.small_sample:
+            meaning["small_sample"] = True
+            label += ", T/(T-k)"
     if entry.divisor != "T-k":
         meaning["divisor"] = entry.divisor
         label += f", divisor {entry.divisor}"
@@ -279,6 +289,8 @@ def procedure_choice(entry: str | ProcedureTable) -> ProcedureChoice:
         entry.name or label, meaning, entry.because, statistic=entry.statistic,
         covariance=entry.covariance, divisor=entry.divisor,
         extra_lags=entry.extra_lags if augmented else 0, form=entry.form if augmented else "",
+        kernel=entry.kernel if entry.covariance == "HAC" else "",
+        bandwidth=entry.bandwidth or 0.0, small_sample=entry.small_sample,
     )  # fmt: skip
 
 

@@ -10,6 +10,8 @@ from __future__ import annotations
 from dataclasses import dataclass, field
 from typing import Any
 
+from sweep.kernels.longrun import LongRun
+
 __all__ = [
     "AXES",
     "Choice",
@@ -169,13 +171,19 @@ class ProcedureChoice(Choice):
     statistic : str
         ``F``, ``Wald``, ``LR``, ``LM`` or ``lag augmented``.
     covariance : str
-        ``classical``, ``HC0``, ``HC1``, ``HC2`` or ``HC3``.
+        ``classical``, ``HC0``, ``HC1``, ``HC2``, ``HC3`` or ``HAC``.
     divisor : str
         ``T-k`` or ``T`` (classical Wald only).
     extra_lags : int
         Lags that the regression has beyond the tested ones; 0 unless it is augmented.
     form : str
         ``F`` or ``Wald``: statistic and law of an augmented test; empty otherwise.
+    kernel : str
+        ``Bartlett`` or ``quadratic spectral`` under HAC; empty otherwise.
+    bandwidth : float or str
+        Periods, or ``Newey-West`` or ``Andrews``, under HAC.
+    small_sample : bool
+        Whether a HAC covariance is scaled by T/(T − k).
     """
 
     statistic: str = "F"
@@ -183,6 +191,16 @@ class ProcedureChoice(Choice):
     divisor: str = "T-k"
     extra_lags: int = 0
     form: str = ""
+    kernel: str = ""
+    bandwidth: float | str = 0.0
+    small_sample: bool = False
+
+    @property
+    def sandwich(self) -> str | LongRun:
+        """What the kernels know the covariance by."""
+        if self.covariance == "HAC":
+            return LongRun(self.kernel, self.bandwidth, self.small_sample)
+        return self.covariance
 
 
 @dataclass(frozen=True, slots=True)

@@ -55,7 +55,7 @@ TRANSFORMATIONS = Literal[
     "Hamilton cycle",
 ]
 STATISTICS = Literal["F", "Wald", "LR", "LM", "lag augmented"]
-COVARIANCES = Literal["classical", "HC0", "HC1", "HC2", "HC3"]
+COVARIANCES = Literal["classical", "HC0", "HC1", "HC2", "HC3", "HAC"]
 
 
 def _refuse(text: str) -> None:
@@ -79,6 +79,26 @@ def _episode(value: Any) -> Any:
     return value
 
 
+BANDWIDTH_RULES = ("Newey-West", "Andrews")
+
+
+def _bandwidth(value: Any) -> Any:
+    if isinstance(value, str):
+        if value not in BANDWIDTH_RULES:
+            _refuse(f'"{value}" is no rule for a bandwidth' + suggestion(value, BANDWIDTH_RULES))
+        return value
+    if isinstance(value, bool) or not isinstance(value, int | float):
+        _refuse("a bandwidth is a number of periods or the name of a rule")
+    if not 0 <= value <= 1000:
+        _refuse("a bandwidth is a number of periods from 0 to 1000")
+    return float(value)
+
+
+Bandwidth = Annotated[
+    Any,
+    AfterValidator(_bandwidth),
+    WithJsonSchema({"anyOf": [{"type": "number", "minimum": 0}, {"enum": BANDWIDTH_RULES}]}),
+]
 WHEN_SCHEMA = {"type": ["string", "integer"], "description": "1990, 1990-Q1, 1990-03 or a day"}
 When = Annotated[Any, AfterValidator(_when), WithJsonSchema(WHEN_SCHEMA)]
 _PAIR = {"type": "array", "items": WHEN_SCHEMA, "minItems": 2, "maxItems": 2}
@@ -91,8 +111,8 @@ Episodes = Annotated[
 # Names that design and documents speak of and that this version cannot do yet.
 LATER = {
     "statistic": ("error correction", "system Wald", "instantaneous"),
-    "covariance": ("HAC",),
-    "keys": ("reference", "draws", "bandwidth", "kernel", "small_sample"),
+    "covariance": (),
+    "keys": ("reference", "draws"),
 }
 
 
@@ -268,6 +288,15 @@ class ProcedureTable(Named):
     extra_lags: StrictInt = Field(
         default=1, ge=1, description="Lags added and not tested, with lag augmented."
     )
+    kernel: Literal["Bartlett", "quadratic spectral"] = Field(
+        default="Bartlett", description="Weights over time, with HAC."
+    )
+    bandwidth: Bandwidth | None = Field(
+        default=None, description="Lags in time that count, or the rule that picks them, with HAC."
+    )
+    small_sample: StrictBool = Field(
+        default=False, description="Scale a HAC covariance by T/(T-k)."
+    )
     form: Literal["F", "Wald"] = Field(
         default="F", description="Statistic and law of a lag augmented test."
     )
@@ -288,6 +317,14 @@ class ProcedureTable(Named):
         for key in ("extra_lags", "form"):
             if key in self.model_fields_set and not augmented:
                 _refuse(f'"{key}" goes with the test "lag augmented"')
+        for key in ("kernel", "bandwidth", "small_sample"):
+            if key in self.model_fields_set and self.covariance != "HAC":
+                _refuse(f'"{key}" goes with covariance = "HAC"')
+        if self.covariance == "HAC" and self.bandwidth is None:
+            _refuse(
+                'HAC needs a "bandwidth": a number of periods, for example 4, or the rule '
+                '"Newey-West" or "Andrews"'
+            )
         form = self.form if augmented else self.statistic
         if self.covariance != "classical" and form not in ("F", "Wald"):
             _refuse(

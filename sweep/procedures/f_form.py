@@ -40,5 +40,5 @@ def compute(evidence: Evidence, choice: ProcedureChoice) -> Statistic:
     if choice.covariance == "classical":
         value = evidence.explained / evidence.residual * freedom / q
     else:
-        value = evidence.robust_wald[choice.covariance] / q
+        value = evidence.robust_wald[choice.sandwich] / q
     return Statistic(value, q, freedom.astype(int), f_tail(value, float(q), freedom))

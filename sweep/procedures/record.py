@@ -2,12 +2,14 @@
 
 from __future__ import annotations
 
+from collections.abc import Mapping
 from dataclasses import dataclass
 from typing import Protocol
 
 import numpy as np
 from numpy.typing import NDArray
 
+from sweep.kernels.longrun import LongRun
 from sweep.plan.choices import ProcedureChoice
 
 __all__ = ["Evidence", "Procedure", "Statistic"]
@@ -39,7 +41,7 @@ class Evidence:
     observations: Ints
     regressors: int
     restrictions: int
-    robust_wald: dict[str, Floats]
+    robust_wald: Mapping[str | LongRun, Floats]
 
     @property
     def freedom(self) -> Floats:

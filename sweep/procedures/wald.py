@@ -25,7 +25,7 @@ def applies(choice: ProcedureChoice) -> str | None:
 def compute(evidence: Evidence, choice: ProcedureChoice) -> Statistic:
     """Return the Wald statistic and its tail probability on χ²(q)."""
     if choice.covariance != "classical":
-        value = evidence.robust_wald[choice.covariance]
+        value = evidence.robust_wald[choice.sandwich]
     else:
         rows = evidence.observations if choice.divisor == "T" else evidence.freedom
         value = evidence.explained / evidence.residual * rows

@@ -37,6 +37,13 @@ METHOD_NOTES = (
             "χ²(q) for the Wald form. V = (X′X)⁻¹M(X′X)⁻¹ with M = Σ e²xx′ (HC0; White 1980), "
             "times T/(T − k) for HC1, with e²/(1 − h) for HC2 and e²/(1 − h)² for HC3 (MacKinnon "
             "& White 1985), h being the leverage of the row.",
+            "With covariance HAC, V = (X′X)⁻¹S(X′X)⁻¹ with S = Γ₀ + Σ w_j(Γ_j + Γ_j′), Γ_j the "
+            "sums of products of scores j periods apart and w_j = 1 − j/(L + 1) (Bartlett; Newey "
+            "& West 1987) or the quadratic spectral weights (Andrews 1991), no prewhitening. "
+            "Automatic bandwidths follow Newey & West (1994) or Andrews (1991), from the scores of "
+            "the standardised regressors. Autocorrelation left in a regression with lags of the "
+            "effect makes its coefficients inconsistent, whatever the covariance: HAC is no mend "
+            "for too few lags.",
             "The lag augmented test (Toda & Yamamoto 1995; Dolado & Lütkepohl 1996) adds d lags of "
             "every modelled series to the regression in levels or logarithms and tests the first p "
             "of the cause, in the F or the Wald form; with d at least the largest order of "

@@ -53,6 +53,9 @@ tests = [
   { test = "F", covariance = "HC1" }, { test = "Wald", covariance = "HC2" },
   { test = "F", covariance = "HC3" }, { test = "lag augmented", extra_lags = 2 },
   { test = "lag augmented", form = "Wald", covariance = "HC1" },
+  { test = "F", covariance = "HAC", bandwidth = 4 },
+  { test = "Wald", covariance = "HAC", bandwidth = "Newey-West", small_sample = true },
+  { test = "F", covariance = "HAC", bandwidth = "Andrews", kernel = "quadratic spectral" },
 ]
 conditioning = ["given", "pairwise"]
 measures = { x = ["x", { series = "w", inverted = true }] }
