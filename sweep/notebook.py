@@ -18,7 +18,7 @@ if TYPE_CHECKING:
 
 __all__ = [
     "check_html", "duration", "explanation_html", "number_words", "plan_html", "rows_html",
-    "verification_html",
+    "specifications", "verification_html",
 ]  # fmt: skip
 
 SHOWN = 20
@@ -84,14 +84,27 @@ def duration(seconds: float) -> str:
 
     Examples
     --------
-    >>> duration(0.2), duration(240), duration(7200)
-    ('1 s', '4 min', '2.0 h')
+    >>> duration(0.2), duration(12.3), duration(240), duration(7200)
+    ('a few seconds', 'about 12 s', 'about 4 min', 'about 2.0 h')
     """
+    if seconds < 5:
+        return "a few seconds"
     if seconds < 90:
-        return f"{max(round(seconds), 1)} s"
+        return f"about {round(seconds)} s"
     if seconds < 5400:
-        return f"{round(seconds / 60)} min"
-    return f"{seconds / 3600:.1f} h"
+        return f"about {round(seconds / 60)} min"
+    return f"about {seconds / 3600:.1f} h"
+
+
+def specifications(count: int) -> str:
+    """Write a count of specifications.
+
+    Examples
+    --------
+    >>> specifications(1), specifications(2400)
+    ('1 specification', '2,400 specifications')
+    """
+    return f"{count:,} specification{'' if count == 1 else 's'}"
 
 
 def plan_html(plan: Plan) -> str:
@@ -132,17 +145,17 @@ def check_html(check: Check) -> str:
                     for a in check.axes
                     if a.finding == name
                 ],
-                f"{name}: {planned:,} specifications, {to_run:,} to run",
+                f"{name}: {specifications(planned)}, {to_run:,} to run",
             )
         )  # fmt: skip
     parts.append(
         _lines(
-            f"{item.finding}: {item.specifications:,} specifications are ruled out, because "
+            f"{item.finding}: ruled out are {specifications(item.specifications)}, because "
             f"{item.because}"
             for item in check.ruled_out
         )
     )
-    return "".join([*parts, _lines(check.notes)])
+    return "".join([*parts, _lines(check.lowered), _lines(check.notes)])
 
 
 def explanation_html(found: Explanation) -> str:

@@ -27,6 +27,7 @@ def command(plan: Path, jobs: int | None, form: str) -> None:
     Nothing is estimated and nothing is written.
     """
     from sweep.api import check
+    from sweep.notebook import specifications
 
     found = check(plan, jobs=jobs)
     if form == "json":
@@ -35,7 +36,7 @@ def command(plan: Path, jobs: int | None, form: str) -> None:
     click.echo(f"{found.plan.title}\nData from {found.first} to {found.last}.")
     for name, planned, to_run in found.findings:
         axes = [size for size in found.axes if size.finding == name]
-        click.echo(f"\n{name}: {planned:,} specifications, {to_run:,} to run")
+        click.echo(f"\n{name}: {specifications(planned)}, {to_run:,} to run")
         print_rows(
             ["axis", "choices", "baseline", "positions"],
             [[a.axis, len(a.choices), a.baseline, a.positions if a.axis == "window" else ""]
@@ -49,13 +50,17 @@ def command(plan: Path, jobs: int | None, form: str) -> None:
             who = ", ".join(filter(None, (asked.asked_by, asked.request)))
             adds = "adds nothing that is not already there"
             if asked.added:
-                adds = f"adds {asked.added:,} specifications"
+                adds = f"adds {specifications(asked.added)}"
             click.echo(f"  {who}, on “{asked.finding}”: {adds}")
     if found.ruled_out:
         click.echo("\nRuled out:")
         for item in found.ruled_out:
-            click.echo(f"  {item.finding}: {item.specifications:,} specifications, because "
+            click.echo(f"  {item.finding}: {specifications(item.specifications)}, because "
                        f"{item.because}")  # fmt: skip
+    if found.lowered:
+        click.echo("\nLargest orders that the data lower:")
+        for sentence in found.lowered:
+            click.echo(f"  {sentence}")
     if found.notes:
         click.echo("\nSame numbers by construction:")
         for note in found.notes:
@@ -106,5 +111,6 @@ def _plain(found: Check) -> dict[str, Any]:
             {"finding": i.finding, "specifications": i.specifications, "because": i.because}
             for i in found.ruled_out
         ],
+        "lowered": list(found.lowered),
         "same_numbers": list(found.notes),
     }

@@ -5,6 +5,7 @@ from __future__ import annotations
 import dataclasses
 import json
 import textwrap
+from datetime import datetime
 from pathlib import Path
 from typing import TYPE_CHECKING
 
@@ -80,6 +81,8 @@ def _number(value: float | None) -> str:
 
 
 def _plain(value: object) -> object:
+    if isinstance(value, datetime):
+        return value.date().isoformat()  # windows begin and end on days
     if hasattr(value, "item"):
         return value.item()
     return str(value)

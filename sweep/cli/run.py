@@ -91,9 +91,10 @@ def _did(results: Results) -> str:
     words = (f"{done.words}: {', '.join(parts)}; {done.seconds:.1f} s. "
              f"Store: {_short(done.store)}")  # fmt: skip
     if done.other_data is not None:
+        what = done.changed[0].upper() + done.changed[1:]
         words += (
-            f"\nThe data or the program's numerics have changed since sweep {done.other_data} of "
-            f"this plan; this is sweep {results.sweep} beside it."
+            f"\n{what} have changed since sweep {done.other_data} of this plan; this is sweep "
+            f"{results.sweep} beside it."
         )
     return words
 

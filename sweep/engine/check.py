@@ -11,11 +11,12 @@ import numpy as np
 from numpy.typing import NDArray
 
 from sweep.engine.cost import estimate_seconds
+from sweep.engine.feasible import lowered_maxima
 from sweep.engine.prepare import Prepared, prepare
 from sweep.engine.reasons import REASONS, Reason
 from sweep.engine.unsuited import unsuited
 from sweep.errors import Fault, InputFault
-from sweep.notebook import check_html, duration
+from sweep.notebook import check_html, duration, specifications
 from sweep.plan.choices import AXES
 from sweep.plan.model import Plan
 
@@ -83,6 +84,8 @@ class Check:
         First and last period of the data.
     requests : tuple of Asked
         What each request adds; these specifications are not among the planned ones.
+    lowered : tuple of str
+        Criteria whose largest order the data do not allow, in words.
     """
 
     plan: Plan
@@ -95,6 +98,7 @@ class Check:
     first: str
     last: str
     requests: tuple[Asked, ...] = ()
+    lowered: tuple[str, ...] = ()
 
     @property
     def planned(self) -> int:
@@ -110,7 +114,7 @@ class Check:
         added = f", {self.added:,} of them for requests" if self.added else ""
         workers = f"{self.jobs} worker{'s' if self.jobs > 1 else ''}"
         return (
-            f"{self.planned + self.added:,} specifications in all{added}; about "
+            f"{specifications(self.planned + self.added)} in all{added}; "
             f"{duration(self.seconds)} with {workers}."
         )
 
@@ -172,6 +176,7 @@ def check_plan(plan: Plan, *, jobs: int | None = None) -> Check:
         calendar.label(0),
         calendar.label(len(calendar) - 1),
         tuple(_asked(prepared)),
+        tuple(lowered_maxima(plan, prepared.windows, calendar)),
     )
 
 

@@ -8,11 +8,13 @@ from typing import TYPE_CHECKING, Any
 
 import numpy as np
 
+from sweep.engine.feasible import FREEDOM_FOR_CRITERION
 from sweep.engine.prepare import Prepared
 from sweep.engine.recheck import SlowDirection, SlowResult, recheck
 from sweep.engine.stored import prepared_again, row_of
 from sweep.notebook import explanation_html
-from sweep.plan.choices import AXES, LagChoice
+from sweep.panel.periods import period_label
+from sweep.plan.choices import AXES, ConditioningChoice, LagChoice
 from sweep.procedures import PROCEDURES
 
 if TYPE_CHECKING:
@@ -122,18 +124,22 @@ def explain(
 
 def _sample(prepared: Prepared, row: dict[str, Any], slow: SlowResult | None) -> list[str]:
     calendar = prepared.dataset.calendar
-    start, end = str(row["window_start"])[:10], str(row["window_end"])[:10]
+    frequency = calendar.frequency
+    start, end = (period_label(row[name], frequency) for name in ("window_start", "window_end"))
     sentences = [f"The window runs from {start} to {end} before lags are taken."]
     if slow is None:
         return sentences
     rows = slow.rows
     sentences.append(
-        f"The regression uses T = {rows.size} rows, "
+        f"The regression uses T = {_counted(rows.size, 'row')}, "
         f"{calendar.label(int(rows[0]))} to {calendar.label(int(rows[-1]))}."
     )
     missing = int(rows[-1] - rows[0] + 1 - rows.size)
     if missing:
-        sentences.append(f"{missing} rows between them touch an episode left out and are dropped.")
+        touch = "touches an episode left out and is" if missing == 1 else (
+            "touch an episode left out and are"
+        )
+        sentences.append(f"{_counted(missing, 'row')} between them {touch} dropped.")
     return sentences
 
 
@@ -149,20 +155,35 @@ def _regression(prepared: Prepared, index: int, slow: SlowResult | None) -> list
         scope = "the effect's equation" if choice.scope == "equation" else "the whole system"
         table = slow.forward.criterion_table
         assert table is not None
+        largest = table.size - 1
         sentences.append(
-            f"{choice.criterion} of {scope} chose {own} lags among 1 to {table.size - 1}, compared "
-            "on their common sample."
+            f"{choice.criterion} of {scope} chose {_counted(own, 'lag')} among 1 to {largest}, "
+            "compared on their common sample."
         )
+        if largest < choice.maximum:
+            sentences.append(
+                f"Orders up to {choice.maximum} were to be considered; {largest} is the largest "
+                f"that leaves {FREEDOM_FOR_CRITERION} degrees of freedom."
+            )
     fit = slow.forward.fit
+    left_out = plan.axes["conditioning"][int(prepared.rows.codes["conditioning"][index])]
+    assert isinstance(left_out, ConditioningChoice)
+    held = len(plan.findings[int(prepared.rows.finding[index])].given) - len(left_out.without)
+    others = f"{given} of {'the' if held == 1 else 'each'} given series, " if held else ""
     sentences.append(
-        f"The effect's equation has k = {fit.regressors} regressors: {own} own lags, {cause} lags "
-        f"of the cause, {given} of each given series, and the deterministic terms."
+        f"The effect's equation has k = {_counted(fit.regressors, 'regressor')}: "
+        f"{_counted(own, 'own lag')}, {_counted(cause, 'lag')} of the cause, {others}and the "
+        "deterministic terms."
     )
     sentences.append(
         f"Restricted and unrestricted sums of squares: s0 = {fit.restricted_squares:.8g}, "
         f"s1 = {fit.unrestricted_squares:.8g}."
     )
     return sentences
+
+
+def _counted(count: int, noun: str) -> str:
+    return f"{count} {noun}{'' if count == 1 else 's'}"
 
 
 def _compare(row: dict[str, Any], slow: SlowResult) -> list[Compared]:

@@ -261,7 +261,9 @@ class FitBook:
         terms = self._panel.task.terms[equation.term]
         if any(term.kind in _SPECIAL_TERMS for term in terms):
             enough = (fit.flag != Flag.TOO_FEW_ROWS).all(axis=1)
-            idle = enough & ~term_space(gram.products[:, columns[:, None], columns])
+            # Beside the constant, which is column 0: a step that never steps is one, wanted or not.
+            beside = np.union1d([0], columns)
+            idle = enough & ~term_space(gram.products[:, beside[:, None], beside])
             reason[idle] = Reason.TERM
         series = list(equation.reach())
         reason[self._panel.blocked[windows][:, series].any(axis=1)] = Reason.FILTER_EPISODE

@@ -122,7 +122,7 @@ def obstacles(prepared: Prepared, chosen: OutsideChoices, *, reverse: bool) -> s
     rows = rows_of(prepared, chosen, panel, orders, reverse=reverse)
     if len(rows.effect) <= rows.regressors:
         return found | {Reason.TOO_FEW_ROWS}
-    if _smallest(rows.terms.to_numpy()) < RANK or (
+    if _idle(rows.terms.to_numpy(), constant=rows.constant) or (
         chosen.lags.criterion and _idle_terms(prepared, chosen, panel)
     ):
         found.add(Reason.TERM)
@@ -162,6 +162,13 @@ def _singular(basis: Floats, residual: Floats) -> bool:
 def _length(columns: Floats) -> Floats:
     size = np.sqrt((columns**2).sum(axis=0))
     return np.where(size > 0, size, 1.0)
+
+
+def _idle(terms: Floats, *, constant: bool) -> bool:
+    """Say whether a term adds nothing to the others and a constant."""
+    if not constant:
+        terms = np.column_stack([np.ones(len(terms)), terms])
+    return _smallest(terms) < RANK
 
 
 def _smallest(columns: Floats) -> float:

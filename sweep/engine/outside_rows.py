@@ -352,9 +352,9 @@ def _hamilton(
     cut: pd.Series[float], frequency: Frequency, choice: TransformationChoice
 ) -> pd.Series[float]:
     horizon = choice.horizon or frequency.hamilton_horizon
-    lagged = pd.DataFrame({lag: cut.shift(horizon + lag) for lag in range(4)})
+    lagged = pd.DataFrame({lag: cut.shift(horizon + lag) for lag in range(frequency.seasons)})
     known = cut[cut.notna() & lagged.notna().all(axis=1)]
-    if len(known) <= 5:
+    if len(known) <= frequency.seasons + 1:
         return pd.Series(np.nan, index=cut.index)
     return _residual(known, lagged.loc[known.index]).reindex(cut.index)
 

@@ -21,6 +21,7 @@ from sweep.engine.stop import StopRequest
 from sweep.engine.task import Outcome, Task
 from sweep.engine.waves import Broken, compute_in_waves
 from sweep.errors import Interrupted
+from sweep.notebook import specifications
 
 __all__ = ["Progress", "RunReport", "run_prepared"]
 
@@ -69,7 +70,9 @@ class RunReport:
         another sweep; ruled out by the plan; computed now; of these, failed.
     seconds : float
     other_data : int or None
-        Latest earlier sweep of the same plan on data that have changed since.
+        Latest earlier sweep of the same plan, where data or numerics have changed since.
+    changed : str
+        Which of them, in words.
     added : int
         Of the specifications, those that requests added.
     """
@@ -84,15 +87,17 @@ class RunReport:
     failed: int
     seconds: float
     other_data: int | None = None
+    changed: str = ""
     added: int = 0
 
     @property
     def words(self) -> str:
         """Say how many specifications there are and how many of them requests added."""
+        whole = specifications(self.planned)
         if not self.added:
-            return f"{self.planned:,} specifications planned"
+            return f"{whole} planned"
         return (
-            f"{self.planned:,} specifications, {self.planned - self.added:,} planned and "
+            f"{whole}, {self.planned - self.added:,} planned and "
             f"{self.added:,} added by requests"
         )
 
@@ -143,9 +148,11 @@ def run_prepared(
             raise _interrupted(sink, store)
         seconds = time.monotonic() - began
         ruled = int((prepared.rows.rule >= 0).sum())
+        earlier, changed = sink.changed_since() or (None, "")
         report = RunReport(
             store, sink.sweep, prepared.rows.count, stored, reused, ruled, int(missing.size),
-            failed, seconds, sink.data_changed_since(), int((prepared.rows.request > 0).sum()),
+            failed, seconds, earlier, changed,
+            int((prepared.rows.request > 0).sum()),
         )  # fmt: skip
         sink.finish(
             seconds,

@@ -56,14 +56,30 @@ class StoreSink:
         for screen in SCREENS.values():
             self._writer.register_screen(screen.BIT, screen.NAME)
         self._reasons = self._register_reasons()
+        self._earlier = sweeps(self._database)
         self.sweep = self._begin()
 
-    def data_changed_since(self) -> int | None:
-        """Return the latest earlier sweep of the same plan on other data, None if there is none."""
-        found = sweeps(self._database)
-        same = found[(found["plan_digest"] == self.prepared.plan.digest)]
-        earlier = same[same["sweep"] < self.sweep]["sweep"]
-        return int(earlier.max()) if len(earlier) else None
+    def changed_since(self) -> tuple[int, str] | None:
+        """Return the latest earlier sweep of the plan and what has changed since, in words.
+
+        None where there is none, or where this sweep was begun by an earlier run already.
+        """
+        earlier = self._earlier
+        same = earlier.loc[earlier["plan_digest"] == self.prepared.plan.digest, "sweep"]
+        if self.sweep in set(earlier["sweep"]) or same.empty:
+            return None
+        number = int(same.max())
+        old, new = (
+            self._database.execute(
+                "SELECT finding, data_high, data_low FROM finding WHERE sweep = ? ORDER BY finding",
+                [sweep],
+            )
+            for sweep in (number, self.sweep)
+        )
+        numerics = self._database.scalar("SELECT numerics FROM sweep WHERE sweep = ?", [number])
+        words = ["the data"] if old != new else []
+        words += ["the program's numerics"] if numerics != stored_numerics() else []
+        return number, " and ".join(words)
 
     def missing(self, details: NDArray[np.bool_]) -> tuple[Ints, int, int]:
         """Return the rows to compute, and how many were stored before or taken over.

@@ -8,12 +8,11 @@ from numpy.typing import NDArray
 __all__ = ["hamilton", "hamilton_reach", "hodrick_prescott", "linearly_detrended"]
 
 Array = NDArray[np.float64]
-_HAMILTON_LAGS = 4  # y[t], …, y[t-3] on the right-hand side
 
 
-def hamilton_reach(horizon: int) -> tuple[int, ...]:
+def hamilton_reach(horizon: int, lags: int) -> tuple[int, ...]:
     """Return the distances of the raw values in one Hamilton residual, in periods."""
-    return (0, *range(horizon, horizon + _HAMILTON_LAGS))
+    return (0, *range(horizon, horizon + lags))
 
 
 def linearly_detrended(values: Array) -> Array:
@@ -90,8 +89,8 @@ def _cycle(values: Array, smoothing: float) -> Array:
     return out
 
 
-def hamilton(values: Array, horizon: int) -> Array:
-    """Return the residual of y[t+h] on 1, y[t], …, y[t-3], dated t+h (Hamilton 2018).
+def hamilton(values: Array, horizon: int, lags: int) -> Array:
+    """Return the residual of y[t+h] on 1, y[t], …, y[t-p+1], dated t+h (Hamilton 2018).
 
     Estimated by projection on an orthonormal basis of the regressors, so that a series
     that the regressors fit exactly (a line, a constant) leaves zeros and no failure.
@@ -102,28 +101,31 @@ def hamilton(values: Array, horizon: int) -> Array:
         Series along the last axis; the regression uses the complete rows of each.
     horizon : int
         h, in periods.
+    lags : int
+        p, the values on the right-hand side.
 
     Returns
     -------
     float64 (..., n)
-        In units of the series; NaN in the first h + 3 rows, where a value is missing, and
+        In units of the series; NaN in the first h + p - 1 rows, where a value is missing, and
         throughout with no more complete rows than coefficients.
     """
     out = np.full(values.shape, np.nan)
-    rows = values.shape[-1] - horizon - _HAMILTON_LAGS + 1
-    if rows <= _HAMILTON_LAGS + 1:
+    rows = values.shape[-1] - horizon - lags + 1
+    if rows <= lags + 1:
         return out
-    start = horizon + _HAMILTON_LAGS - 1
+    start = horizon + lags - 1
     target = values[..., start:]
-    lags = np.stack(
-        [values[..., start - d : start - d + rows] for d in hamilton_reach(horizon)[1:]], axis=-1
+    earlier = np.stack(
+        [values[..., start - d : start - d + rows] for d in hamilton_reach(horizon, lags)[1:]],
+        axis=-1,
     )
-    here = np.isfinite(target) & np.isfinite(lags).all(axis=-1)
+    here = np.isfinite(target) & np.isfinite(earlier).all(axis=-1)
     count = here.sum(axis=-1)
     safe = np.maximum(count, 1)[..., None]
     y = np.where(here, target, 0.0)
     y = np.where(here, y - y.sum(axis=-1, keepdims=True) / safe, 0.0)
-    x = np.where(here[..., None], lags, 0.0)
+    x = np.where(here[..., None], earlier, 0.0)
     x = np.where(here[..., None], x - x.sum(axis=-2, keepdims=True) / safe[..., None], 0.0)
     level = np.abs(np.where(np.isfinite(values), values, 0.0)).max(axis=-1)[..., None]
     # What is left of a constant after centring is rounding of its level, not variation.
@@ -134,6 +136,6 @@ def hamilton(values: Array, horizon: int) -> Array:
     basis = np.where((strength > 1e-12)[..., None, :], basis, 0.0)
     weights = np.einsum("...rk,...r->...k", basis, y)
     residual = y - np.einsum("...rk,...k->...r", basis, weights)
-    enough = (count > _HAMILTON_LAGS + 1)[..., None]
+    enough = (count > lags + 1)[..., None]
     out[..., start:] = np.where(here & enough, residual, np.nan)
     return out

@@ -44,7 +44,8 @@ class Frequency:
     criterion_maximum : int
         Largest lag order an information criterion considers unless the plan says otherwise.
     hamilton_horizon : int
-        Two years in periods, the horizon of the Hamilton filter (Hamilton 2018).
+        Two years in periods, the horizon of the Hamilton filter (Hamilton 2018): 8 quarters,
+        24 months.
     smoothing : float or None
         Hodrick-Prescott parameter 1600 (f/4)^4 (Ravn & Uhlig 2002); None where no value is usual.
     unit : str
@@ -58,6 +59,15 @@ class Frequency:
     hamilton_horizon: int
     smoothing: float | None
     unit: str
+
+    @property
+    def hamilton_lags(self) -> int:
+        """Values on the right-hand side of the Hamilton filter: one seasonal cycle.
+
+        Hamilton (2018) takes one year, 4 quarters or 12 months, so that a seasonal pattern is
+        filtered out as well; for daily data the cycle is the week.
+        """
+        return self.seasons
 
 
 FREQUENCIES: dict[str, Frequency] = {

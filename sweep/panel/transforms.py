@@ -254,8 +254,8 @@ TRANSFORMS: dict[str, Transform] = {
             "Hamilton cycle",
             "window",
             "units of the series, surprise over the horizon",
-            reach=lambda f, h: hamilton_reach(h),
-            compute=lambda y, f, s, h: hamilton(y, h),
+            reach=lambda f, h: hamilton_reach(h, f.hamilton_lags),
+            compute=lambda y, f, s, h: hamilton(y, h, f.hamilton_lags),
         ),
     )
 }

@@ -212,12 +212,16 @@ class PlanBuilder:
     def _check_roles(self, table: FindingTable, place: str) -> None:
         if table.cause == table.effect:
             self.fault(f"{place}.effect", f'cause and effect are both "{table.cause}"')
-        others = [*table.given, *(item.series for item in table.exogenous)]
-        for name in dict.fromkeys(others):
-            if name in (table.cause, table.effect):
-                self.fault(f"{place}.given", f'"{name}" is already the cause or the effect')
-            elif others.count(name) > 1:
-                self.fault(f"{place}.given", f'"{name}" stands twice', "Leave one of them out.")
+        unmodelled = [item.series for item in table.exogenous]
+        for key, names in (("given", table.given), ("exogenous", unmodelled)):
+            for name in dict.fromkeys(names):
+                if name in (table.cause, table.effect):
+                    self.fault(f"{place}.{key}", f'"{name}" is already the cause or the effect')
+                elif names.count(name) > 1:
+                    self.fault(f"{place}.{key}", f'"{name}" stands twice', "Leave one of them out.")
+                elif key == "exogenous" and name in table.given:
+                    problem = f'"{name}" stands under "given" as well'
+                    self.fault(f"{place}.{key}", problem, "Leave one of them out.")
 
     def rules(self, findings: tuple[Finding, ...]) -> tuple[Rule, ...]:
         """Build the rules; they may name any choice that the builder has met."""
@@ -277,8 +281,7 @@ class PlanBuilder:
                 if name in LATER_SCREENS:
                     self.fault(place, f'the screen "{name}" is not yet available in this version')
                 elif name not in SCREENS:
-                    known = [*SCREENS, *LATER_SCREENS]
-                    self.fault(place, f'unknown screen "{name}"' + suggestion(name, known))
+                    self.fault(place, f'unknown screen "{name}"' + suggestion(name, SCREENS))
 
     def check_series(self, roles: set[str]) -> None:
         """Series named in a transformation must be roles or measures."""

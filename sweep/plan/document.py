@@ -4,7 +4,15 @@ from __future__ import annotations
 
 from typing import Annotated, Any, Literal, get_args
 
-from pydantic import AfterValidator, Field, StrictInt, StrictStr, WithJsonSchema, model_validator
+from pydantic import (
+    AfterValidator,
+    BeforeValidator,
+    Field,
+    StrictInt,
+    StrictStr,
+    WithJsonSchema,
+    model_validator,
+)
 from pydantic.json_schema import SkipJsonSchema
 
 from sweep.plan.printed import PrintedNumber, PrintedProbability
@@ -63,6 +71,7 @@ DeterministicEntry = anything_of(DeterministicTable, TRENDS)
 WindowEntry = anything_of(WindowTable, Literal["full sample"])
 TransformationEntry = anything_of(TransformationTable, TRANSFORMATIONS)
 ProcedureEntry = anything_of(ProcedureTable, STATISTICS)
+DESIGNS = Literal["full", "one change", "two changes"]
 Conditioning = Literal["given", "pairwise", "leave one out", "every subset"]
 MeasureEntry = anything_of(MeasureTable, StrictStr)
 
@@ -75,7 +84,8 @@ class DataTable(Table):
     frequency: Frequencies = Field(description="How often the series are observed.")
     calendar: Literal["every period", "as observed"] = Field(
         default="every period",
-        description="'as observed': consecutive rows are consecutive periods (weekly, daily).",
+        description="'as observed': consecutive rows are consecutive periods (weekly and business "
+        "daily data).",
     )
     source: StrictStr = Field(default="", description="Where the data come from.")
     licence: StrictStr = Field(default="", description="Terms under which they are used.")
@@ -207,10 +217,21 @@ class SampleDesign(Table):
     sample: StrictInt = Field(ge=10, description="Specifications a finding.")
 
 
+def _design(value: Any) -> Any:
+    known = get_args(DESIGNS)
+    if isinstance(value, str) and value not in known:
+        listed = ", ".join(f'"{name}"' for name in known)
+        near = suggestion(value, known, list_all=0)
+        _refuse(
+            f'"{value}" is not a design' + (near or f"; known: {listed} and {{ sample = 5000 }}")
+        )
+    return value
+
+
 class SweepTable(Table):
     """How much of the cross is run."""
 
-    design: anything_of(SampleDesign, Literal["full", "one change", "two changes"]) = Field(  # type: ignore[valid-type]
+    design: anything_of(SampleDesign, Annotated[DESIGNS, BeforeValidator(_design)]) = Field(  # type: ignore[valid-type]
         default="full", description="Full cross, changes from the baseline, or a sample."
     )
     coefficients: Literal["baseline", "fixed windows", "all", "none"] = Field(

@@ -82,6 +82,8 @@ def _fault(item: Any) -> Fault:
         return Fault(place, f"{item['input']} is out of range", text.replace("Input", "It") + ".")
     if kind == "too_short":
         return Fault(place, "an empty list leaves nothing to run", "Give at least one choice.")
+    if kind == "string_too_short":
+        return Fault(place, "the text is empty", "Write something.")
     if kind in _TYPES:
         found = _TYPE_WORDS.get(type(item["input"]).__name__, type(item["input"]).__name__)
         return Fault(place, f"{_TYPES[kind]} is needed here, not {found}")
@@ -100,7 +102,6 @@ _TYPES = {
     "dict_type": "a table",
     "model_type": "a table",
     "model_attributes_type": "a table",
-    "string_too_short": "a text that is not empty",
 }
 _TYPE_WORDS = {
     "str": "a text",

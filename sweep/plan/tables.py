@@ -218,6 +218,8 @@ class LagTable(Named):
             _refuse('"cause" and "given" go with "own", for example { own = 4, cause = 2 }')
         if self.criterion is None and (self.maximum is not None or self.scope != "system"):
             _refuse('"maximum" and "scope" go with "criterion"')
+        if "level" in self.model_fields_set and self.criterion != "sequential LR":
+            _refuse('"level" goes with the criterion "sequential LR"')
         if self.criterion is not None and self.sample != "own" and self.maximum is None:
             _refuse('a criterion on a common sample needs its own "maximum"')
         return self

@@ -17,7 +17,7 @@ PROCEDURES: dict[str, Procedure] = {
     for module in (f_form, wald, likelihood_ratio, score, lag_augmented)
 }
 
-ENGINE_NUMERICS = 2
+ENGINE_NUMERICS = 3
 """Raised when the moments, lag choices or samples change a number of every procedure."""
 
 

@@ -79,6 +79,10 @@ METHOD_NOTES = (
             "conditioning set and every measure, so that leaving a series out, or measuring one "
             "otherwise, is compared on the same dates and not on others; a regression that leaves "
             "out a short series could use more of them.",
+            "The Hamilton cycle is the residual of the value two years on, regressed within the "
+            "window on a constant and the values of one seasonal cycle (Hamilton 2018: 8 quarters "
+            "and 4 values, 24 months and 12; annual data take 1 value, weekly ones 52, daily ones "
+            "those of a week).",
             "The Hodrick–Prescott cycle is two-sided: it uses later values, which blurs what came "
             "first.",
         ),

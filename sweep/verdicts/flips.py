@@ -84,8 +84,9 @@ def single_sentence(single_changes: pd.DataFrame, baseline_survives: Any, limit:
     verb = "break" if baseline_survives else "restore"
     if rows.empty:
         keeps = "holds" if baseline_survives else "still does not hold"
+        each = "the" if len(tried) == 1 else "each of"
         return (
-            f"After each of {counted(len(tried), 'single change')} that could be run, "
+            f"After {each} {counted(len(tried), 'single change')} that could be run, "
             f"the finding {keeps}."
         )
     named = joined(change_words(row) for _, row in rows.head(limit).iterrows())
@@ -151,6 +152,8 @@ def pair_sentence(flip_counts: pd.DataFrame, baseline_survives: Any) -> str:
     start = f"{turning:,} of {counted(tried, 'pair')} of changes {verb} the finding"
     if turning == 1:
         start = f"1 of {counted(tried, 'pair')} of changes {verb}s the finding"
+    if not turning and tried == 1:
+        return f"The 1 pair of changes that could be run does not {verb} the finding."
     if not turning:
         return f"None of {counted(tried, 'pair')} of changes {verb}s the finding."
     if not joint:
@@ -163,9 +166,10 @@ def path_sentence(shortest_flips: pd.DataFrame, baseline_survives: Any) -> str:
     """Say how few changed choices turn the finding, with the nearest example."""
     if missing(baseline_survives):
         return ""
-    state = "stops holding" if baseline_survives else "comes to hold"
     if shortest_flips.empty:
-        return f"In no specification of this sweep the finding {state}."
+        becomes = "stop holding" if baseline_survives else "come to hold"
+        return f"In no specification of this sweep does the finding {becomes}."
+    state = "stops holding" if baseline_survives else "comes to hold"
     first = shortest_flips.iloc[0]
     p_value = p_text(first["p_value"])
     found = f"p {p_value}"

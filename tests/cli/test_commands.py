@@ -98,6 +98,8 @@ def test_show_lists_sweeps_and_refuses_unknown_findings(
 def test_explain(store: Path, capsys: pytest.CaptureFixture[str]) -> None:
     assert call("explain", store, "--format", "json") == 0
     found = json.loads(capsys.readouterr().out)
+    assert found["row"]["window_start"] == "1990-01-01"
+    assert found["sample"][0].startswith("The window runs from 1990-01 to 2003-04 ")
     for item in found["compared"]:
         assert item["stored"] == pytest.approx(item["slow"], rel=1e-8)
     assert call("explain", store, found["row"]["specification"][:10]) == 0

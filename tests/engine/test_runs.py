@@ -259,10 +259,82 @@ def test_edited_data_begin_a_new_sweep(tmp_path: Path) -> None:
     assert second.run_report is not None
     assert second.run_report.reused == 0
     assert second.run_report.other_data == first.sweep
+    assert second.run_report.changed == "the data"
+    # Said once, by the run that begins the sweep.
+    again = sweep.run(plan, jobs=1).run_report
+    assert again is not None
+    assert (again.sweep, again.other_data, again.changed) == (second.sweep, None, "")
     ids = [set(results.outcomes(["specification"])["specification"]) for results in (first, second)]
     assert ids[0] == ids[1]
     with pytest.raises(sweep.errors.InputFault, match="the data have changed"):
         first.explain()
+
+
+def test_what_has_changed_is_named(
+    tmp_path: Path, monkeypatch: pytest.MonkeyPatch, capsys: pytest.CaptureFixture[str]
+) -> None:
+    from sweep.cli import main
+
+    plan = small_plans.write_plan(tmp_path)
+
+    def said() -> str:
+        with pytest.raises(SystemExit):
+            main(["run", str(plan), "--no-report", "--jobs", "1"])
+        return capsys.readouterr().err
+
+    assert "have changed" not in said()
+    assert "have changed" not in said()
+    monkeypatch.setattr("sweep.procedures.ENGINE_NUMERICS", 99)
+    assert "The program's numerics have changed since sweep 1 of this plan" in said()
+    monkeypatch.setattr("sweep.procedures.ENGINE_NUMERICS", 100)
+    small_plans.write_data(tmp_path, seed=4)
+    assert "The data and the program's numerics have changed since sweep 2 of this" in said()
+
+
+def test_a_step_that_never_steps_is_not_applicable(tmp_path: Path) -> None:
+    tail = """
+    [axes]
+    lags = [2, "AIC"]
+    deterministics = ["constant", { trend = "none", steps = ["1990-01"] },
+                      { trend = "none", steps = ["1995-01"] }, { trend = "none", seasonal = true }]
+    windows = ["full sample", { from = "1996-01" }, { rolling = 80, step = 20 }]
+    """
+    results = sweep.run(small_plans.write_plan(tmp_path, tail), jobs=1)
+    frame = results.outcomes(["deterministics", "window_start", "lags", "status", "reason"])
+    step = frame["deterministics"].astype(str)
+    constant = (step == "none + step 1990-01") | (
+        # From here on every row of the regression lies behind the step.
+        (step == "none + step 1995-01") & (frame["window_start"] >= "1995-01-01")
+    )
+    assert constant.sum() > 8
+    assert (frame["status"] == "ok").equals(~constant)
+    words = "a step, pulse, seasonal or Fourier term is constant or collinear within the window"
+    assert set(frame.loc[constant, "reason"]) == {words}
+    assert results.verify(rows=500).agrees
+
+
+def test_a_largest_order_that_the_data_lower_is_said(
+    tmp_path: Path, capsys: pytest.CaptureFixture[str]
+) -> None:
+    from sweep.cli import main
+
+    tail = '[axes]\nlags = [2, "AIC", { criterion = "AIC", maximum = 60 }]'
+    plan = small_plans.write_plan(tmp_path, tail)
+    check = sweep.check(plan)
+    # 160 − 34 rows, a constant and 3 × 34 lags: 23 degrees of freedom; with 35 lags 19.
+    (said,) = check.lowered
+    assert said.startswith('"AIC up to 60" considers at most 34 of 60 lags of "x leads y": more')
+    results = sweep.run(plan, jobs=1)
+    rows = results.outcomes(["lags_choice", "specification"])
+    wide = rows.loc[rows["lags_choice"] == "AIC up to 60", "specification"].iloc[0]
+    words = " ".join(results.explain(wide).regression)
+    assert "among 1 to 34, compared on their common sample" in words
+    assert "Orders up to 60 were to be considered; 34 is the largest that leaves 20" in words
+    usual = rows.loc[rows["lags_choice"] == "AIC", "specification"].iloc[0]
+    assert "were to be considered" not in " ".join(results.explain(usual).regression)
+    with pytest.raises(SystemExit):
+        main(["check", str(plan)])
+    assert said in capsys.readouterr().out
 
 
 @pytest.mark.parametrize("design", ['"one change"', '"two changes"', "{ sample = 60 }"])

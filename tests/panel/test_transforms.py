@@ -64,15 +64,15 @@ def plain_hodrick_prescott(y, smoothing):
     return out
 
 
-def plain_hamilton(y, horizon):
+def plain_hamilton(y, horizon, p):
     out = np.full(len(y), np.nan)
     rows = [
         t
-        for t in range(horizon + 3, len(y))
-        if np.isfinite([y[t], *(y[t - horizon - j] for j in range(4))]).all()
+        for t in range(horizon + p - 1, len(y))
+        if np.isfinite([y[t], *(y[t - horizon - j] for j in range(p))]).all()
     ]
-    if len(rows) > 5:
-        X = np.array([[1.0, *(y[t - horizon - j] for j in range(4))] for t in rows])
+    if len(rows) > p + 1:
+        X = np.array([[1.0, *(y[t - horizon - j] for j in range(p))] for t in rows])
         out[rows] = y[rows] - X @ np.linalg.lstsq(X, y[rows], rcond=None)[0]
     return out
 
@@ -83,7 +83,7 @@ def plain(name, y, frequency):
     if name == "Hodrick-Prescott cycle":
         return plain_hodrick_prescott(y, frequency.smoothing)
     if name == "Hamilton cycle":
-        return plain_hamilton(y, frequency.hamilton_horizon)
+        return plain_hamilton(y, frequency.hamilton_horizon, frequency.seasons)
     return plain_local(name, y, frequency)
 
 
@@ -239,6 +239,18 @@ def test_hamilton_agrees_with_ordinary_least_squares_of_statsmodels(log_gdp):
     cycle = TRANSFORMS["Hamilton cycle"].apply(log_gdp, "quarterly")
     # Lags of a log level are nearly collinear: condition about 1e4, squared by nobody.
     np.testing.assert_allclose(cycle[11:], fit.resid, rtol=0.0, atol=1e-11)
+
+
+@pytest.mark.parametrize(("frequency", "h", "p"), [("annual", 2, 1), ("monthly", 24, 12)])
+def test_hamilton_takes_two_years_and_the_values_of_one(log_gdp, frequency, h, p):
+    """Hamilton (2018): h = 8, p = 4 for quarterly and h = 24, p = 12 for monthly data."""
+    X = np.column_stack([log_gdp[p - 1 - j : len(log_gdp) - h - j] for j in range(p)])
+    fit = sm.OLS(log_gdp[h + p - 1 :], sm.add_constant(X)).fit()
+    cycle = TRANSFORMS["Hamilton cycle"].apply(log_gdp, frequency)
+    assert np.isnan(cycle[: h + p - 1]).all()
+    np.testing.assert_allclose(cycle[h + p - 1 :], fit.resid, rtol=0.0, atol=1e-11)
+    reach = TRANSFORMS["Hamilton cycle"].offsets(frequency)
+    assert reach == (0, *range(h, h + p))
 
 
 def test_inverse_hyperbolic_sine_printed_number():

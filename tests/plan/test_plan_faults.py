@@ -33,6 +33,16 @@ FAULTS: dict[str, tuple[str, str, str]] = {
     "rolling too long": ("[axes]\nwindows = [{ rolling = 400 }]", "", 'axes.windows: "rolling 400": a window of 400 periods is longer than the sample (160 periods, 1990-01 to 2003-04).'),
     "window too short": ("[axes]\nwindows = [{ rolling = 6 }]", "", 'axes.windows: "rolling 6" has 6 periods, fewer than the smallest regression of "x leads y" needs. Lengthen it or use fewer lags.'),
     "lags too long": ("[axes]\nlags = [60]", "", 'axes.lags: "60" lags leave no degree of freedom in the longest window of "x leads y" (160 periods). Use fewer lags or longer windows.'),
+    "requested lags too long": ('[[requests]]\nname = "a"\naxes = { lags = [90] }', "", 'requests[1].axes.lags: "90" lags leave no degree of freedom in the longest window of "x leads y" (160 periods).'),
+    "level of another criterion": ('[axes]\nlags = [{ criterion = "AIC", level = 0.1 }]', "", 'axes.lags[1]: "level" goes with the criterion "sequential LR".'),
+    "level of an order": ('[axes]\nlags = [{ order = 3, level = 0.1 }]', "", 'axes.lags[1]: "level" goes with the criterion "sequential LR".'),
+    "horizon too long": ('[axes]\ntransformations = [{ default = "Hamilton cycle", horizon = 136 }]', "", 'axes.transformations: "Hamilton cycle, horizon 136" needs 161 periods for its regression, and the longest window has 160. Shorten the horizon or use longer windows.'),
+    "unknown screen, none like it": ('[screens]\nrequire = ["roots"]', "", 'screens.require[1]: unknown screen "roots"; known: enough observations.'),
+    "unknown design": ('[sweep]\ndesign = "random"', "", 'sweep.design: "random" is not a design; known: "full", "one change", "two changes" and { sample = 5000 }.'),
+    "mistyped design": ('[sweep]\ndesign = "one chang"', "", 'sweep.design: "one chang" is not a design; did you mean "one change"?'),
+    "empty reason": ('[[rule_out]]\nwhen = { lags = [9] }\nbecause = ""', "", "rule_out[1].because: the text is empty. Write something."),
+    "given and exogenous": ("", 'exogenous = [{ series = "z" }]', 'findings[1].exogenous: "z" stands under "given" as well. Leave one of them out.'),
+    "exogenous twice": ("", 'exogenous = [{ series = "w" }, { series = "w", lags = 2 }]', 'findings[1].exogenous: "w" stands twice. Leave one of them out.'),
     "step outside": ('[axes]\ndeterministics = [{ steps = ["2040-01"] }]', "", 'axes.deterministics: "constant + step 2040-01": 2040-01 lies outside the sample (1990-01 to 2003-04).'),
     "robust LR": ('[axes]\ntests = [{ test = "LR", covariance = "HC3" }]', "", "axes.tests[1]: LR has no form with covariance HC3; use F or Wald."),
     "divisor": ('[axes]\ntests = [{ test = "F", divisor = "T" }]', "", 'axes.tests[1]: divisor = "T" belongs to the classical Wald statistic.'),
@@ -67,8 +77,7 @@ FAULTS: dict[str, tuple[str, str, str]] = {
     "unknown column": ("", 'exogenous = [{ series = "vv", lags = 1 }]', "small.csv: there is no column “vv”. Did you mean “v”?"),
     "sign of nothing": ("", 'claim = "does not lead"\nsign = "positive"', 'findings[1]: a sign makes no sense under the claim "does not lead"; leave it out.'),
     "reverse sign": ("", 'reverse_sign = "positive"', 'findings[1]: "reverse_sign" belongs to the claim "leads both ways".'),
-    "given twice": ("", 'exogenous = [{ series = "z" }]', 'findings[1].given: "z" stands twice. Leave one of them out.'),
-    "cause as exogenous": ("", 'exogenous = [{ series = "x" }]', 'findings[1].given: "x" is already the cause or the effect.'),
+    "cause as exogenous": ("", 'exogenous = [{ series = "x" }]', 'findings[1].exogenous: "x" is already the cause or the effect.'),
     "unknown series in scale": ('[axes]\ntransformations = [{ default = "level", series = { q = "log" } }]', "", 'axes.transformations: "level; q: log" names the series "q", which no finding uses'),
     "reported in words": ('[baseline.reported]\np_value = "< 0.01"', "", 'baseline.reported.p_value: a printed number is needed here, such as 3.42, 0.0190 or "0.0190".'),
     "reported not a number": ("[baseline.reported]\nstatistic = nan", "", 'baseline.reported.statistic: a printed number is needed here, such as 3.42, 0.0190 or "0.0190".'),
@@ -94,6 +103,27 @@ def test_one_fault_one_message(
     assert shown.err.count("\n") == 1
     assert not shown.out
     assert sorted(tmp_path.iterdir()) == before
+
+
+@pytest.mark.parametrize("tail", ["", "[axes]\nlags = [1, 2]"])
+def test_the_baselines_own_lags_are_named(
+    tmp_path: Path, tail: str, capsys: pytest.CaptureFixture[str]
+) -> None:
+    plan = small_plans.write_plan(tmp_path, tail)
+    text = plan.read_text(encoding="utf-8").replace("lags = 2\n", "lags = 500\n")
+    plan.write_text(text, encoding="utf-8")
+    with pytest.raises(SystemExit) as left:
+        main(["check", str(plan)])
+    assert left.value.code == 2
+    assert 'baseline.lags: "500" lags leave no degree of freedom' in capsys.readouterr().err
+
+
+def test_a_title_is_not_empty(tmp_path: Path) -> None:
+    plan = small_plans.write_plan(tmp_path)
+    text = plan.read_text(encoding="utf-8").replace('title = "A small plan"', 'title = ""')
+    plan.write_text(text, encoding="utf-8")
+    with pytest.raises(InputFault, match=r"^title: the text is empty. Write something.$"):
+        load_plan(plan)
 
 
 def test_a_seed_that_the_store_cannot_hold(
