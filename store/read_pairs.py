@@ -113,7 +113,8 @@ def pair_cells(db: Database, sweep: int, finding: int, cells: int = 5000) -> pd.
         One row a cell that was planned, pairs in plan order: ``row_axis, column_axis`` (the
         earlier axis of the two first), ``row_choice, column_choice, row_position,
         column_position, row_is_baseline, column_is_baseline, planned, not_applicable,
-        screened_out, admissible, survived, weight`` (sum of the weights of admissible rows),
+        screened_out, admissible, survived, weight`` (sum of the weights of admissible rows; of a
+        design without weights, their number),
         ``share`` (weighted), ``expected`` (:func:`additive_fit` over the pair's cells, held to
         [0, 1]),
         ``departure`` (:func:`departure` of the pair, the same in all its cells), ``row_pooled,

@@ -56,6 +56,7 @@ class Sweep:
     seed: int = 7
     weak: tuple[str, ...] = ("F, HC3 covariance", "pairwise")
     not_applicable: tuple[str, ...] = ()
+    changes: int = len(AXES)
     reported: tuple[str | None, str | None, int | None] = (None, None, None)
 
     @property
@@ -72,6 +73,8 @@ def rows_of(sweep: Sweep) -> pd.DataFrame:
     found = []
     for number, combination in enumerate(itertools.product(*sweep.axes.values())):
         choices = dict(zip(AXES, combination, strict=True))
+        if sum(choices[axis] != sweep.axes[axis][0] for axis in AXES) > sweep.changes:
+            continue
         kind, length, positions = sweep.moving.get(choices["window"], ("fixed", 0, 1))
         for position in range(positions):
             z = (
@@ -109,7 +112,8 @@ def rows_of(sweep: Sweep) -> pd.DataFrame:
                     "p_value": p if ok else None,
                     "reverse_p_value": float(rng.uniform(0, 1)) if ok else None,
                     "coefficient_sum": float(rng.normal(0.2, 0.1)) if ok else None,
-                    "weight": 1.0 / positions,
+                    # Designs that change few choices at a time pool nothing.
+                    "weight": 1.0 / positions if sweep.changes == len(AXES) else 0.0,
                     "computation": number * 1000 + position,
                     "order_used": 4,
                 }
@@ -337,6 +341,8 @@ def directions_frame(sweep: Sweep, rows: pd.DataFrame) -> pd.DataFrame:
 
 def _shared(rows: pd.DataFrame) -> dict[str, object]:
     good = rows[rows["admissible"]]
+    if not good["weight"].sum():
+        good = good.assign(weight=1.0)
     weight = float(good["weight"].sum())
     return {
         "planned": len(rows),

@@ -1,7 +1,8 @@
 -- Planned rows by every pair of axes: what was counted and what survived in each cell.
 -- Rows are grouped once on codes, as in the view survival; every pair then sums the groups.
 -- Weights are summed last and in order, so that a share has the same digits whatever the number
--- of threads.  The codes of the axes that a pair does not hold are NULL.
+-- of threads.  Designs that change few choices at a time give no weights; there every row counts
+-- alike.  The codes of the axes that a pair does not hold are NULL.
 WITH grouped AS (
     SELECT
         lags, deterministics, "window", transformation, test, conditioning, measures,
@@ -45,9 +46,10 @@ SELECT
     sum(screened_out)::BIGINT AS screened_out,
     sum(admissible)::BIGINT AS admissible,
     sum(survived)::BIGINT AS survived,
-    sum(weight * admissible ORDER BY weight) AS weight,
+    CASE WHEN sum(weight * admissible) > 0 THEN sum(weight * admissible ORDER BY weight)
+         ELSE sum(admissible) END AS weight,
     CASE WHEN sum(weight * admissible) > 0
          THEN sum(weight * survived ORDER BY weight) / sum(weight * admissible ORDER BY weight)
-         END AS share
+         WHEN sum(admissible) > 0 THEN sum(survived) / sum(admissible) END AS share
 FROM by_weight
 GROUP BY ALL;

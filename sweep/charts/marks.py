@@ -254,9 +254,13 @@ def hit_rows(rows: Rows, height: float, width: float, tips: Mapping[str, str]) -
 
 def without_marks(words: str, width: str, title: str, subtitle: str) -> Specification:
     """Return a figure that only says, in words, why there is nothing to draw."""
-    rows = [{"y": 2.0, "text": ""}, {"y": 16.0, "text": words}]
-    layers = strokes(rows[:1], 24, 1, WIDTHS[width] - 1, colour=HAIRLINE, width=0.6)
-    return figure(layers + texts(rows[1:], 24, 0, colour=QUIET), width, 24, title, subtitle)
+    across = WIDTHS[width]
+    lines = wrapped(words, across)
+    height = 12.0 + 12 * len(lines)
+    rows = [{"y": 16.0 + 12 * number, "text": line} for number, line in enumerate(lines)]
+    layers = strokes([{"y": 2.0}], height, 1, across - 1, colour=HAIRLINE, width=0.6)
+    layers += texts(rows, height, 0, colour=QUIET)
+    return figure(layers, width, height, title, subtitle)
 
 
 def figure(

@@ -63,7 +63,7 @@ def _record(row: Row) -> dict[str, Any]:
         "y": row.middle,
         "axis": str(row.record["axis"]),
         "choice": str(row.record["choice"]),
-        "share": counts.headline,
+        "share": counts.shown,
         "counts": share_text(counts.survived, counts.admissible),
         "short": share_text(counts.survived, counts.admissible).split(" (")[0],
         "admissible": counts.admissible,
@@ -79,7 +79,7 @@ def _record(row: Row) -> dict[str, Any]:
 def _hidden(row: Row) -> dict[str, Any]:
     """Return the range and the summed counts of the choices that are not drawn."""
     every = [counts_of(record) for record in row.hidden]
-    shares = [counts.headline for counts in every if counts.headline is not None]
+    shares = [counts.shown for counts in every if counts.shown is not None]
     survived = sum(counts.survived for counts in every)
     admissible = sum(counts.admissible for counts in every)
     return {
@@ -97,19 +97,26 @@ def _subtitle(context: Context, arranged: Arrangement, fixed: str) -> str:
     words = [
         context.lead,
         "Dot: weighted share of the admissible specifications with that choice in which the "
-        "finding survives; counts are unweighted rows.",
+        "finding survives; counts are unweighted rows."
+        if counts.pooled
+        else "Dot: share of the admissible rows with that choice in which the finding survives. "
+        "The sweep changes few choices at a time, so rows have no weights and there is no pooled "
+        "share.",
     ]
-    if counts.admissible:
+    if counts.admissible and counts.pooled:
         words.append(f"Upright line: all choices, {headline(counts, context.design)}.")
     words += [context.losses, "Diamond: the baseline's choice.", arranged.thinned, fixed]
     return " ".join(word for word in words if word)
 
 
-def _columns(rows: list[dict[str, Any]], width: str) -> list[tuple[float, str, str, str]]:
+def _columns(
+    rows: list[dict[str, Any]], width: str, *, pooled: bool
+) -> list[tuple[float, str, str, str]]:
     """Return right edge, field and two lines of heading of each column of numbers."""
     names = [("short", "survived of", "admissible")]
     if width == "wide":
-        names += [("weighted", "weighted", "share"), ("left_out", "left out", "")]
+        names += [("weighted", "weighted", "share")] if pooled else []
+        names += [("left_out", "left out", "")]
     edge = float(WIDTHS[width])
     placed = []
     for name, first, second in reversed(names):
@@ -141,7 +148,7 @@ def build(
     height = arranged.height + 4
     drawn = [_record(row) for row in arranged.choices]
     rest = [_hidden(row) for row in arranged.rows if row.hidden]
-    *columns, (right, _, _, _) = _columns([*drawn, *rest], width)
+    *columns, (right, _, _, _) = _columns([*drawn, *rest], width, pooled=context.counts.pooled)
     track = (_INDENT + room + 16, right)
     pointed = [
         record | {"y": row.top, "y2": row.bottom}

@@ -41,6 +41,9 @@ _DARK = 0.7
 _LINE = SMALL * 1.22
 _FOOT = 20.0
 _NOTHING = 0.0005  # a departure that rounds to nothing
+_NEVER = (
+    "The sweep changes one choice at a time, so it cannot show whether two of them act together."
+)
 _NONE = "Fewer than two axes of this finding have several choices."
 
 _TIPS = {
@@ -114,7 +117,12 @@ def _subtitle(context: Context, words: str, grid: Grid) -> str:
         words,
         "Tint: weighted share of the admissible specifications with both choices in which the "
         "finding survives; counts are unweighted rows; last row and column: weighted share of one "
-        "choice alone. Small dot: none admissible; empty: not planned together."
+        "choice alone."
+        if context.counts.pooled
+        else "Tint: share of the admissible rows with both choices in which the finding survives; "
+        "last row and column: share of one choice alone. The sweep changes few choices at a time, "
+        "so rows have no weights and there is no pooled share.",
+        "Small dot: none admissible; empty: not planned together."
         + (" Grey: all screened out." if grey else ""),
         marked if far else "",
         context.losses,
@@ -159,8 +167,12 @@ def _named(pair: Axes) -> str:
 
 
 def absent(frames: Mapping[str, pd.DataFrame]) -> str:
-    """Say that there is nothing to draw where fewer than two axes vary."""
-    return _NONE if frames["pair_cells"].empty else ""
+    """Say that there is nothing to draw where two choices are never changed at a time."""
+    cells = frames["pair_cells"]
+    if cells.empty:
+        return _NONE
+    together = ~cells["row_is_baseline"].astype(bool) & ~cells["column_is_baseline"].astype(bool)
+    return "" if together.any() else _NEVER
 
 
 def build(
@@ -187,11 +199,11 @@ def build(
     InputFault
         If the axes asked for are no pair of this finding.
     """
-    cells = frames["pair_cells"]
-    if cells.empty:
+    nothing = absent(frames)
+    if nothing:
         said = f"{context.lead} {context.losses}"
-        return marks.without_marks(_NONE, width, QUESTION, said)
-    own, pair, order = _chosen(cells, axes)
+        return marks.without_marks(nothing, width, QUESTION, said)
+    own, pair, order = _chosen(frames["pair_cells"], axes)
     grid = place_grid(own, width)
     height, across = grid.arranged.height + _FOOT, float(WIDTHS[width])
     drawn = list(_drawn(grid))
@@ -201,7 +213,7 @@ def build(
             *_heads(grid, height),
             *_cells(grid, drawn, height),
             *_labels(grid, height),
-            *_margins(grid, frames["survival"], height, across),
+            *_margins(grid, frames["survival"], height, across, pooled=context.counts.pooled),
             *_pointed(grid, drawn, height),
         ],
         width,
@@ -326,10 +338,12 @@ def _labels(grid: Grid, height: float) -> Layers:
     ]  # fmt: skip
 
 
-def _margins(grid: Grid, survival: pd.DataFrame, height: float, across: float) -> Layers:
-    """Write the weighted share of every choice alone beside its row and below its column."""
+def _margins(
+    grid: Grid, survival: pd.DataFrame, height: float, across: float, *, pooled: bool
+) -> Layers:
+    """Write the share of every choice alone beside its row and below its column."""
     shares = {
-        (str(row["axis"]), str(row["choice"])): counts_of(row).headline
+        (str(row["axis"]), str(row["choice"])): counts_of(row).shown
         for row in survival.to_dict("records")
     }
     right = [
@@ -344,7 +358,7 @@ def _margins(grid: Grid, survival: pd.DataFrame, height: float, across: float) -
         if not one.closing
     ]  # fmt: skip
     edge = min(grid.right + text_width("100%") + 12, across)
-    corner = [{"y": y, "text": percent(shares[(OVERALL, OVERALL)])}]
+    corner = [{"y": y, "text": percent(shares[(OVERALL, OVERALL)])}] if pooled else []
     line = [{"y": grid.arranged.height + 3}]
     return [
         *marks.strokes(line, height, 1, edge, colour=HAIRLINE, width=0.6),
@@ -389,8 +403,9 @@ def describe(
     """Say in words what the figure shows."""
     cells = frames["pair_cells"]
     words = [f"Survival by two axes. {context.lead}"]
-    if cells.empty:
-        return " ".join([*words, _NONE, context.losses])
+    nothing = absent(frames)
+    if nothing:
+        return " ".join([*words, nothing, context.losses])
     own, pair, order = _chosen(cells, axes)
     words.append(_strength_words(pair, order))
     known = own[own["expected"].notna()]

@@ -79,6 +79,16 @@ class Counts:
         return self.survived / self.admissible if self.admissible else None
 
     @property
+    def pooled(self) -> bool:
+        """Whether rows have weights; where few choices are changed at a time they have none."""
+        return self.headline is not None or not self.admissible
+
+    @property
+    def shown(self) -> float | None:
+        """The share that a figure draws: the weighted one, without weights the unweighted."""
+        return self.headline if self.pooled else self.raw
+
+    @property
     def left_out(self) -> int:
         """Planned rows that are not counted in the share."""
         return self.planned - self.admissible

@@ -228,3 +228,17 @@ def test_estimates_of_a_moving_baseline_are_those_of_its_last_position(tmp_path:
     held = found[found["is_baseline"]]["specification"]
     assert len(own) > 1
     assert set(held) <= {last["specification"]}
+
+
+def test_without_weights_every_row_counts_alike(tmp_path: Path) -> None:
+    """Designs that change few choices at a time give the windows no weight."""
+    with store.database.create(tmp_path / "x.duckdb") as db:
+        filled = fill(db, 2)
+        weighted = read.pair_cells(db, filled.sweep, 0)
+        db.execute("UPDATE sweep_choice SET weight = 0 WHERE axis = 'window'")
+        found = read.pair_cells(db, filled.sweep, 0)
+    counted = found["admissible"] > 0
+    assert counted.all()
+    np.testing.assert_allclose(found["share"], found["survived"] / found["admissible"], rtol=1e-15)
+    assert found["weight"].tolist() == found["admissible"].tolist()
+    assert (found["share"] != weighted["share"]).any()
