@@ -505,8 +505,19 @@ def attrition_frame(sweep: Sweep, rows: pd.DataFrame) -> pd.DataFrame:
     return pd.DataFrame(found, columns=["status", "reason", "rows", "ruled"])
 
 
+# Counting a sweep in pandas takes seconds, and many tests read the same few sweeps.
+_COUNTED: dict[str, dict[str, pd.DataFrame]] = {}
+
+
 def frames_of(sweep: Sweep) -> dict[str, pd.DataFrame]:
-    """All frames of one finding, named as the functions that read them."""
+    """All frames of one finding, named as the functions that read them; the caller's own."""
+    name = repr(sweep)
+    if name not in _COUNTED:
+        _COUNTED[name] = _frames_of(sweep)
+    return {frame: held.copy() for frame, held in _COUNTED[name].items()}
+
+
+def _frames_of(sweep: Sweep) -> dict[str, pd.DataFrame]:
     rows = rows_of(sweep)
     makers = {
         "survival": survival_frame,
