@@ -356,10 +356,26 @@ def _version(package: str) -> str:
 def _connect(
     file: Path, config: dict[str, Any], read_only: bool = False
 ) -> duckdb.DuckDBPyConnection:
+    if read_only and not _is_duckdb(file):
+        raise NotAStore(
+            f"{file}: this is {'a folder' if file.is_dir() else 'not a DuckDB file'}. Name the "
+            "store that `crosswind run` wrote."
+        )
     try:
         return duckdb.connect(str(file), read_only=read_only, config=config)
     except duckdb.Error as error:
         raise _explained(file, error) from error
+
+
+def _is_duckdb(file: Path) -> bool:
+    """Say whether a file begins as DuckDB's do; unreadable ones are left to DuckDB."""
+    if file.is_dir():
+        return False
+    try:
+        with file.open("rb") as opened:
+            return opened.read(12)[8:] == b"DUCK"
+    except OSError:
+        return True
 
 
 def _explained(file: Path, error: duckdb.Error) -> StoreError:

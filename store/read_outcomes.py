@@ -204,7 +204,8 @@ def specification(
     if not matches:
         raise NotFound(f"No specification of sweep {sweep} begins with {text}.")
     if len(matches) > 1:
-        found = ", ".join(f"{high:016x}{low:016x} (finding {f})" for f, high, low in matches)
+        names = dict(db.execute("SELECT finding, name FROM finding WHERE sweep = ?", [sweep]))
+        found = ", ".join(f"{high:016x}{low:016x} (“{names[f]}”)" for f, high, low in matches)
         raise Ambiguous(
             f"Several specifications of sweep {sweep} begin with {text}: {found}. "
             "Give more digits, or name the finding."

@@ -109,7 +109,10 @@ def sweep_info(db: Database, sweep: int) -> dict[str, Any]:
     """
     frame = db.frame("SELECT * FROM sweep WHERE sweep = ?", [sweep])
     if frame.empty:
-        raise NotFound(f"{db.path}: there is no sweep {sweep}. `crosswind show` lists the sweeps.")
+        raise NotFound(
+            f"{db.path}: there is no sweep {sweep}. `crosswind show {db.path} --sweeps` lists "
+            "those that there are."
+        )
     names = list(frame.columns)
     info = dict(
         zip(names, db.execute("SELECT * FROM sweep WHERE sweep = ?", [sweep])[0], strict=True)

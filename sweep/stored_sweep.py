@@ -251,4 +251,6 @@ class StoredSweep:
             return finding
         if finding in names:
             return names[str(finding)]
-        raise NotFound(f'No finding is called "{finding}"' + suggestion(str(finding), names))
+        near = suggestion(str(finding), names)
+        stop = "" if near.endswith("?") else "."
+        raise NotFound(f'No finding is called "{finding}"{near}{stop}')

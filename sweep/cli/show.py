@@ -31,6 +31,8 @@ def command(
     """Print the survival summary of STORE again, whole or by one axis."""
     from sweep.api import open_results
 
+    if sweeps and (by is not None or finding is not None or sweep is not None):
+        raise click.UsageError("--sweeps lists all sweeps; leave out --by, --finding and --sweep")
     results = open_results(store, sweep)
     if sweeps:
         print_frame(results.sweeps(), form)

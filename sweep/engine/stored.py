@@ -38,6 +38,8 @@ def prepared_again(results: Results, data: Path | None) -> Prepared:
     note = json.loads(str(results.info["data_note"]))
     candidates = [data] if data is not None else [plan.data_path, Path(note["file"])]
     path = next((p for p in candidates if p is not None and p.exists()), None)
+    if path is None and data is not None:
+        raise InputFault(Fault(str(data), "there is no such file", "Name the data file."))
     if path is None:
         raise InputFault(
             Fault(str(candidates[0]), "the data file is not there", "Name it with --data FILE.")

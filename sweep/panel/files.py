@@ -85,6 +85,9 @@ def read_table(path: Path, columns: Sequence[str] | None = None) -> Table:
     if not table.lines:
         problem = "there is a header but no row of data"
         raise InputFault(*table.faults, Fault(str(path), problem, "Add a row for each period."))
+    if len(table.lines) == 1:
+        problem = "there is one row of data only"
+        raise InputFault(*table.faults, Fault(str(path), problem, "Add a row for each period."))
     return table
 
 
@@ -92,7 +95,7 @@ def _kind(path: Path) -> str:
     if path.is_dir():
         raise InputFault(Fault(str(path), "this is a folder, not a data file"))
     if not path.exists():
-        mend = "Data files are looked for beside the plan; check the name and the folder."
+        mend = "Check the name and the folder; a plan's data are looked for from the plan's folder."
         raise InputFault(Fault(str(path), "there is no such file", mend))
     suffix = path.suffix.lower()
     if suffix not in _KINDS:

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Mapping
 from dataclasses import dataclass
+from datetime import date
 from itertools import pairwise
 from pathlib import Path
 
@@ -12,7 +13,7 @@ from numpy.typing import NDArray
 
 from sweep.errors import Fault, InputFault
 from sweep.panel.calendar import FREQUENCIES, Calendar, Frequency, recognise_frequency
-from sweep.panel.cells import CellError, is_blank, read_day, read_number
+from sweep.panel.cells import CellError, is_blank, read_day, read_number, shown
 from sweep.panel.dates import read_calendar
 from sweep.panel.files import Table, read_table
 from sweep.panel.series import Dataset, collinear_faults, constant_faults, missing_faults
@@ -23,6 +24,8 @@ __all__ = ["Survey", "rows_needed", "survey_file"]
 # What the screen "enough observations" asks for.
 _LEAST_FREE = 20  # observations less coefficients that a regression should keep
 _PER_COEFFICIENT = 3
+# Share of cells that may not be dates where a column is taken for one of dates all the same.
+_NEARLY = 0.25
 
 
 @dataclass(frozen=True, slots=True)
@@ -161,10 +164,12 @@ def _dates(table: Table) -> tuple[str, Calendar]:
     """Find the first column of dates that run forward, and their frequency."""
     candidates = []
     repeats = ""
+    nearly: list[tuple[int, str, int]] = []
     for name, cells in zip(table.header, table.columns, strict=True):
-        try:
-            days = [read_day(cell, "annual") for cell in cells]
-        except CellError:
+        read = [_day(cell) for cell in cells]
+        days = [day for day in read if day is not None]
+        if len(days) < len(read):
+            nearly.append((len(read) - len(days), name, read.index(None)))
             continue
         if name and all(earlier < later for earlier, later in pairwise(days)):
             candidates.append((name, recognise_frequency(days)))
@@ -173,6 +178,9 @@ def _dates(table: Table) -> tuple[str, Calendar]:
     if not candidates:
         problem = "no column was recognised as dates"
         mend = "Give one column dates written as 1990, 1990-Q1, 1990-03 or 1990-03-15 in every row."
+        count, near, row = min(nearly, default=(len(table.lines), "", 0))
+        if near and count <= _NEARLY * len(table.lines):
+            raise InputFault(_near_miss(table, near, row, count))
         if repeats:
             problem = f"the dates in column {repeats} repeat or run backwards"
             mend = (
@@ -195,6 +203,24 @@ def _dates(table: Table) -> tuple[str, Calendar]:
     if calendar is None:
         raise InputFault(*faults)
     return name, calendar
+
+
+def _day(cell: object) -> date | None:
+    try:
+        return read_day(cell, "annual")
+    except CellError:
+        return None
+
+
+def _near_miss(table: Table, name: str, row: int, count: int) -> Fault:
+    """Say which cells keep a column from being dates."""
+    cell = table.column(name)[row]
+    good = len(table.lines) - count
+    what = "the cell is empty" if is_blank(cell) else f"{shown(cell)} is not a date"
+    more = f", nor are {count - 1:,} more" if count > 2 else ", nor is 1 more" * (count == 2)
+    problem = f"{what}{more}; {good:,} other cells of the column are dates"
+    mend = "Correct the cell, or take the row out if it is no observation."
+    return Fault(table.place(row, name), problem, mend)
 
 
 def _usable(

@@ -223,6 +223,15 @@ def _facts(text: Any) -> dict[str, str]:
     }
 
 
+def _moment(value: Any) -> str | None:
+    """Write a time to the second, in universal time as the store keeps it."""
+    return None if missing(value) else f"{str(value)[:19]} UTC"
+
+
+def _seconds(value: Any) -> str | None:
+    return None if missing(value) else f"{float(value):.1f}"
+
+
 def content_of(
     info: Mapping[str, Any],
     findings: Sequence[Mapping[str, Any]],
@@ -268,9 +277,9 @@ def content_of(
         said = tuple((redundancies or {}).get(number, ()))
         found.append(FindingContent(record, context, own, said))
     run = {
-        "started": info.get("started"),
-        "finished": info.get("finished"),
-        "seconds": info.get("wall_seconds"),
+        "started": _moment(info.get("started")),
+        "finished": _moment(info.get("finished")),
+        "seconds": _seconds(info.get("wall_seconds")),
         "rows stored": info.get("rows"),
         "rows planned": info.get("planned"),
         "design": info.get("design"),

@@ -114,7 +114,7 @@ def test_a_file_that_is_not_duckdb(tmp_path: Path, open_: object, content: bytes
 
 @pytest.mark.parametrize("open_", [store.database.open_reading, store.database.open_writing])
 def test_a_folder_is_not_a_store(tmp_path: Path, open_: object) -> None:
-    with pytest.raises(NotAStore, match="not a DuckDB file"):
+    with pytest.raises(NotAStore, match="this is a folder"):
         open_(tmp_path)  # type: ignore[operator]
 
 

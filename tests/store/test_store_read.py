@@ -275,7 +275,8 @@ def test_specification_by_prefix(filled: Filled, twin: pd.DataFrame) -> None:
         row = read.specification(filled.db, filled.sweep, prefix, finding=FINDING)
         assert row["specification"].tolist() == [full]
         assert row["finding_number"].tolist() == [FINDING]
-    with pytest.raises(Ambiguous, match="Give more digits"):
+    named = r"[0-9a-f]{32} \(“freight leads rents \d”\), .* Give more digits"
+    with pytest.raises(Ambiguous, match=named):
         read.specification(filled.db, filled.sweep, full[0])
     with pytest.raises(NotFound, match="begins with"):
         read.specification(filled.db, filled.sweep, "0" * 32)
