@@ -52,8 +52,8 @@ FOLDER = "this is a folder. Name the store that `crosswind run` wrote."
         (("run", "plan.toml", "--store", "small.csv"), 5, f"small.csv: {NOT_DUCKDB}"),
         (("run", "plan.toml", "--store", "empty.duckdb"), 5, f"empty.duckdb: {NOT_DUCKDB}"),
         (("run", "plan.toml", "--store", "a folder"), 5, f"a folder: {FOLDER}"),
-        (("show", "nope.duckdb"), 2, "nope.duckdb: there is no store here. Name an existing one, or "
-                                     "run the plan."),
+        (("show", "nope.duckdb"), 2,
+         "nope.duckdb: there is no store here. Name an existing one, or run the plan."),
         (("show", "plan.duckdb", "--sweep", "9"), 2,
          "plan.duckdb: there is no sweep 9. `crosswind show plan.duckdb --sweeps` lists those that "
          "there are."),
@@ -61,8 +61,9 @@ FOLDER = "this is a folder. Name the store that `crosswind run` wrote."
          'No finding is called "q"; known: x leads y, y leads x.'),
         (("explain", "plan.duckdb", "--data", "missing.csv"), 2,
          "missing.csv: there is no such file. Name the data file."),
-        (("new", "nope.csv"), 2, "nope.csv: there is no such file. Check the name and the folder; a "
-                                 "plan's data are looked for from the plan's folder."),
+        (("new", "nope.csv"), 2,
+         "nope.csv: there is no such file. Check the name and the folder; a plan's data are looked "
+         "for from the plan's folder."),
     ],
 )  # fmt: skip
 def test_one_line(
