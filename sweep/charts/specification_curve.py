@@ -8,21 +8,18 @@ coefficients; a single scale is drawn in its own units.
 from __future__ import annotations
 
 from collections.abc import Mapping, Sequence
-from dataclasses import dataclass
-from statistics import NormalDist
 from typing import Any
 
 import pandas as pd
 
-from sweep.errors import Fault, InputFault
-from sweep.plan.suggest import suggestion
 from sweep.verdicts.survival import OVERALL
-from sweep.verdicts.words import counted, level_text, missing, number, p_text, percent
+from sweep.verdicts.words import counted, level_text, number, p_text, percent
 
 from . import marks
 from .arrangement import Arrangement, Record, arrange, by_axis, held_fixed, label_room
 from .context import Context
-from .layout import spread_evenly, text_width
+from .curve_points import Curve, bounds_of, curve_of, scale_asked
+from .layout import text_width
 from .marks import Layers, Scale, Specification
 from .theme import BASELINE, FAILS, HAIRLINE, INK, QUIET, SURVIVES, WIDTHS
 from .ticks import round_ticks, tick_texts
@@ -40,7 +37,6 @@ _MOST = {"narrow": 64, "wide": 150}  # specifications drawn, each at least three
 _TOP, _PANEL, _STRIP = 16.0, 150.0, 13.0
 _ROWS = 30
 _TICK = 8.0  # height of a stroke that says what was chosen
-_CUT = 0.04  # share of the intervals on each side that may reach past the frame
 _NOTHING = "No admissible specification has an estimate."
 
 _TIPS = {
@@ -52,139 +48,16 @@ _TIPS = {
     "choices": "choices",
 }
 
-Row = dict[str, Any]
-
-
-@dataclass(frozen=True, slots=True)
-class _Curve:
-    """The specifications that are drawn, with what is known of all of them.
-
-    Attributes
-    ----------
-    scale : str
-        ``all``, or the name of one scale.
-    drawn : tuple of mapping
-        Rows of the store's frame, in order, each with ``low`` and ``high`` (interval; None where
-        there is no standard error) and ``place`` (0 to 1 across).
-    admissible, rows, survived, positive : int
-        All admissible rows of the scale, those with an estimate, and of these the survivors and
-        the positive ones.
-    median : float
-    scales : int
-        Scales there are.
-    level : float
-        Level of the intervals, in (0, 1).
-    """
-
-    scale: str
-    drawn: tuple[Row, ...]
-    admissible: int
-    rows: int
-    survived: int
-    positive: int
-    median: float
-    scales: int
-    level: float
-
-    @property
-    def baseline(self) -> Row | None:
-        """Return the baseline's row, if it is on the scale and admissible."""
-        return next((row for row in self.drawn if row["is_baseline"]), None)
-
-    @property
-    def unit(self) -> str:
-        """Return what the height is, in words."""
-        if self.scale == OVERALL:
-            return "standardised sum of the lag coefficients"
-        return "sum of the lag coefficients"
-
-
-def _names(frame: pd.DataFrame) -> list[str]:
-    return [str(one) for one in frame["scale"].drop_duplicates() if one != OVERALL]
-
-
-def _asked(frame: pd.DataFrame, scale: str | None) -> str:
-    """Return the scale to draw: the one asked for, the only one, or all.
-
-    Raises
-    ------
-    InputFault
-        If the scale asked for is none of the finding's.
-    """
-    names = _names(frame)
-    if scale is None:
-        return names[0] if len(names) == 1 else OVERALL
-    if scale == "baseline":
-        held = frame[frame["baseline_scale"].fillna(False).astype(bool)]
-        if not held.empty:
-            return _names(held)[0]
-    # The first words of a name will do where no other scale begins so.
-    begun = [name for name in names if name.startswith(f"{scale} · ")]
-    if len(begun) == 1:
-        return begun[0]
-    if scale not in (*names, OVERALL):
-        known = ("baseline", OVERALL, *names)
-        raise InputFault(Fault("scale", f'no scale "{scale}"' + suggestion(scale, known)))
-    return scale
-
-
-def _curve(frame: pd.DataFrame, level: float, scale: str | None, most: int) -> _Curve | None:
-    """Return the curve thinned to what is drawn; None where nothing has an estimate."""
-    if frame.empty:
-        return None
-    name = _asked(frame, scale)
-    own = frame[frame["scale"] == name].to_dict("records")
-    kept = [place for place, row in enumerate(own) if row["is_baseline"]]
-    chosen = [own[place] for place in spread_evenly(len(own), most, kept)]
-    reach = NormalDist().inv_cdf(1 - level / 2)
-    drawn = []
-    for place, row in enumerate(chosen):
-        error = row["standard_error"]
-        half = None if missing(error) else reach * float(error)
-        estimate = float(row["estimate"])
-        ends = (None, None) if half is None else (estimate - half, estimate + half)
-        drawn.append(
-            {str(key): value for key, value in row.items()}
-            | {"low": ends[0], "high": ends[1], "place": round((place + 0.5) / len(chosen), 5)}
-        )
-    whole = own[0]
-    return _Curve(
-        name,
-        tuple(drawn),
-        admissible=int(whole["admissible"]),
-        rows=int(whole["rows"]),
-        survived=int(whole["survived"]),
-        positive=int(whole["positive"]),
-        median=float(whole["median"]),
-        scales=len(_names(frame)),
-        level=level,
-    )
-
-
-def _bounds(curve: _Curve) -> tuple[float, float]:
-    """Return the ends of the height: all estimates, zero, and all but the widest intervals."""
-    values = [row["estimate"] for row in curve.drawn]
-    low, high = min(*values, 0.0), max(*values, 0.0)
-    lows = sorted(row["low"] for row in curve.drawn if row["low"] is not None)
-    highs = sorted((row["high"] for row in curve.drawn if row["high"] is not None), reverse=True)
-    own = curve.baseline
-    if own is not None and own["low"] is not None:
-        low, high = min(low, own["low"]), max(high, own["high"])
-    cut = int(_CUT * len(lows))
-    low, high = min([low, *lows[cut : cut + 1]]), max([high, *highs[cut : cut + 1]])
-    return (low, high) if low < high else (low - 1, high + 1)
-
-
 def _subtitle(
-    context: Context, curve: _Curve, bounds: tuple[float, float], arranged: Arrangement, fixed: str
+    context: Context, curve: Curve, bounds: tuple[float, float], arranged: Arrangement, fixed: str
 ) -> str:
     share = level_text(1 - curve.level)
     words = [context.lead]
     if curve.scale == OVERALL:
         words.append(
             "Height: standardised sum of the lag coefficients (standard deviations of the effect "
-            f"for one of the cause), which compares across the {curve.scales:,} scales of this "
-            f"finding; upright strokes: normal {share} intervals."
+            f"for one of the cause), which compares across the {counted(curve.scales, 'scale')} of "
+            f"this finding; upright strokes: normal {share} intervals."
         )
     else:
         words.append(
@@ -218,7 +91,7 @@ def _subtitle(
     return " ".join(word for word in words if word)
 
 
-def _spread(curve: _Curve) -> str:
+def _spread(curve: Curve) -> str:
     positive = percent(curve.positive / curve.rows)
     return (
         f"Median {number(curve.median)}; positive in {curve.positive:,} of {curve.rows:,} "
@@ -256,13 +129,13 @@ def build(
     InputFault
         If the scale asked for is none of the finding's.
     """
-    curve = _curve(frames["curve"], context.significance, scale, _MOST[width])
+    curve = curve_of(frames["curve"], context.significance, scale, _MOST[width])
     if curve is None:
         said = f"{context.lead} {context.losses}"
         return marks.without_marks(_NOTHING, width, QUESTION, said)
     survival = frames["survival"]
     parts, fixed = held_fixed(_choices_of(curve, by_axis(survival[survival["axis"] != OVERALL])))
-    bounds = _bounds(curve)
+    bounds = bounds_of(curve)
     ticks = round_ticks(*bounds, 7)
     strips = (f"survives {curve.survived:,}", f"does not {curve.rows - curve.survived:,}")
     room = max(
@@ -295,7 +168,7 @@ def build(
 
 
 def _choices_of(
-    curve: _Curve, groups: list[tuple[str, list[Record]]]
+    curve: Curve, groups: list[tuple[str, list[Record]]]
 ) -> list[tuple[str, list[Record]]]:
     """Leave out the choices that belong to other scales than the one that is drawn."""
     if curve.scale == OVERALL:
@@ -309,7 +182,7 @@ def _choices_of(
 
 
 def _ground(
-    curve: _Curve, ticks: Sequence[tuple[float, float]], height: float, x: Scale, zero: float
+    curve: Curve, ticks: Sequence[tuple[float, float]], height: float, x: Scale, zero: float
 ) -> Layers:
     """Draw the round numbers of the height, zero, and what the ranks run from and to."""
     edge = x.track[0] - 6
@@ -332,7 +205,7 @@ def _ground(
     ]
 
 
-def _panel(curve: _Curve, y: Any, height: float, x: Scale) -> Layers:
+def _panel(curve: Curve, y: Any, height: float, x: Scale) -> Layers:
     """Draw the estimates over their intervals."""
     layers: Layers = []
     for kept, colour in ((False, "#E9CC9B"), (True, "#9CC0BF")):
@@ -352,7 +225,7 @@ def _panel(curve: _Curve, y: Any, height: float, x: Scale) -> Layers:
     return layers
 
 
-def _outcomes(curve: _Curve, strips: tuple[str, str], height: float, x: Scale) -> Layers:
+def _outcomes(curve: Curve, strips: tuple[str, str], height: float, x: Scale) -> Layers:
     """Draw, on two lines, which of the drawn specifications survive, with the counts of all."""
     layers: Layers = []
     for line, (kept, colour) in enumerate(((True, SURVIVES), (False, FAILS))):
@@ -367,13 +240,13 @@ def _outcomes(curve: _Curve, strips: tuple[str, str], height: float, x: Scale) -
     return layers
 
 
-def _stroke(curve: _Curve, x: Scale) -> float:
+def _stroke(curve: Curve, x: Scale) -> float:
     """Return the width of a stroke: most of what a specification has, at most four pixels."""
     return min(0.7 * (x.track[1] - x.track[0]) / len(curve.drawn), 4.0)
 
 
 def _choices(
-    curve: _Curve, arranged: Arrangement, height: float, x: Scale, across: float
+    curve: Curve, arranged: Arrangement, height: float, x: Scale, across: float
 ) -> Layers:
     """Draw, on one line a choice, which of the drawn specifications make it."""
     heads = [{"y": group.middle, "text": group.text} for group in arranged.groups]
@@ -406,7 +279,7 @@ def _choices(
 
 
 def _baseline(
-    curve: _Curve, y: Any, arranged: Arrangement, height: float, x: Scale
+    curve: Curve, y: Any, arranged: Arrangement, height: float, x: Scale
 ) -> Layers:
     """Mark the baseline by its diamond and a line down through its choices."""
     row = curve.baseline
@@ -421,7 +294,7 @@ def _baseline(
     ]
 
 
-def _pointed(curve: _Curve, height: float, x: Scale) -> Layers:
+def _pointed(curve: Curve, height: float, x: Scale) -> Layers:
     half = 0.5 / len(curve.drawn)
     axes = ("lags", "deterministics", "window", "transformation", "test", "conditioning",
             "measures")  # fmt: skip
@@ -451,7 +324,7 @@ def numbers(
     frame = frames["curve"]
     if frame.empty:
         return frame
-    own = frame[frame["scale"] == _asked(frame, scale)]
+    own = frame[frame["scale"] == scale_asked(frame, scale)]
     return own.drop(columns="baseline_scale").reset_index(drop=True)
 
 
@@ -459,7 +332,7 @@ def describe(
     frames: Mapping[str, pd.DataFrame], context: Context, scale: str | None = None
 ) -> str:
     """Say in words what the figure shows."""
-    curve = _curve(frames["curve"], context.significance, scale, _MOST["wide"])
+    curve = curve_of(frames["curve"], context.significance, scale, _MOST["wide"])
     words = [f"Specification curve. {context.lead}"]
     if curve is None:
         return " ".join([*words, _NOTHING, context.losses])

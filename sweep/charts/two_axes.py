@@ -2,16 +2,13 @@
 
 from __future__ import annotations
 
-import itertools
 from collections.abc import Iterator, Mapping, Sequence
 from typing import Any
 
 import pandas as pd
 
-from sweep.errors import Fault, InputFault
-from sweep.plan.suggest import suggestion
 from sweep.verdicts.survival import OVERALL, counts_of
-from sweep.verdicts.words import counted, joined, percent, share_text
+from sweep.verdicts.words import counted, percent, share_text
 
 from . import marks
 from .arrangement import Row
@@ -20,6 +17,7 @@ from .grid import Cell, Column, Grid, place_grid
 from .layout import text_width
 from .legend import tint_legend
 from .marks import Layers, Scale, Specification
+from .pairs import chosen_pair, strength_words
 from .theme import ABSENT, BASELINE, HAIRLINE, INK, QUIET, SCREENED, SMALL, WIDTHS, tint
 
 __all__ = ["NAME", "NEEDS", "OPTIONS", "QUESTION", "absent", "build", "describe", "numbers"]
@@ -28,8 +26,6 @@ NAME = "two axes"
 QUESTION = "Do two choices act together?"
 NEEDS = ("pair_cells", "survival")
 OPTIONS = ("axes",)
-
-Axes = tuple[str, str]
 
 # A cell is marked where its share is this far from what its row and column alone would give.
 _FAR = 0.10
@@ -40,7 +36,6 @@ _DARK = 0.7
 
 _LINE = SMALL * 1.22
 _FOOT = 20.0
-_NOTHING = 0.0005  # a departure that rounds to nothing
 _NEVER = (
     "The sweep changes one choice at a time, so it cannot show whether two of them act together."
 )
@@ -53,56 +48,6 @@ _TIPS = {
     "weighted": "weighted share",
     "alone": "from row and column alone",
 }
-
-
-def _strengths(cells: pd.DataFrame) -> list[tuple[float, Axes]]:
-    """Return the pairs and how far each departs from its additive fit, the strongest first."""
-    pairs = cells.drop_duplicates(["row_axis", "column_axis"])
-    found = [
-        (float(row["departure"]), (str(row["row_axis"]), str(row["column_axis"])))
-        for row in pairs.to_dict("records")
-    ]
-    # What differs by rounding only stays in plan order.
-    return sorted(found, key=lambda one: -round(one[0], 9))
-
-
-def _chosen(
-    cells: pd.DataFrame, axes: Sequence[str] | None
-) -> tuple[pd.DataFrame, Axes, list[tuple[float, Axes]]]:
-    """Return the cells of the pair that is asked for, or of the one that acts together most.
-
-    Raises
-    ------
-    InputFault
-        If the axes asked for are no pair of this finding.
-    """
-    order = _strengths(cells)
-    pair = order[0][1]
-    if axes is not None:
-        pair = _asked(tuple(axes), [one for _, one in order])
-    own = cells[(cells["row_axis"] == pair[0]) & (cells["column_axis"] == pair[1])]
-    return own, pair, order
-
-
-def _asked(axes: tuple[str, ...], pairs: list[Axes]) -> Axes:
-    """Return the pair that is meant, whichever axis is named first."""
-    varying = list(dict.fromkeys(itertools.chain.from_iterable(pairs)))
-    if len(axes) != 2 or axes[0] == axes[1]:
-        raise InputFault(
-            Fault("axes", "two different axes are needed", f"Choose from {joined(varying)}.")
-        )
-    unknown = [axis for axis in axes if axis not in varying]
-    if unknown:
-        raise InputFault(
-            *(
-                Fault(
-                    "axes",
-                    f'no axis "{axis}" with several choices' + suggestion(axis, varying),
-                )
-                for axis in unknown
-            )
-        )
-    return next(pair for pair in pairs if set(pair) == set(axes))
 
 
 def _subtitle(context: Context, words: str, grid: Grid) -> str:
@@ -139,31 +84,6 @@ def _subtitle(context: Context, words: str, grid: Grid) -> str:
             f"Of {grid.columns_axis}, {shown:,} of {shown + grid.hidden:,} choices have a column."
         )
     return " ".join(one for one in said if one)
-
-
-def _strength_words(pair: Axes, order: list[tuple[float, Axes]]) -> str:
-    """Say how strongly the pair acts together, and where it stands among all pairs."""
-    place = next(number for number, (_, one) in enumerate(order, start=1) if one == pair)
-    value = order[place - 1][0]
-    if order[0][0] < _NOTHING:
-        return f"Shown are {_named(pair)}; no pair of axes departs from adding up."
-    points = f"{100 * value:.1f} points (weighted root mean square)"
-    words = f"Shown are {_named(pair)}, whose cells depart from adding up by {points}"
-    if len(order) == 1:
-        return f"{words}; no other pair varies."
-    if place == 1:
-        return (
-            f"{words}, the most of {len(order):,} pairs; next: {_named(order[1][1])}, "
-            f"{100 * order[1][0]:.1f}."
-        )
-    return (
-        f"{words}, number {place:,} of {len(order):,} pairs; the most: {_named(order[0][1])}, "
-        f"{100 * order[0][0]:.1f}."
-    )
-
-
-def _named(pair: Axes) -> str:
-    return f"{pair[0]} and {pair[1]}"
 
 
 def absent(frames: Mapping[str, pd.DataFrame]) -> str:
@@ -203,7 +123,7 @@ def build(
     if nothing:
         said = f"{context.lead} {context.losses}"
         return marks.without_marks(nothing, width, QUESTION, said)
-    own, pair, order = _chosen(frames["pair_cells"], axes)
+    own, pair, order = chosen_pair(frames["pair_cells"], axes)
     grid = place_grid(own, width)
     height, across = grid.arranged.height + _FOOT, float(WIDTHS[width])
     drawn = list(_drawn(grid))
@@ -219,7 +139,7 @@ def build(
         width,
         height,
         QUESTION,
-        _subtitle(context, _strength_words(pair, order), grid),
+        _subtitle(context, strength_words(pair, order), grid),
     )
 
 
@@ -394,7 +314,7 @@ def numbers(
 ) -> pd.DataFrame:
     """Return the cells of the pair that is drawn, as the store counts them."""
     cells = frames["pair_cells"]
-    return cells if cells.empty else _chosen(cells, axes)[0].reset_index(drop=True)
+    return cells if cells.empty else chosen_pair(cells, axes)[0].reset_index(drop=True)
 
 
 def describe(
@@ -406,8 +326,8 @@ def describe(
     nothing = absent(frames)
     if nothing:
         return " ".join([*words, nothing, context.losses])
-    own, pair, order = _chosen(cells, axes)
-    words.append(_strength_words(pair, order))
+    own, pair, order = chosen_pair(cells, axes)
+    words.append(strength_words(pair, order))
     known = own[own["expected"].notna()]
     gaps = (known["share"].astype(float) - known["expected"].astype(float)).sort_values(
         key=abs, ascending=False, kind="stable"
