@@ -337,6 +337,9 @@ def _config(memory_limit: str, threads: int | None) -> dict[str, Any]:
         # A store needs no extension, and a lookup for one must never reach the network.
         "autoinstall_known_extensions": False,
         "autoload_known_extensions": False,
+        # Our views join the large table to small dictionaries, in this order; DuckDB takes the
+        # large one for a single row, would hold it in memory and fail at a million rows.
+        "disabled_optimizers": "build_side_probe_side",
     }
 
 

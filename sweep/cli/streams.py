@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import json
 import math
+import re
 import unicodedata
 from collections.abc import Callable, Iterator
 from datetime import date, datetime
@@ -20,6 +21,7 @@ Portions = Iterator[Rows]
 
 WIDEST = 60
 """Letters to which a column of a table is aligned at the most; longer cells are not cut."""
+_QUOTED = re.compile('[,"\n\r]')
 # Leading characters that spreadsheets take for a formula.
 _FORMULA = ("=", "+", "-", "@", "\t", "\r", "\n")
 
@@ -132,10 +134,14 @@ def _field(value: Any) -> str:
     """Write one field of CSV; a text that a spreadsheet would run gets an apostrophe."""
     if value is None:
         return ""
-    text = _text(value)
-    if not _number(value) and text.startswith(_FORMULA):
+    if type(value) is float:
+        return repr(value)
+    if type(value) is int:
+        return str(value)
+    text = value if type(value) is str else _text(value)
+    if text.startswith(_FORMULA) and not _number(value):
         text = "'" + text
-    if text == "" or any(sign in text for sign in ',"\n\r'):
+    if text == "" or _QUOTED.search(text):
         return '"' + text.replace('"', '""') + '"'
     return text
 

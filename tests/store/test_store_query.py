@@ -12,6 +12,7 @@ import pytest
 import small_plans
 
 import sweep
+from store.database import open_reading
 from store.errors import QueryFault
 from sweep.results import Results
 
@@ -168,6 +169,20 @@ def test_a_fault_halfway_is_told_too(results: Results) -> None:
     ):
         for _ in portions:
             pass
+
+
+def test_the_view_of_a_large_sweep_is_not_held_in_memory(tmp_path: Path) -> None:
+    """367,000 rows with their names pass through a limit of 45 MB, a sixth of what they take."""
+    tail = '[axes]\nlags = [1, 2, "AIC"]\nwindows = ["full sample", { rolling = 60 }]'
+    large = sweep.run(small_plans.write_plan(tmp_path, tail), jobs=1).store
+    with duckdb.connect(str(large)) as connection:
+        connection.execute(
+            "INSERT INTO outcome SELECT o.* REPLACE (o.spec_low // 2 + range AS spec_low) "
+            "FROM outcome AS o, range(1200)"
+        )
+    with open_reading(large, memory_limit="45MB", confined=True) as database:
+        _, portions = database.stream("FROM outcomes")
+        assert sum(len(rows) for rows in portions) == 1201 * 3 * (1 + 101)
 
 
 @pytest.mark.skipif(
