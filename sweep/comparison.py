@@ -326,7 +326,7 @@ def compare_windows(results: Results, finding: str | None = None) -> Comparison:
         If the sweep has no moving window, or no finding of that name.
     """
     from sweep.charts import episodes as chart
-    from sweep.charts.context import context_of
+    from sweep.charts.context import context_of, frequency_of
     from sweep.report import side_by_side as tables
     from sweep.report.tables import TABLES
 
@@ -353,13 +353,15 @@ def compare_windows(results: Results, finding: str | None = None) -> Comparison:
                 {str(key): value for key, value in records[name].items()}, survival,
                 significance=float(results.info["significance"]),
                 title=str(results.info["title"]), design=str(results.info["design"]),
+                frequency=frequency_of(results.info),
             )  # fmt: skip
             frames = {"window_paths": paths}
             found[name] = {"paths": paths, "pairs": pairs, "episodes": runs}
             summary.append((name, tuple(window_sentences(paths, pairs, runs))))
             drawn[name] = [(chart.build(frames, context), chart.describe(frames, context))]
             laid[name] = [
-                TABLES["episodes"].build(frames, context), tables.pairs_table(pairs, name),
+                TABLES["episodes"].build(frames, context).dated(context.frequency),
+                tables.pairs_table(pairs, name),
             ]  # fmt: skip
     joined = {part: _with_finding(found, part) for part in ("paths", "pairs", "episodes")}
     title = f"Moving windows of sweep {results.sweep} side by side"

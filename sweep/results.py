@@ -128,11 +128,12 @@ class Results(StoredSweep):
         return draw_chart(known, frames, self._context(number, frames), width, options)
 
     def _context(self, number: int, frames: dict[str, pd.DataFrame]) -> Context:
-        from sweep.charts.context import context_of
+        from sweep.charts.context import context_of, frequency_of
 
         return context_of(
             self._record(number), frames["survival"], significance=float(self.info["significance"]),
             title=str(self.info["title"]), design=str(self.info["design"]),
+            frequency=frequency_of(self.info),
         )  # fmt: skip
 
     def table(
@@ -178,7 +179,8 @@ class Results(StoredSweep):
             specification = str(frames["baseline"]["specification"].iloc[0])
             path = None if data is None else Path(data)
             frames["lag_selection"] = lag_selection(self, number, specification, path)
-        table = module.build(frames, self._context(number, frames))
+        context = self._context(number, frames)
+        table = module.build(frames, context).dated(context.frequency)
         if module is long_list:
             table = replace(table, stream=partial(self._long_list, number))
         table = table.with_stars() if stars else table

@@ -2,17 +2,18 @@
 
 from __future__ import annotations
 
+import json
 from collections.abc import Mapping
 from dataclasses import dataclass
 from typing import TYPE_CHECKING, Any
 
 from sweep.verdicts.survival import Counts, losses_sentence, overall
-from sweep.verdicts.words import level_text
+from sweep.verdicts.words import level_text, period_text
 
 if TYPE_CHECKING:
     import pandas as pd
 
-__all__ = ["Context", "baseline_record", "claim_sentence", "context_of"]
+__all__ = ["Context", "baseline_record", "claim_sentence", "context_of", "frequency_of"]
 
 
 @dataclass(frozen=True, slots=True)
@@ -37,6 +38,8 @@ class Context:
         Source of the data in words; may be empty.
     claim : str
         The claim's kind, as the plan names it.
+    frequency : str
+        How often the series are observed; empty where that is not known.
     """
 
     title: str
@@ -47,6 +50,11 @@ class Context:
     design: str = "full"
     data_note: str = ""
     claim: str = "leads"
+    frequency: str = ""
+
+    def period(self, value: Any) -> str:
+        """Write a date as the data's own periods are called, such as ``1980-Q3``."""
+        return period_text(value, self.frequency)
 
     @property
     def level(self) -> str:
@@ -129,6 +137,11 @@ def baseline_record(baseline: pd.DataFrame) -> Mapping[str, Any]:
     return {str(name): value for name, value in baseline.iloc[0].items()}
 
 
+def frequency_of(info: Mapping[str, Any]) -> str:
+    """Return the frequency of the data from a sweep's record, empty where it is not noted."""
+    return str(json.loads(str(info["data_note"])).get("frequency", ""))
+
+
 def context_of(
     finding: Mapping[str, Any],
     survival: pd.DataFrame,
@@ -137,6 +150,7 @@ def context_of(
     title: str,
     design: str = "full",
     data_note: str = "",
+    frequency: str = "",
 ) -> Context:
     """Build the context of one finding from its record and its survival frame.
 
@@ -148,7 +162,7 @@ def context_of(
         The survival frame of this finding.
     significance : float
         The plan's level.
-    title, design, data_note : str
+    title, design, data_note, frequency : str
         From the sweep's record.
 
     Raises
@@ -165,4 +179,5 @@ def context_of(
         design=design,
         data_note=data_note,
         claim=str(finding["claim"]),
+        frequency=frequency,
     )

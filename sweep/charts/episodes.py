@@ -50,7 +50,13 @@ def _step(days: list[float]) -> float:
     return gaps[len(gaps) // 2] if gaps else 30.0
 
 
-def _bars(frame: pd.DataFrame, runs: pd.DataFrame, names: list[str]) -> list[dict[str, Any]]:
+def _ends(row: Any, context: Context) -> str:
+    return f"{context.period(row['first_end'])} to {context.period(row['last_end'])}"
+
+
+def _bars(
+    frame: pd.DataFrame, runs: pd.DataFrame, names: list[str], context: Context
+) -> list[dict[str, Any]]:
     """Return the drawn episodes, from the step before the first last date to the last one."""
     bars = []
     for number, name in enumerate(names):
@@ -68,7 +74,7 @@ def _bars(frame: pd.DataFrame, runs: pd.DataFrame, names: list[str]) -> list[dic
                     "y": place + inset, "y2": place + _ROW - inset,
                     "fill": _FILLS[row["state"]], "window": name, "basis": row["basis"],
                     "state": row["state"],
-                    "dates": f"{str(row['first_end'])[:10]} to {str(row['last_end'])[:10]}",
+                    "dates": _ends(row, context),
                     "size": f"{row['positions']:,}",
                     "p": f"{p_text(row['lowest_p'])} to {p_text(row['highest_p'])}",
                 }
@@ -101,7 +107,7 @@ def build(
         return marks.without_marks(_NONE, width, QUESTION, said)
     names = _names(frame)
     runs = episodes(frame)
-    bars = _bars(frame, runs, names)
+    bars = _bars(frame, runs, names, context)
     across = WIDTHS[width]
     track = (_LEFT[width], across - 4.0)
     height = _TOP + len(names) * (_HEAD + 2 * _ROW + _AFTER) + 30
@@ -192,7 +198,7 @@ def describe(frames: Mapping[str, pd.DataFrame], context: Context) -> str:
         for basis in BASES:
             held = own[(own["basis"] == basis) & (own["state"] == "holds")]
             spans = [
-                f"{str(row['first_end'])[:10]} to {str(row['last_end'])[:10]}"
+                _ends(row, context)
                 for row in held.head(8).to_dict("records")
             ]
             more = f" and {len(held) - 8} more" if len(held) > 8 else ""

@@ -8,7 +8,7 @@ from typing import Any
 import pandas as pd
 
 from sweep.verdicts.flips import pair_sentence, positions, step_words, turned_by
-from sweep.verdicts.words import counted, missing, number, p_text, period_text
+from sweep.verdicts.words import counted, missing, number, p_text
 
 from . import marks, p_track
 from .arrangement import Arrangement, Record, Row, arrange, label_room
@@ -76,7 +76,7 @@ def _words(record: Record, width: str) -> str:
 
 def _record(row: Row, context: Context, width: str) -> dict[str, Any]:
     record = row.record
-    dates = [period_text(record["window_start"]), period_text(record["window_end"])]
+    dates = [context.period(record["window_start"]), context.period(record["window_end"])]
     alone = [record["first_p_value"], record["second_p_value"]]
     return p_track.track_row(record, row.middle) | {
         "choice": str(record["choice"]),

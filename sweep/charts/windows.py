@@ -7,7 +7,7 @@ from typing import Any
 
 import pandas as pd
 
-from sweep.verdicts.words import counted, missing, p_text, percent, period_text, share_text
+from sweep.verdicts.words import counted, missing, p_text, percent, share_text
 
 from . import marks
 from .context import Context
@@ -40,7 +40,7 @@ _TIPS = {
 }
 
 
-def _cells(strip: Strip) -> list[dict[str, Any]]:
+def _cells(strip: Strip, context: Context) -> list[dict[str, Any]]:
     """Return the tinted cells of a strip with the words of their tooltips."""
     found = []
     for row, (start, end) in zip(strip.records, strip.spans, strict=True):
@@ -54,8 +54,8 @@ def _cells(strip: Strip) -> list[dict[str, Any]]:
                 "to": end,
                 "fill": tint(float(row["share"])),
                 "window": strip.name,
-                "first": period_text(row["window_start"]),
-                "last": period_text(row["window_end"]),
+                "first": context.period(row["window_start"]),
+                "last": context.period(row["window_end"]),
                 "counts": share_text(int(row["survived"]), int(row["admissible"])),
                 "median": p_text(row["median_p"]),
                 "quartiles": f"{p_text(row['p_low'])} to {p_text(row['p_high'])}",
@@ -127,7 +127,7 @@ def build(
         [
             *tint_legend(height, across),
             *_ground(strips, height, track, width),
-            *_strips(strips, height, track),
+            *_strips(strips, height, track, context),
             *_left_out(strips, height, track),
             *_names(strips, height, across),
             *_values(strips, height, track, context),
@@ -177,9 +177,11 @@ def _ground(
     return layers + marks.areas(ground, height, x, "to", colour=WASH)
 
 
-def _strips(strips: list[Strip], height: float, track: tuple[float, float]) -> Layers:
+def _strips(
+    strips: list[Strip], height: float, track: tuple[float, float], context: Context
+) -> Layers:
     x = _scale("day", strips, track)
-    cells = [cell for strip in strips for cell in _cells(strip)]
+    cells = [cell for strip in strips for cell in _cells(strip, context)]
     empty = [dot for strip in strips for dot in _empty(strip)]
     outline = [
         {"y": s.bottom, "day": s.spans[0][0], "to": s.spans[-1][1]} for s in strips if s.spans
@@ -290,12 +292,12 @@ def describe(frames: Mapping[str, pd.DataFrame], context: Context) -> str:
         low = int((good["median_p"].astype(float) <= context.significance).sum())
         words.append(
             f"{name}: {counts} in {counted(len(rows), 'position')}; the share runs from "
-            f"{percent(float(worst['share']))} (window {_dates(worst)}) to "
-            f"{percent(float(best['share']))} (window {_dates(best)}); the median p-value is at "
-            f"or below the level in {low:,} of {counted(len(good), 'position')}."
+            f"{percent(float(worst['share']))} (window {_dates(worst, context)}) to "
+            f"{percent(float(best['share']))} (window {_dates(best, context)}); the median p-value "
+            f"is at or below the level in {low:,} of {counted(len(good), 'position')}."
         )
     return " ".join(words)
 
 
-def _dates(row: Any) -> str:
-    return f"{period_text(row['window_start'])} to {period_text(row['window_end'])}"
+def _dates(row: Any, context: Context) -> str:
+    return f"{context.period(row['window_start'])} to {context.period(row['window_end'])}"

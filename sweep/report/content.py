@@ -8,7 +8,7 @@ from dataclasses import dataclass, field
 from typing import TYPE_CHECKING, Any
 
 from sweep.charts import CHARTS, chart
-from sweep.charts.context import Context, baseline_record, context_of
+from sweep.charts.context import Context, baseline_record, context_of, frequency_of
 from sweep.verdicts import directions, effects, flips, reproduction, survival
 from sweep.verdicts.answers import answer_sentences
 from sweep.verdicts.words import joined, missing, p_text, percent, reason_text
@@ -273,6 +273,7 @@ def content_of(
             title=str(info["title"]),
             design=str(info["design"]),
             data_note=note,
+            frequency=frequency_of(info),
         )
         said = tuple((redundancies or {}).get(number, ()))
         found.append(FindingContent(record, context, own, said))

@@ -8,7 +8,7 @@ them back.  A page then holds some tens of kilobytes a finding.
 from __future__ import annotations
 
 import math
-from collections.abc import Iterator, Mapping, Sequence
+from collections.abc import Callable, Iterator, Mapping, Sequence
 from typing import TYPE_CHECKING, Any
 
 import numpy as np
@@ -17,7 +17,7 @@ from sweep.charts.context import Context
 from sweep.charts.strips import day_number, spans, year_ticks
 from sweep.charts.theme import TINTS
 from sweep.verdicts import directions
-from sweep.verdicts.words import level_text, period_text
+from sweep.verdicts.words import level_text
 
 if TYPE_CHECKING:
     import pandas as pd
@@ -149,6 +149,7 @@ def chooser(frames: Mapping[str, pd.DataFrame], context: Context) -> dict[str, A
             choices["window"]["choice"].astype(str).tolist(),
             _left_out(frames["windows"]),
             tails,
+            context.period,
         ),
     }
 
@@ -223,6 +224,7 @@ def _over_time(
     names: Sequence[str],
     left_out: Mapping[str, list[list[float]]],
     tails: Sequence[str],
+    period: Callable[[Any], str],
 ) -> dict[str, Any] | None:
     """Write the window entries with their positions, and the crosses of the other axes."""
     if frame.empty:
@@ -234,7 +236,7 @@ def _over_time(
         rows = positions[positions["window"] == window]
         choice = int(np.searchsorted(entries, window))
         gaps = left_out.get(names[choice], [])
-        drawn.append(_entry(choice, names[choice], gaps, rows.to_dict("records")))
+        drawn.append(_entry(choice, names[choice], gaps, rows.to_dict("records"), period))
     keys = positions["window"].to_numpy() * len(frame) + positions["pool"].to_numpy()
     crosses = []
     for held, cells in _crosses(frame, [axis for axis in axes if axis != "window"]):
@@ -278,8 +280,9 @@ def _left_out(windows: pd.DataFrame) -> dict[str, list[list[float]]]:
 
 
 def _entry(
-    choice: int, name: str, gaps: list[list[float]], records: list[dict[Any, Any]]
-) -> dict[str, Any]:
+    choice: int, name: str, gaps: list[list[float]], records: list[dict[Any, Any]],
+    period: Callable[[Any], str],
+) -> dict[str, Any]:  # fmt: skip
     """Write one window entry: its dates, what it covers across, and the gaps of a fixed one."""
     kind = str(records[0]["entry_kind"])
     return {
@@ -290,7 +293,7 @@ def _entry(
         "gaps": gaps if kind == "fixed" else [],
         "spans": [list(span) for span in spans(kind, records)],
         "dates": [
-            [period_text(record["window_start"]), period_text(record["window_end"])]
+            [period(record["window_start"]), period(record["window_end"])]
             for record in records
         ],
     }

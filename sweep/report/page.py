@@ -149,6 +149,7 @@ def _tabled(table: Table, context: Context) -> Tabled:
     notes = " ".join(table.notes)
     for said in (context.lead, context.losses):
         notes = notes.replace(said, "")
+    table = table.dated(context.frequency)
     short = replace(table, title=title, notes=tuple(filter(None, [" ".join(notes.split())])))
     short = short.first(min(table.page_rows or _MOST_ROWS, _MOST_ROWS))
     return Tabled(title, len(short.rows), Markup(as_html(short)))

@@ -4,7 +4,10 @@ from __future__ import annotations
 
 import math
 from collections.abc import Iterable
+from datetime import date
 from typing import Any
+
+from sweep.panel.periods import period_label
 
 __all__ = [
     "MISSING",
@@ -184,9 +187,24 @@ def level_text(level: float) -> str:
     return f"{100 * level:.6g}%"
 
 
-def period_text(value: Any) -> str:
-    """Write a date as an ISO day, whatever kind of date a frame holds."""
-    return MISSING if missing(value) else str(value)[:10]
+def period_text(value: Any, frequency: str = "") -> str:
+    """Write a date, whatever kind of date a frame holds.
+
+    Parameters
+    ----------
+    value : date or None
+    frequency : str
+        Frequency of the data, by which periods are named; an ISO day where it is empty.
+
+    Examples
+    --------
+    >>> period_text("1980-07-01 00:00:00"), period_text("1980-07-01", "quarterly")
+    ('1980-07-01', '1980-Q3')
+    """
+    if missing(value):
+        return MISSING
+    day = str(value)[:10]
+    return period_label(date.fromisoformat(day), frequency) if frequency else day
 
 
 def reason_text(status: Any, reason: Any) -> str:

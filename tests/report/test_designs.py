@@ -1,5 +1,6 @@
 """The report of sweeps that are not the full cross."""
 
+import re
 from pathlib import Path
 
 import pytest
@@ -36,3 +37,24 @@ def test_the_report_of_every_design_is_written(tmp_path: Path, design: str, rows
         assert "the weighted share runs" not in text
     else:
         assert "sampling interval" in text
+
+
+def test_dates_are_called_as_the_data_call_their_periods(tmp_path: Path) -> None:
+    """Months by month in the report and its tables; data files keep days."""
+    results = sweep.run(small_plans.write_plan(tmp_path, AXES + '"full"'), jobs=1)
+    text = results.report(tmp_path / "page.html").read_text(encoding="utf-8")
+    assert "full sample (1990-01 to 2003-04)" in text
+    assert "1990-01-01" not in text
+    assert not re.search(r"\d{4}-\d\d-\d\d", re.sub(r'<dd>[^<]*</dd>|"[^"]*"', "", _seen(text)))
+    printed = results.table("shortest flips").text("markdown")
+    flips = results.content().findings[0].frames["shortest_flips"]
+    assert not flips.empty
+    assert f"{flips['window_start'].iloc[0]:%Y-%m} " in printed
+    assert f"{flips['window_start'].iloc[0]:%Y-%m-%d}" not in printed
+    data = results.table("shortest flips").text("csv")
+    assert f"{flips['window_start'].iloc[0]:%Y-%m-%d}" in data
+
+
+def _seen(page: str) -> str:
+    """Return a page without its scripts, styles and drawings."""
+    return re.sub(r"(?s)<(script|style|svg)\b.*?</\1>", "", page)

@@ -7,7 +7,7 @@ from collections.abc import Mapping
 from typing import TYPE_CHECKING, Any
 
 from sweep.charts.context import baseline_record
-from sweep.verdicts.words import missing, period_text, reason_text
+from sweep.verdicts.words import missing, reason_text
 
 from .model import Column, Table, Target, pooled
 
@@ -102,11 +102,11 @@ def _outcome(record: Mapping[Any, Any]) -> str:
     return "holds" if kept else "does not hold"
 
 
-def _shared(record: Mapping[Any, Any]) -> dict[str, Any]:
+def _shared(record: Mapping[Any, Any], context: Context) -> dict[str, Any]:
     """Return what both directions of a specification have in common."""
     axis = str(record["axis"])
     meaning = json.loads(record["test_meaning"])
-    dates = f"{period_text(record['window_start'])} to {period_text(record['window_end'])}"
+    dates = f"{context.period(record['window_start'])} to {context.period(record['window_end'])}"
     return {
         "change": "baseline" if axis == "baseline" else f"{axis}: {record[_AXES[axis]]}",
         "lags": _lags(record),
@@ -146,7 +146,7 @@ def build(frames: Mapping[str, pd.DataFrame], context: Context) -> Table:
         for record in frames["alternatives"].to_dict("records"):
             cells = {str(name): value for name, value in record.items()}
             cells |= {"hypothesis": hypothesis, "direction": direction}
-            cells |= _shared(record) | _side(record, direction)
+            cells |= _shared(record, context) | _side(record, direction)
             rows.append(tuple(cells[column.field] for column in _COLUMNS))
     notes = [
         f"{context.lead} Each row changes one choice of the baseline and keeps all others. Lags: "

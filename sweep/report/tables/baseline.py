@@ -6,7 +6,7 @@ from collections.abc import Mapping
 from typing import TYPE_CHECKING, Any
 
 from sweep.charts.context import baseline_record
-from sweep.verdicts.words import fixed, missing, number, p_text, period_text, reason_text
+from sweep.verdicts.words import fixed, missing, number, p_text, reason_text
 
 from .model import Column, Table
 
@@ -31,8 +31,8 @@ def _law(row: Mapping[str, Any]) -> str:
     return f"F({int(row['df_num'])}, {int(row['df_den'])})"
 
 
-def _window(row: Mapping[str, Any]) -> str:
-    dates = f"{period_text(row['window_start'])} to {period_text(row['window_end'])}"
+def _window(row: Mapping[str, Any], context: Context) -> str:
+    dates = f"{context.period(row['window_start'])} to {context.period(row['window_end'])}"
     return f"{row['window_name']} ({dates})"
 
 
@@ -45,7 +45,7 @@ def build(frames: Mapping[str, pd.DataFrame], context: Context) -> Table:
     lines = [
         ("Lags", f"{row['lags_choice']}{order}"),
         ("Deterministic terms", row["deterministics"]),
-        ("Window, before lags are taken", _window(row)),
+        ("Window, before lags are taken", _window(row, context)),
         ("Transformation", row["transformation"]),
         ("Test", row["test"]),
         ("Conditioning", row["conditioning"]),

@@ -51,6 +51,8 @@ class Column:
         scrolls, and a data file wants parts that print puts into one cell.
     starred : bool
         Whether its p-values are those of tests, which get stars where they are asked for.
+    frequency : str
+        Frequency by which its dates are named for readers; ISO days where it is empty.
     """
 
     heading: str
@@ -58,6 +60,7 @@ class Column:
     name: str = ""
     within: tuple[Target, ...] = _EVERYWHERE
     starred: bool = False
+    frequency: str = ""
 
     @property
     def field(self) -> str:
@@ -71,6 +74,8 @@ class Column:
 
     def text(self, value: Any) -> str:
         """Write one of its values the way people read it."""
+        if self.kind == "date":
+            return period_text(value, self.frequency)
         return cell_text(value, self.kind)
 
 
@@ -173,6 +178,14 @@ class Table:
             rows=tuple(pick(self.rows)),
             stream=None if stream is None else lambda: pick(stream()),
         )
+
+    def dated(self, frequency: str) -> Table:
+        """Return the table with dates named as the data's own periods; data files keep days."""
+        columns = tuple(
+            replace(column, frequency=frequency) if column.kind == "date" else column
+            for column in self.columns
+        )
+        return replace(self, columns=columns)
 
     def first(self, rows: int | None) -> Table:
         """Return the table with its first rows, the count left out said in the notes.

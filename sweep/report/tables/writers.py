@@ -62,7 +62,7 @@ def _html_row(row: tuple[Any, ...], columns: tuple[Column, ...]) -> str:
     """Write one row; its first cell heads it."""
     cells = []
     for number, (value, column) in enumerate(zip(row, columns, strict=True)):
-        text = escape(cell_text(value, column.kind))
+        text = escape(column.text(value))
         if number:
             cells.append(f"<td{_side(column)}>{text}</td>")
         else:
