@@ -8,6 +8,7 @@ from pathlib import Path
 
 from sweep.errors import Fault, InputFault
 from sweep.plan.suggest import suggestion
+from sweep.writing import may_replace, usable_folder
 
 __all__ = ["EXAMPLES", "copy_example"]
 
@@ -16,6 +17,10 @@ EXAMPLES = {
     "us_macro": ("us_macro.toml", "us_macro_referees.toml", "data/us_macro.csv"),
     "harbour": ("harbour.toml", "harbour_referees.toml", "data/harbour.csv", "harbour.ipynb"),
 }
+
+
+# Ending of a shipped file, and the kind of file that it may replace.
+_KINDS = {".toml": "toml", ".csv": "csv", ".ipynb": "json"}
 
 
 def examples_folder() -> Path:
@@ -33,7 +38,8 @@ def copy_example(name: str, folder: Path, *, overwrite: bool = False) -> list[Pa
     Raises
     ------
     InputFault
-        If there is no such example, or a file is there already.
+        If there is no such example, a file is there already (with ``overwrite`` one of another
+        kind), or the folder cannot be written into.
     """
     if name not in EXAMPLES:
         raise InputFault(
@@ -48,7 +54,11 @@ def copy_example(name: str, folder: Path, *, overwrite: bool = False) -> list[Pa
                       "Choose another folder with --output, or give --overwrite.")
             )
     for source, target in pairs:
-        target.parent.mkdir(parents=True, exist_ok=True)
+        usable_folder(target.parent)
+        with (examples_folder() / source).open(encoding="utf-8") as file:
+            header = file.readline().strip()
+        may_replace(target, _KINDS[target.suffix], header=header)
+    for source, target in pairs:
         shutil.copyfile(examples_folder() / source, target)
         written.append(target)
     return written

@@ -11,7 +11,7 @@ from sweep.charts import CHARTS, chart
 from sweep.charts.context import Context, baseline_record, context_of, frequency_of
 from sweep.verdicts import directions, effects, flips, reproduction, survival
 from sweep.verdicts.answers import answer_sentences
-from sweep.verdicts.words import joined, missing, p_text, percent, reason_text
+from sweep.verdicts.words import counted, joined, missing, p_text, percent, reason_text
 
 from . import cube
 from .notes import CAUTIONS, METHOD_NOTES, Note
@@ -185,8 +185,9 @@ def summary(finding: FindingContent) -> list[str]:
     sentences.append(survival.losses_sentence(counts))
     if counts.other_sign:
         sentences.append(
-            f"In {counts.other_sign:,} rows the test rejects but the sum of the coefficients has "
-            "the other sign; they do not count as survived."
+            f"In {counted(counts.other_sign, 'row')} the test rejects but the sum of the "
+            "coefficients has the other sign; "
+            f"{'it does' if counts.other_sign == 1 else 'they do'} not count as survived."
         )
     sentences += [
         flips.single_sentence(frames["single_changes"], holds),

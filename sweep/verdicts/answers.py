@@ -5,7 +5,7 @@ from __future__ import annotations
 from typing import TYPE_CHECKING, Any
 
 from .flips import positions
-from .words import missing, p_text, percent, reason_text, share_text
+from .words import counted, missing, p_text, percent, reason_text, share_text
 
 if TYPE_CHECKING:
     import pandas as pd
@@ -91,7 +91,7 @@ def _added_words(row: Any) -> str:
     if not int(row["added"]):
         return "It adds no row: all that it asks was planned or had been added."
     added, admissible = int(row["added"]), int(row["admissible"])
-    counts = f"It adds {added:,} rows to the sweep, {admissible:,} admissible"
+    counts = f"It adds {counted(added, 'row')} to the sweep, {admissible:,} admissible"
     if not admissible:
         return f"{counts}. They leave the headline as it is."
     share = share_text(int(row["survived"]), admissible)

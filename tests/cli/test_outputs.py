@@ -105,6 +105,24 @@ def test_places_that_cannot_be_written(
     assert sorted(store.parent.iterdir()) == before
 
 
+def test_an_example_replaces_only_examples(
+    store: Path, monkeypatch: pytest.MonkeyPatch, capsys: pytest.CaptureFixture[str]
+) -> None:
+    monkeypatch.chdir(store.parent)
+    assert call("new", "--example", "harbour") == 0
+    assert call("new", "--example", "harbour", "--overwrite") == 0
+    before = contents(Path("data"))
+    Path("data/harbour.csv").write_bytes(b"month,price\n1990-01,3\n")
+    plan = Path("harbour.toml").read_bytes()
+    Path("harbour.toml").write_bytes(plan + b"# mine\n")
+    assert call("new", "--example", "harbour", "--overwrite") == 2
+    assert "harbour.csv: the file that is there is not such a CSV" in capsys.readouterr().err
+    assert Path("harbour.toml").read_bytes().endswith(b"# mine\n")
+    assert set(contents(Path("data"))) == set(before)
+    assert call("new", "--example", "harbour", "--output", "plan.toml") == 2
+    assert "plan.toml: this is a file. Name a folder." in capsys.readouterr().err
+
+
 def test_python_is_as_careful(store: Path) -> None:
     results = sweep.open_results(store)
     before = contents(store.parent)

@@ -7,7 +7,7 @@ from typing import TYPE_CHECKING, Any
 
 from sweep.charts.context import baseline_record
 from sweep.verdicts.answers import request_name
-from sweep.verdicts.words import missing, reason_text
+from sweep.verdicts.words import counted, missing, reason_text
 
 from .model import Column, Table, pooled
 
@@ -76,7 +76,7 @@ def build(frames: Mapping[str, pd.DataFrame], context: Context) -> Table:
         if record["concerned"] and record["asks"]
     ]
     added = [
-        f"{request_name(record)} added {int(record['added']):,} rows, "
+        f"{request_name(record)} added {counted(int(record['added']), 'row')}, "
         f"{int(record['survived']):,} of {int(record['admissible']):,} admissible ones survive"
         for record in frames["requests"].to_dict("records")
         if record["concerned"]
