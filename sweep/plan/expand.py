@@ -8,8 +8,9 @@ from dataclasses import dataclass, fields
 import numpy as np
 from numpy.typing import NDArray
 
-from sweep.plan.canonical import Token, digest_text, halves, token
+from sweep.plan.canonical import Token, halves, token
 from sweep.plan.choices import AXES
+from sweep.plan.draw import draw
 from sweep.plan.model import Finding, FindingAxis, Plan, Request
 from sweep.plan.tables import Table
 
@@ -88,8 +89,14 @@ def expand_plan(plan: Plan, positions: Sequence[FindingPositions]) -> PlanRows:
     """
     parts: list[PlanRows] = []
     for finding in plan.findings:
-        codes = _design(plan, plan.finding_axes[finding.number])
-        parts.append(_with_positions(plan, finding, codes, positions[finding.number]))
+        axes, held = plan.finding_axes[finding.number], positions[finding.number]
+        if isinstance(plan.document.sweep.design, Table):
+            drawn = draw(plan, finding, [axes], held.counts)
+            codes = np.concatenate([_baseline(axes), drawn.codes])
+            position = np.concatenate([np.zeros(1, np.int32), drawn.position])
+            parts.append(_rows(plan, finding, codes, position, held))
+        else:
+            parts.append(_with_positions(plan, finding, _design(plan, axes), held))
     for request in plan.requests:
         for finding in plan.findings:
             earlier = [part for part in parts if part.finding[:1] == finding.number]
@@ -131,9 +138,14 @@ def _requested(
         )
         for axis in AXES
     }
-    codes = np.unique(np.concatenate([_full(answers), _design(plan, axes, new)]), axis=0)
-    keep = _full(answers)
-    rows = _with_positions(plan, finding, codes, positions, request, keep)
+    if isinstance(plan.document.sweep.design, Table):
+        rows = _with_positions(plan, finding, _full(answers), positions, request)
+        drawn = draw(plan, finding, _blocks(axes, new), positions.counts, request)
+        more = _rows(plan, finding, drawn.codes, drawn.position, positions, request)
+        rows = _joined([rows, more.part(~_present(more, rows))])
+    else:
+        codes = np.unique(np.concatenate([_full(answers), _design(plan, axes, new)]), axis=0)
+        rows = _with_positions(plan, finding, codes, positions, request)
     found = np.zeros(rows.count, bool)
     for part in earlier:
         found |= _present(rows, part)
@@ -171,21 +183,37 @@ def _design(
 
     Where ``new`` is given, only rows that hold one of its codes.
     """
-    design = plan.document.sweep.design
-    make = DESIGNS["full" if isinstance(design, Table) else design]
+    make = DESIGNS[plan.document.sweep.design]
     if new is None:
         return make(axes)
     parts = [np.empty((0, len(AXES)), np.int16)]
-    # Disjoint blocks: the first axis that holds a new code says which block a row is in.
+    for block in _blocks(axes, new):
+        codes = make(block)
+        held = [np.isin(codes[:, n], block[axis].codes) for n, axis in enumerate(AXES)]
+        parts.append(codes[np.all(held, axis=0)])
+    return np.concatenate(parts)
+
+
+def _blocks(
+    axes: Mapping[str, FindingAxis], new: Mapping[str, Sequence[int]]
+) -> list[Mapping[str, FindingAxis]]:
+    """Split the rows that hold a new code into full crosses that share none.
+
+    The first axis on which a row holds a new code says which block it is in.
+    """
+    blocks: list[Mapping[str, FindingAxis]] = []
     held = dict(axes)
     for axis in AXES:
         if new[axis]:
             only = FindingAxis(tuple(new[axis]), axes[axis].baseline)
-            block = make(held | {axis: only})
-            parts.append(block[np.isin(block[:, AXES.index(axis)], new[axis])])
+            blocks.append(held | {axis: only})
             rest = tuple(code for code in axes[axis].codes if code not in new[axis])
             held[axis] = FindingAxis(rest, axes[axis].baseline)
-    return np.concatenate(parts)
+    return blocks
+
+
+def _baseline(axes: Mapping[str, FindingAxis]) -> NDArray[np.int16]:
+    return np.array([[axes[axis].baseline for axis in AXES]], np.int16)
 
 
 def _full(axes: Mapping[str, FindingAxis]) -> NDArray[np.int16]:
@@ -220,54 +248,30 @@ def _with_positions(
     codes: NDArray[np.int16],
     positions: FindingPositions,
     request: Request | None = None,
-    always: NDArray[np.int16] | None = None,
 ) -> PlanRows:
-    """Repeat moving windows over their positions and add up the ids.
-
-    A sample is drawn here; it holds the rows of ``always``, the baseline if none are given.
-    """
+    """Repeat moving windows over their positions and add up the ids."""
     window = codes[:, AXES.index("window")]
     count = np.array([positions.counts.get(c, 1) for c in range(int(window.max()) + 1)])[window]
     source = np.repeat(np.arange(codes.shape[0]), count)
     start = np.cumsum(count) - count
     position = (np.arange(source.size) - start[source]).astype(np.int32)
-    if isinstance(plan.document.sweep.design, Table):
-        if always is None:
-            axes = plan.finding_axes[finding.number]
-            always = np.array([[axes[a].baseline for a in AXES]], np.int16)
-        keep = _stratified(plan, finding, codes, source, always, request)
-        source, position = source[keep], position[keep]
-    rows = {axis: codes[source, column] for column, axis in enumerate(AXES)}
-    high, low = _ids(plan, finding, rows, position, positions)
-    which = np.full(source.size, finding.number, np.int16)
-    number = np.full(source.size, request.number if request else 0, np.int16)
-    return PlanRows(which, rows, position, high, low, _ruled(plan, finding, rows), number)
+    return _rows(plan, finding, codes[source], position, positions, request)
 
 
-def _stratified(
+def _rows(
     plan: Plan,
     finding: Finding,
     codes: NDArray[np.int16],
-    source: NDArray[np.int64],
-    always: NDArray[np.int16],
-    request: Request | None,
-) -> NDArray[np.int64]:
-    """Draw equally many rows of every window entry; those of ``always`` are in whatever comes."""
-    wanted = plan.document.sweep.design.sample
-    window = codes[source, AXES.index("window")]
-    entries = list(dict.fromkeys(codes[:, AXES.index("window")].tolist()))
-    purpose = digest_text(f"{finding.name}\0{request.name}" if request else finding.name)
-    seed = np.random.SeedSequence([plan.document.seed, *purpose])
-    generator = np.random.default_rng(seed)
-    each = -(-wanted // len(entries))
-    kept = []
-    for entry in entries:
-        members = np.flatnonzero(window == entry)
-        size = min(each, members.size)
-        kept.append(generator.choice(members, size=size, replace=False, shuffle=False))
-    for row in always:
-        kept.append(np.flatnonzero((codes[source] == row).all(axis=1)))
-    return np.unique(np.concatenate(kept))
+    position: NDArray[np.int32],
+    positions: FindingPositions,
+    request: Request | None = None,
+) -> PlanRows:
+    """Return rows of given codes, shape (s, axes), and positions, with their ids and rules."""
+    rows = {axis: np.ascontiguousarray(codes[:, column]) for column, axis in enumerate(AXES)}
+    high, low = _ids(plan, finding, rows, position, positions)
+    which = np.full(position.size, finding.number, np.int16)
+    number = np.full(position.size, request.number if request else 0, np.int16)
+    return PlanRows(which, rows, position, high, low, _ruled(plan, finding, rows), number)
 
 
 def _ids(
