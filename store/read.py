@@ -25,6 +25,7 @@ from store.read_shares import (
     directions,
     effects,
     effects_overall,
+    strata,
     survival,
     windows,
 )
@@ -62,6 +63,7 @@ __all__ = [
     "shortest_flips",
     "single_changes",
     "specification",
+    "strata",
     "survival",
     "sweep_info",
     "sweeps",

@@ -7,7 +7,15 @@ import pandas as pd
 from store.database import Database
 from store.schema import query
 
-__all__ = ["attrition", "directions", "effects", "effects_overall", "survival", "windows"]
+__all__ = [
+    "attrition",
+    "directions",
+    "effects",
+    "effects_overall",
+    "strata",
+    "survival",
+    "windows",
+]
 
 
 def survival(
@@ -51,6 +59,19 @@ def attrition(db: Database, sweep: int, finding: int) -> pd.DataFrame:
         ``ruled`` (True where the plan's author ruled the combination out).
     """
     return db.frame(query("attrition"), {"sweep": sweep, "finding": finding})
+
+
+def strata(db: Database, sweep: int, finding: int) -> pd.DataFrame:
+    """Return the counts from which the interval of a drawn sample is made.
+
+    Returns
+    -------
+    pandas.DataFrame
+        ``window_name, is_baseline, weight, rows, admissible, survived, size``: planned rows
+        of a window entry that have one weight, and the rows of the whole cross with that
+        entry.  The baseline stands apart.
+    """
+    return db.frame(query("strata"), {"sweep": sweep, "finding": finding})
 
 
 def directions(db: Database, sweep: int, finding: int) -> pd.DataFrame:

@@ -62,6 +62,9 @@ class FindingRecord:
     planned, added : int
         Rows that the plan asks for, and rows that its requests add: what there will be once
         the sweep has run to its end.
+    baseline_weight : float
+        What the weight of the baseline's row is multiplied by: 1 unless rows were drawn, when
+        it stands for itself and every other row of its window entry for several.
     """
 
     finding: int
@@ -84,6 +87,7 @@ class FindingRecord:
     reported_tolerance: float | None = None
     planned: int = 0
     added: int = 0
+    baseline_weight: float = 1.0
 
 
 @dataclass(frozen=True, slots=True)

@@ -51,7 +51,8 @@ CREATE TABLE finding (
     reported_observations DOUBLE,  -- printed number of observations; NULL where not given
     reported_tolerance DOUBLE,  -- difference allowed in both; NULL for half a last digit of each
     planned INTEGER,  -- rows that the plan asks for, those that requests add aside
-    added INTEGER  -- rows that requests add
+    added INTEGER,  -- rows that requests add
+    baseline_weight DOUBLE  -- factor of the weight of the baseline's row; 1 unless rows were drawn
 );
 
 CREATE TABLE choice (

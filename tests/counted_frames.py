@@ -505,6 +505,26 @@ def attrition_frame(sweep: Sweep, rows: pd.DataFrame) -> pd.DataFrame:
     return pd.DataFrame(found, columns=["status", "reason", "rows", "ruled"])
 
 
+def strata_frame(sweep: Sweep, rows: pd.DataFrame) -> pd.DataFrame:
+    """Rows by window entry and weight, as if half of the cross had been drawn."""
+    found = []
+    for (window, baseline, weight), part in rows.groupby(
+        ["window", "is_baseline", "weight"], sort=False
+    ):
+        found.append(
+            {
+                "window_name": window,
+                "is_baseline": bool(baseline),
+                "weight": weight,
+                "rows": len(part),
+                "admissible": int(part["admissible"].sum()),
+                "survived": int(part["survives"].sum()),
+                "size": 2.0 * int((rows["window"] == window).sum()),
+            }
+        )
+    return pd.DataFrame(found)
+
+
 # Counting a sweep in pandas takes seconds, and many tests read the same few sweeps.
 _COUNTED: dict[str, dict[str, pd.DataFrame]] = {}
 
@@ -532,6 +552,7 @@ def _frames_of(sweep: Sweep) -> dict[str, pd.DataFrame]:
         "effects": effects_frame,
         "effects_overall": effects_overall_frame,
         "attrition": attrition_frame,
+        "strata": strata_frame,
     }
     frames = {name: make(sweep, rows) for name, make in makers.items()}
     frames["requests"] = requests_frame(frames["survival"])

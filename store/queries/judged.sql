@@ -16,7 +16,8 @@ WITH rules AS (
         CASE WHEN f.claim = 'leads both ways' THEN f.reverse_sign ELSE 0 END AS claimed_reverse_sign,
         f.claim = 'leads one way' AS one_way,
         f.claim = 'leads both ways' AS both_ways,
-        f.claim = 'does not lead' AS no_lead
+        f.claim = 'does not lead' AS no_lead,
+        f.baseline_high, f.baseline_low, f.baseline_weight
     FROM finding AS f
     JOIN sweep AS s ON s.sweep = f.sweep
 ),
@@ -31,7 +32,10 @@ test_weight AS (
 ),
 prepared AS (
     SELECT
-        o.*, r.level, r.required_mask, m.orientation, w.weight * t.weight AS weight,
+        o.*, r.level, r.required_mask, m.orientation,
+        w.weight * t.weight * CASE
+            WHEN o.spec_high = r.baseline_high AND o.spec_low = r.baseline_low
+            THEN r.baseline_weight ELSE 1 END AS weight,
         -- The two-way claims need both directions; the worse of the two statuses counts.
         CASE WHEN r.one_way OR r.both_ways THEN greatest(o.status, o.reverse_status)
              ELSE o.status END AS run_status,

@@ -68,8 +68,11 @@ class Context:
 
     @property
     def losses(self) -> str:
-        """Return what was planned and not counted, as a sentence."""
-        return losses_sentence(self.counts)
+        """Return what was planned and not counted, as a sentence; a sample says that it is one."""
+        words = losses_sentence(self.counts)
+        if self.design.startswith("sample"):
+            words += " These rows were drawn from the plan; what was not drawn is not in here."
+        return words
 
 
 def _series(finding: Mapping[str, Any], role: str) -> str:

@@ -101,7 +101,7 @@ def _subtitle(context: Context, frames: Mapping[str, pd.DataFrame], arranged: Ar
         "Disc: survives then; square: does not. Small ticks: each change of a pair alone. Moving "
         "windows: median over the admissible positions, mark for what most of them do; of a pair "
         "they stand where neither turns alone if that is so in a position.",
-        _counts(frames["flip_counts"], baseline),
+        _counts(frames["flip_counts"], baseline, context.design),
         context.losses,
     ]
     if arranged.shown < arranged.total:
@@ -113,7 +113,7 @@ def _subtitle(context: Context, frames: Mapping[str, pd.DataFrame], arranged: Ar
     return " ".join(word for word in words if word)
 
 
-def _counts(frame: pd.DataFrame, baseline: Mapping[str, Any]) -> str:
+def _counts(frame: pd.DataFrame, baseline: Mapping[str, Any], design: str) -> str:
     """Say how many changes were tried and how many turn."""
     state = baseline["survives"] if baseline["admissible"] else None
     if missing(state):
@@ -125,7 +125,7 @@ def _counts(frame: pd.DataFrame, baseline: Mapping[str, Any]) -> str:
         f"{verb}{'s' if int(one['turning']) == 1 else ''} the finding."
         for one in singles
     ]
-    return " ".join([*sentences, pair_sentence(frame, state)]).strip()
+    return " ".join([*sentences, pair_sentence(frame, state, design)]).strip()
 
 
 def build(
@@ -254,7 +254,7 @@ def describe(frames: Mapping[str, pd.DataFrame], context: Context) -> str:
     words = [
         f"Changes of one or two choices that turn the finding. {context.lead}",
         p_track.baseline_sentence(baseline, context),
-        _counts(frames["flip_counts"], baseline),
+        _counts(frames["flip_counts"], baseline, context.design),
     ]
     for kind, records in _groups(frames["flips"]):
         named = [_named(one, context) for one in records[:8]]

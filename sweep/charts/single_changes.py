@@ -170,7 +170,7 @@ def describe(frames: Mapping[str, pd.DataFrame], context: Context) -> str:
     words = [
         f"Single changes from the baseline. {context.lead}",
         p_track.baseline_sentence(baseline, context),
-        single_sentence(changes, state, limit=20),
+        single_sentence(changes, state, limit=20, design=context.design),
     ]
     if context.claim in TWO_WAY:
         reverse = [one for one in changes.to_dict("records") if p_track.by_reverse(one)]

@@ -28,6 +28,7 @@ from sweep.engine.task import ROW_FIELDS, LagCoefficients, Outcome
 from sweep.plan.canonical import canonical_json, token
 from sweep.plan.choices import AXES, Choice, MeasureChoice, ProcedureChoice, WindowChoice
 from sweep.plan.document import ReportedTable
+from sweep.plan.draw import stratum_size
 from sweep.plan.model import Finding
 from sweep.plan.tables import Table
 from sweep.procedures import numerics
@@ -190,6 +191,7 @@ class StoreSink:
             table.tolerance,
             int((self._asked(finding) == 0).sum()),
             int((self._asked(finding) > 0).sum()),
+            self._baseline_weight(finding),
         )
 
     def _asked(self, finding: Finding) -> NDArray[np.int16]:
@@ -254,7 +256,7 @@ class StoreSink:
         """
         if self.prepared.plan.document.sweep.design in ("one change", "two changes"):
             return 0.0
-        plan, rows = self.prepared.plan, self.prepared.rows
+        plan = self.prepared.plan
         if isinstance(choice, ProcedureChoice):
             tests = plan.finding_axes[finding.number]["test"]
             held = tests.codes if code in tests.codes else tests.every
@@ -262,11 +264,36 @@ class StoreSink:
             return 1.0 / group.count(_test_group(choice))
         if isinstance(choice, WindowChoice):
             if isinstance(plan.document.sweep.design, Table):
-                added = code not in plan.finding_axes[finding.number]["window"].codes
-                mine = (rows.finding == finding.number) & ((rows.request > 0) == added)
-                return 1.0 / max(int((rows.codes["window"][mine] == code).sum()), 1)
+                return self._drawn_weight(finding, code)
             return 1.0 / self.prepared.windows[finding.number][code].count
         return 1.0
+
+    def _drawn_weight(self, finding: Finding, code: int) -> float:
+        """Return the part of its window entry that a drawn row stands for.
+
+        The baseline, which is run whatever is drawn, stands for itself: for one row of the
+        cross in its entry.
+        """
+        axis = self.prepared.plan.finding_axes[finding.number]["window"]
+        rows, added = self.prepared.rows, code not in axis.codes
+        mine = (rows.finding == finding.number) & ((rows.request > 0) == added)
+        drawn = int((rows.codes["window"][mine] == code).sum())
+        if code != axis.baseline or drawn < 2:
+            return 1.0 / max(drawn, 1)
+        whole = self._stratum(finding, code)
+        return (whole - 1) / whole / (drawn - 1)
+
+    def _baseline_weight(self, finding: Finding) -> float:
+        """Return what the baseline's row weighs beside a drawn row of its window entry."""
+        code = self.prepared.plan.finding_axes[finding.number]["window"].baseline
+        if not isinstance(self.prepared.plan.document.sweep.design, Table):
+            return 1.0
+        whole = self._stratum(finding, code)
+        return 1.0 / whole / self._drawn_weight(finding, code)
+
+    def _stratum(self, finding: Finding, code: int) -> int:
+        axes = self.prepared.plan.finding_axes[finding.number]
+        return stratum_size(axes, code, self.prepared.windows[finding.number][code].count)
 
     def _positions(self) -> dict[str, NDArray[Any]]:
         parts: dict[str, list[NDArray[Any]]] = {

@@ -35,7 +35,7 @@ __all__ = [
 # What the sentences of a report are made from.
 _SENTENCES = (
     "survival", "baseline", "attrition", "single_changes", "shortest_flips", "directions",
-    "effects", "effects_overall", "requests", "answers",
+    "effects", "effects_overall", "requests", "answers", "strata",
 )  # fmt: skip
 
 # Every frame that a report reads, named as the functions of ``store.read``.
@@ -164,23 +164,17 @@ def summary(finding: FindingContent) -> list[str]:
     baseline = baseline_record(frames["baseline"])
     # Nothing can turn away from a baseline that is not admissible.
     holds = baseline["survives"] if baseline["admissible"] else None
-    sentences = [f"The finding survives in {survival.headline(counts, context.design)}."]
-    if not counts.admissible:
-        sentences = [f"Nothing can be said: {survival.headline(counts, context.design)}."]
-    elif context.design.startswith("sample"):
-        interval = survival.sampling_interval(frames["survival"])
-        if interval:
-            low, high = (percent(end) for end in interval)
-            sentences.append(
-                f"These rows are a sample of the plan; the 95% sampling interval of the weighted "
-                f"share is {low} to {high}."
-            )
+    told = "The finding survives in" if counts.admissible else "Nothing can be said:"
+    sentences = [f"{told} {survival.headline(counts, context.design)}."]
     if context.design.endswith(("change", "changes")):
-        sentences.append(
+        pooled = (
             "The sweep changes few choices at a time, so there is no pooled share; the changes "
             "beside the baseline are what it shows."
         )
+        sentences = [pooled] if counts.admissible else [*sentences, pooled]
     else:
+        if context.design.startswith("sample") and counts.admissible:
+            sentences.append(_drawn(frames["strata"]))
         sentences.append(survival.levels_sentence(counts, context.significance))
     sentences.append(survival.losses_sentence(counts))
     if counts.other_sign:
@@ -190,12 +184,24 @@ def summary(finding: FindingContent) -> list[str]:
             f"{'it does' if counts.other_sign == 1 else 'they do'} not count as survived."
         )
     sentences += [
-        flips.single_sentence(frames["single_changes"], holds),
-        flips.pair_sentence(frames["flip_counts"], holds),
-        flips.path_sentence(frames["shortest_flips"], holds),
+        flips.single_sentence(frames["single_changes"], holds, design=context.design),
+        flips.pair_sentence(frames["flip_counts"], holds, context.design),
+        flips.path_sentence(frames["shortest_flips"], holds, context.design),
         directions.sentence(frames["directions"]),
     ]
     return [sentence for sentence in sentences if sentence]
+
+
+def _drawn(strata: pd.DataFrame) -> str:
+    """Say that the rows are a sample, and how near its share is to that of the whole plan."""
+    interval = survival.sampling_interval(strata)
+    if interval is None:
+        return "These rows are a sample of the plan."
+    low, high = (percent(end) for end in interval)
+    return (
+        "These rows are a sample of the plan; the 95% sampling interval of the weighted share is "
+        f"{low} to {high}."
+    )
 
 
 def answered(finding: FindingContent) -> list[str]:

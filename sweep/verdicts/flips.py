@@ -61,7 +61,9 @@ def change_words(row: Any) -> str:
     return f"{where} (p {p_text(row['p_value'])})"
 
 
-def single_sentence(single_changes: pd.DataFrame, baseline_survives: Any, limit: int = 5) -> str:
+def single_sentence(
+    single_changes: pd.DataFrame, baseline_survives: Any, limit: int = 5, design: str = "full"
+) -> str:
     """Say how many single changes turn the finding, and which move it most.
 
     Parameters
@@ -72,31 +74,45 @@ def single_sentence(single_changes: pd.DataFrame, baseline_survives: Any, limit:
         Whether the finding holds at the baseline; None if the baseline is not admissible.
     limit : int
         Most changes to name.
+    design : str
+        The sweep's design; a sample can only speak of the rows drawn.
     """
     if missing(baseline_survives):
         return "The baseline is not admissible, so no change can turn it."
     if single_changes.empty:
-        return "No choice differs from the baseline on one axis only."
+        which = "row drawn" if _is_drawn(design) else "choice"
+        return f"No {which} differs from the baseline on one axis only."
     tried = single_changes[single_changes["admissible"].fillna(0).astype(int) > 0]
     if tried.empty:
-        return "No single change away from the baseline gives an admissible specification."
+        where = " in the rows drawn" if _is_drawn(design) else ""
+        return (
+            f"No single change away from the baseline gives an admissible specification{where}."
+        )
     rows = turned(tried)
     verb = "break" if baseline_survives else "restore"
     if rows.empty:
         keeps = "holds" if baseline_survives else "still does not hold"
         each = "the" if len(tried) == 1 else "each of"
+        drawn = "was drawn and " if len(tried) == 1 else "were drawn and "
         return (
-            f"After {each} {counted(len(tried), 'single change')} that could be run, "
+            f"After {each} {counted(len(tried), 'single change')} that "
+            f"{drawn if _is_drawn(design) else ''}could be run, "
             f"the finding {keeps}."
         )
     named = joined(change_words(row) for _, row in rows.head(limit).iterrows())
     more = f", and {len(rows) - limit:,} more" if len(rows) > limit else ""
     verbs = f"{verb}s" if len(rows) == 1 else verb
     moving = " (moving windows: in at least one position)" if (rows["positions"] > 1).any() else ""
+    start = "In the rows drawn, " if _is_drawn(design) else ""
     return (
-        f"{len(rows):,} of {counted(len(tried), 'single change')} {verbs} the finding{moving}: "
-        f"{named}{more}."
+        f"{start}{len(rows):,} of {counted(len(tried), 'single change')} {verbs} the "
+        f"finding{moving}: {named}{more}."
     )
+
+
+def _is_drawn(design: str) -> bool:
+    """Say whether the rows of a sweep are a sample of its plan."""
+    return design.startswith("sample")
 
 
 def turned_by(row: Any, claim: str) -> str:
@@ -133,7 +149,9 @@ def step_words(row: Any, which: str) -> str:
     return f"{row[f'{which}_axis']}: {row[f'{which}_from']} → {row[f'{which}_to']}"
 
 
-def pair_sentence(flip_counts: pd.DataFrame, baseline_survives: Any) -> str:
+def pair_sentence(
+    flip_counts: pd.DataFrame, baseline_survives: Any, design: str = "full"
+) -> str:
     """Say how many pairs of changes turn the finding, and in how many neither does so alone.
 
     Parameters
@@ -142,6 +160,8 @@ def pair_sentence(flip_counts: pd.DataFrame, baseline_survives: Any) -> str:
         The store's frame of that name.
     baseline_survives : bool or None
         Whether the finding holds at the baseline; None if the baseline is not admissible.
+    design : str
+        The sweep's design; a sample can only speak of the rows drawn.
     """
     pairs = flip_counts[flip_counts["changes"] == 2]
     if missing(baseline_survives) or pairs.empty or not int(pairs["admissible"].iloc[0]):
@@ -149,33 +169,53 @@ def pair_sentence(flip_counts: pd.DataFrame, baseline_survives: Any) -> str:
     counts = {str(name): int(value) for name, value in pairs.iloc[0].items()}
     verb = "break" if baseline_survives else "restore"
     tried, turning, joint = counts["admissible"], counts["turning"], counts["joint"]
-    start = f"{turning:,} of {counted(tried, 'pair')} of changes {verb} the finding"
+    where = "In the rows drawn, " if _is_drawn(design) else ""
+    start = f"{where}{turning:,} of {counted(tried, 'pair')} of changes {verb} the finding"
     if turning == 1:
-        start = f"1 of {counted(tried, 'pair')} of changes {verb}s the finding"
+        start = f"{where}1 of {counted(tried, 'pair')} of changes {verb}s the finding"
     if not turning and tried == 1:
-        return f"The 1 pair of changes that could be run does not {verb} the finding."
+        the = f"{where}the" if where else "The"
+        return f"{the} 1 pair of changes that could be run does not {verb} the finding."
     if not turning:
-        return f"None of {counted(tried, 'pair')} of changes {verb}s the finding."
+        none = "none" if where else "None"
+        return f"{where}{none} of {counted(tried, 'pair')} of changes {verb}s the finding."
     if not joint:
         return f"{start}; in each of them a single change does so alone, or could not be judged."
     part = f"in {joint:,} of them, " if joint < turning else "in all of them, "
     return f"{start}; {part if turning > 1 else ''}neither change does so alone."
 
 
-def path_sentence(shortest_flips: pd.DataFrame, baseline_survives: Any) -> str:
-    """Say how few changed choices turn the finding, with the nearest example."""
+def path_sentence(
+    shortest_flips: pd.DataFrame, baseline_survives: Any, design: str = "full"
+) -> str:
+    """Say how few changed choices turn the finding, with the nearest example.
+
+    Parameters
+    ----------
+    shortest_flips : DataFrame
+        The store's frame of that name.
+    baseline_survives : bool or None
+        Whether the finding holds at the baseline; None if the baseline is not admissible.
+    design : str
+        The sweep's design; a sample can only speak of the rows drawn.
+    """
     if missing(baseline_survives):
         return ""
     if shortest_flips.empty:
+        which = "row drawn" if _is_drawn(design) else "specification of this sweep"
         becomes = "stop holding" if baseline_survives else "come to hold"
-        return f"In no specification of this sweep does the finding {becomes}."
+        return f"In no {which} does the finding {becomes}."
     state = "stops holding" if baseline_survives else "comes to hold"
     first = shortest_flips.iloc[0]
     p_value = p_text(first["p_value"])
     found = f"p {p_value}"
     if int(first["positions"]) > 1:
         found = f"{int(first['flips']):,} of {positions(first)}; median {found}"
+    start, more = "The finding", ""
+    if _is_drawn(design):
+        start = "In the rows drawn, the finding"
+        more = " Rows that were not drawn may need fewer." if first["changes"] > 1 else ""
     return (
-        f"The finding {state} after {counted(int(first['changes']), 'changed choice')} at the "
-        f"fewest: {first['changed']} ({found})."
+        f"{start} {state} after {counted(int(first['changes']), 'changed choice')} at the "
+        f"fewest: {first['changed']} ({found}).{more}"
     )

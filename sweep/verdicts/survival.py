@@ -9,6 +9,7 @@ from __future__ import annotations
 
 import math
 from dataclasses import dataclass
+from statistics import NormalDist
 from typing import TYPE_CHECKING, Any
 
 from .words import counted, joined, level_text, missing, percent
@@ -166,11 +167,11 @@ def headline(counts: Counts, design: str = "full") -> str:
     """
     if not counts.admissible:
         return f"none of {counts.planned:,} planned rows is admissible"
-    share = percent(counts.raw)
-    text = f"{counts.survived:,} of {counted(counts.admissible, 'row')} ({share})"
-    if not design.endswith(("change", "changes")):
-        text += f"; weighted {percent(counts.headline)}"
-    return f"{text}; {counted(counts.distinct, 'distinct computation')}"
+    computations = counted(counts.distinct, "distinct computation")
+    if design.endswith(("change", "changes")):
+        return f"{counted(counts.admissible, 'admissible row')}, no pooled share; {computations}"
+    rows = f"{counts.survived:,} of {counted(counts.admissible, 'row')} ({percent(counts.raw)})"
+    return f"{rows}; weighted {percent(counts.headline)}; {computations}"
 
 
 def levels_sentence(counts: Counts, significance: float) -> str:
@@ -207,31 +208,65 @@ def losses_sentence(counts: Counts) -> str:
     )
 
 
-def sampling_interval(survival: pd.DataFrame) -> tuple[float, float] | None:
-    """Return a 95% interval of the headline share of a stratified sample of the plan.
+def sampling_interval(strata: pd.DataFrame) -> tuple[float, float] | None:
+    """Return a 95% interval of the headline share of a sample that was drawn from the plan.
 
-    The strata are the window entries, which the headline weighs alike, so with H strata
-    var = Σ_h p_h(1−p_h)/(n_h H²).  Each p_h is shrunk to (survived + 2)/(n_h + 4), so that
-    a stratum of all or none still has a variance (Agresti & Coull 1998).
+    The share R is a ratio of two stratified means, Y of w·survived and X of w·admissible, the
+    strata being the window entries.  With z = w·admissible·(survived − R) its variance is
+
+        var(R) = Σ_h (1 − n_h/N_h) n_h s²(z)_h / X²
+
+    (Cochran 1977, sections 5.4 and 6.11; w holds 1/n_h), which is zero where every row was
+    drawn.  Two surviving and two other rows are added beforehand, spread over the admissible
+    rows of what was not drawn whole, so that a share near none or all still has a variance
+    (Agresti & Coull 1998).
 
     Parameters
     ----------
-    survival : DataFrame
-        The survival frame of one finding.
+    strata : DataFrame
+        The store's frame of that name: rows by window entry and weight.
 
     Returns
     -------
     tuple of float or None
         Lower and upper end in [0, 1]; None where nothing is admissible.
     """
-    share = overall(survival).headline
-    strata = survival[(survival["axis"] == "window") & (survival["admissible"] > 0)]
-    if share is None or strata.empty:
+    rows = strata.astype(dict.fromkeys(("weight", "rows", "admissible", "survived", "size"), float))
+    total = float((rows["weight"] * rows["admissible"]).sum())
+    if not total > 0:
         return None
-    rows = strata["admissible"].to_numpy(dtype=float)
-    shrunk = (strata["survived"].to_numpy(dtype=float) + 2) / (rows + 4)
-    variance = float((shrunk * (1 - shrunk) / rows).sum()) / len(strata) ** 2
-    reach = 1.959964 * math.sqrt(variance)
+    drawn = rows[~rows["is_baseline"]]
+    there = drawn.groupby("window_name", observed=True)["rows"].transform("sum")
+    # The baseline is one of the rows of its entry, and no draw could take it.
+    whole = drawn["size"] - drawn["window_name"].isin(
+        rows.loc[rows["is_baseline"], "window_name"]
+    )
+    left = (1 - there / whole).clip(lower=0.0)
+    open_ = drawn["admissible"].where(left > 0, 0.0)
+    added = 4 * open_ / max(float(open_.sum()), 1.0)
+    smooth = (drawn["survived"] + added / 2) / (drawn["admissible"] + added).where(
+        drawn["admissible"] > 0, 1.0
+    )
+    fixed = rows[rows["is_baseline"]]
+    share = float(
+        (drawn["weight"] * drawn["admissible"] * smooth).sum()
+        + (fixed["weight"] * fixed["survived"]).sum()
+    ) / total
+    counted_ = drawn["weight"] * drawn["admissible"]
+    parts = drawn.assign(
+        there=there,
+        left=left,
+        first=counted_ * (smooth - share),
+        second=counted_
+        * drawn["weight"]
+        * (smooth * (1 - share) ** 2 + (1 - smooth) * share**2),
+    )
+    variance = 0.0
+    for _, part in parts.groupby("window_name", observed=True):
+        n, first, second = float(part["there"].iloc[0]), part["first"].sum(), part["second"].sum()
+        spread = (second - first**2 / n) / max(n - 1, 1.0)
+        variance += float(part["left"].iloc[0]) * n * spread
+    reach = NormalDist().inv_cdf(0.975) * math.sqrt(max(variance, 0.0)) / total
     return max(0.0, share - reach), min(1.0, share + reach)
 
 

@@ -361,6 +361,18 @@ def test_smaller_designs(tmp_path: Path, design: str) -> None:
     assert results.summary()
 
 
+def test_a_sample_of_everything_has_the_share_of_the_full_cross(tmp_path: Path) -> None:
+    full = sweep.run(small_plans.write_plan(tmp_path, AXES), jobs=1)
+    tail = f"{AXES}\n[sweep]\ndesign = {{ sample = 100000 }}"
+    drawn = sweep.run(small_plans.write_plan(tmp_path, tail), jobs=1)
+    names = ["planned", "admissible", "survived", "distinct", "headline_share", "share_at_1"]
+    one, other = (results.survival("all").iloc[0] for results in (full, drawn))
+    assert other[names].astype(float).to_numpy() == pytest.approx(
+        one[names].astype(float).to_numpy(), rel=1e-12
+    )
+    assert drawn.summary()[0][1][2].startswith("These rows are a sample of the plan")
+
+
 def _dies_once(task: Task, flag: Path) -> Outcome:
     if not flag.exists():
         flag.write_text("died", encoding="utf-8")

@@ -231,8 +231,11 @@ def test_same_content_same_page(content):
     ("design", "expected", "absent"),
     [
         ("full", "weighted", "sampling interval"),
+        ("full", "The finding survives in", "rows drawn"),
         ("one change", "no pooled share", "weighted"),
+        ("two changes", "no pooled share", "The finding survives in"),
         ("sample of 5000", "95% sampling interval", "no pooled share"),
+        ("sample of 5000", "In the rows drawn, the finding stops holding after", "The finding st"),
     ],
 )
 def test_summary_follows_the_design(design, expected, absent):

@@ -1,5 +1,7 @@
 import math
 
+import numpy as np
+import pandas as pd
 import pytest
 
 from sweep.verdicts import directions, effects, flips, survival
@@ -42,16 +44,54 @@ def test_one_overall_row_is_required(frames):
         survival.overall(frames["survival"].iloc[1:])
 
 
-def test_sampling_interval_by_hand(frames):
-    low, high = survival.sampling_interval(frames["survival"])
-    strata = frames["survival"].query("axis == 'window'")
-    variance = 0.0
-    for row in strata.to_dict("records"):
-        p = (row["survived"] + 2) / (row["admissible"] + 4)
-        variance += p * (1 - p) / row["admissible"] / len(strata) ** 2
-    share = survival.overall(frames["survival"]).headline
-    assert high - share == pytest.approx(1.959964 * math.sqrt(variance))
-    assert low == pytest.approx(max(0, 2 * share - high))
+def strata(*rows):
+    """Return a frame of strata: window, whether baseline, weight, rows, admissible, survived, N."""
+    names = ["window_name", "is_baseline", "weight", "rows", "admissible", "survived", "size"]
+    return pd.DataFrame(rows, columns=names)
+
+
+def test_sampling_interval_of_one_stratum_by_hand():
+    """Agresti and Coull's interval with the finite population's correction."""
+    low, high = survival.sampling_interval(strata(("w", False, 1 / 50, 50, 50, 20, 400)))
+    share = 22 / 54
+    reach = 1.959964 * math.sqrt((1 - 50 / 400) * share * (1 - share) / 49)
+    assert (low, high) == pytest.approx((share - reach, share + reach), rel=1e-6)
+
+
+def test_sampling_interval_of_several_strata_by_hand():
+    """A fixed window drawn whole, and a moving one with two weights: the ratio written out."""
+    frame = strata(
+        ("fixed", True, 0.25, 1, 1, 1, 4), ("fixed", False, 0.25, 3, 3, 1, 4),
+        ("moving", False, 0.1, 4, 3, 2, 90), ("moving", False, 0.05, 6, 6, 3, 90),
+    )  # fmt: skip
+    weights = np.repeat([0.1, 0.05], [3, 6])  # of the admissible rows that were drawn in part
+    survived = np.repeat([(2 + 3 * 2 / 9) / (3 + 3 * 4 / 9), (3 + 6 * 2 / 9) / (6 + 6 * 4 / 9)],
+                         [3, 6])  # fmt: skip
+    total = 4 * 0.25 + weights.sum()
+    share = (2 * 0.25 + (weights * survived).sum()) / total
+    # z is w(1 − R) with probability p and −wR otherwise; the tenth row is not admissible.
+    mean = (weights * (survived - share)).sum() / 10
+    square = (weights**2 * (survived * (1 - share) ** 2 + (1 - survived) * share**2)).sum()
+    variance = (1 - 10 / 90) * 10 * (square - 10 * mean**2) / 9
+    reach = 1.959964 * math.sqrt(variance) / total
+    assert survival.sampling_interval(frame) == pytest.approx(
+        (share - reach, share + reach), rel=1e-6
+    )
+
+
+def test_a_sample_of_everything_leaves_nothing_open():
+    frame = strata(("a", True, 0.1, 1, 1, 0, 10), ("a", False, 0.1, 9, 9, 6, 10),
+                   ("b", False, 0.5, 2, 1, 1, 2))  # fmt: skip
+    assert survival.sampling_interval(frame) == pytest.approx((1.1 / 1.5, 1.1 / 1.5))
+    nothing = frame.assign(admissible=0, survived=0)
+    assert survival.sampling_interval(nothing) is None
+
+
+@pytest.mark.parametrize("survived", [0, 40])
+def test_a_share_of_none_or_all_still_has_an_interval(survived):
+    low, high = survival.sampling_interval(strata(("w", False, 1 / 40, 40, 40, survived, 4000)))
+    assert (low == 0.0) == (survived == 0)
+    assert 0.05 < high - low < 0.25
 
 
 def test_axis_sentences_name_lowest_and_highest(frames):
@@ -107,7 +147,9 @@ def test_no_flip_is_said_plainly(frames, holds, word):
 def test_flips_without_a_baseline(frames):
     assert "not admissible" in flips.single_sentence(frames["single_changes"], None)
     assert flips.path_sentence(frames["shortest_flips"], None) == ""
-    assert "In no specification" in flips.path_sentence(frames["shortest_flips"].iloc[:0], True)
+    none = frames["shortest_flips"].iloc[:0]
+    assert "In no specification of this sweep does the finding stop" in flips.path_sentence(none, True)
+    assert "In no row drawn does the finding stop" in flips.path_sentence(none, True, "sample of 60")
     empty = flips.single_sentence(frames["single_changes"].iloc[:0], True)
     assert empty.startswith("No choice differs")
 

@@ -58,7 +58,7 @@ _COLUMNS = (
 )
 
 
-def _counts(frame: pd.DataFrame, survives: Any) -> list[str]:
+def _counts(frame: pd.DataFrame, survives: Any, design: str) -> list[str]:
     """Say how many sets of changes were tried and how many turn, whatever is listed."""
     sentences = []
     for record in frame[frame["changes"] == 1].to_dict("records"):
@@ -67,7 +67,7 @@ def _counts(frame: pd.DataFrame, survives: Any) -> list[str]:
             f"{counted(int(record['admissible']), 'single change')} that could be judged turn the "
             f"finding ({int(record['flips']):,} of {counted(int(record['rows']), 'row')})."
         )
-    sentence = pair_sentence(frame, survives)
+    sentence = pair_sentence(frame, survives, design)
     return [*sentences, sentence] if sentence else sentences
 
 
@@ -86,7 +86,7 @@ def build(frames: Mapping[str, pd.DataFrame], context: Context) -> Table:
         rows.append(tuple(record[column.field] for column in _COLUMNS))
     baseline = baseline_record(frames["baseline"])
     total = int(frames["flip_counts"]["turning"].sum())
-    notes = [context.lead, *_counts(frames["flip_counts"], baseline["survives"])]
+    notes = [context.lead, *_counts(frames["flip_counts"], baseline["survives"], context.design)]
     if len(rows) < total:
         notes.append(f"Listed are {len(rows):,} of {total:,} sets of changes, the first of each.")
     reverse = f", reverse {p_text(baseline['reverse_p_value'])}"
