@@ -7,7 +7,7 @@ from typing import TYPE_CHECKING
 
 import click
 
-from sweep.cli.common import data_format, print_frame, sweep_option
+from sweep.cli.common import data_format, print_frame, say_unfinished, sweep_option
 from sweep.cli.paths import OUTPUT, STORE
 
 if TYPE_CHECKING:
@@ -44,7 +44,10 @@ def command(
     if other is None and against is not None:
         raise click.UsageError("--against names a sweep of B; name B, which may be A itself.")
     mine = open_results(store, sweep)
-    found = mine.compare(None if other is None else open_results(other, against), finding=finding)
+    theirs = None if other is None else open_results(other, against)
+    for results in filter(None, (mine, theirs)):
+        say_unfinished(results)
+    found = mine.compare(theirs, finding=finding)
     if part is not None or form != "table":
         print_frame(found.frame(part or ("episodes" if other is None else "changed")), form)
     else:

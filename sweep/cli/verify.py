@@ -10,7 +10,7 @@ from typing import TYPE_CHECKING
 
 import click
 
-from sweep.cli.common import print_rows, store_argument, sweep_option
+from sweep.cli.common import print_rows, say_unfinished, store_argument, sweep_option
 from sweep.cli.paths import DATA
 from sweep.errors import RuleNotMet
 from sweep.notebook import number_words
@@ -53,7 +53,9 @@ def command(
     from sweep.api import open_results
 
     progress = None if quiet else _progress
-    found = open_results(store, sweep).verify(rows, seed, data, tolerance, progress)
+    results = open_results(store, sweep)
+    say_unfinished(results)
+    found = results.verify(rows, seed, data, tolerance, progress)
     if progress is not None and sys.stderr.isatty():
         click.echo("\r\x1b[K", nl=False, err=True)
     if form == "json":

@@ -108,6 +108,8 @@ def test_every_command_says_so(
         ("show", store), ("show", store, "--by", "lags", "--format", "json"),
         ("export", store, tmp_path / "files"),
         ("report", store, "--output", tmp_path / "page.html"),
+        ("verify", store, "--rows", 10, "--quiet"), ("compare", store),
+        ("table", store, "survival"),
     ):  # fmt: skip
         assert call(*arguments) == 0
         shown = capsys.readouterr()
