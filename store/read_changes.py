@@ -65,10 +65,11 @@ def single_changes(db: Database, sweep: int, finding: int) -> pd.DataFrame:
         is; so for what follows), ``p_low, p_high`` (least and greatest),
         ``reverse_p_value`` (median), ``z_change, reverse_z_change`` (median z less the
         baseline's z, z the inverse normal survival function of p held to ±37),
-        ``coefficient_sum`` (median), ``status`` (``ok`` where any row is admissible, else the
-        mildest loss), ``reason``, ``specification`` (missing where several positions share the
-        row), ``baseline_p_value, baseline_reverse_p_value, baseline_survives`` (missing where
-        the baseline is not admissible), ``axis_position, choice_position``.
+        ``coefficient_sum`` (median, the sign turned where a measure is inverted), ``status``
+        (``ok`` where any row is admissible, else the mildest loss), ``reason``,
+        ``specification`` (missing where several positions share the row), ``baseline_p_value,
+        baseline_reverse_p_value, baseline_survives`` (missing where the baseline is not
+        admissible), ``axis_position, choice_position``.
         Empty where no baseline row is stored and nothing differs from it.
     """
     frame = db.frame(

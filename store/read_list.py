@@ -39,7 +39,8 @@ def alternatives(db: Database, sweep: int, finding: int) -> pd.DataFrame:
         ``order_least, order_most, observations_least, observations_most`` (over positions),
         ``statistic, reverse_statistic, df_num, df_den, coefficient_sum_se`` (missing where there
         are several positions), ``p_value, reverse_p_value, coefficient_sum,
-        reverse_coefficient_sum`` (medians over positions), ``window_start, window_end`` (from the
+        reverse_coefficient_sum`` (medians over positions; the signs of the sums turned where a
+        measure is inverted), ``window_start, window_end`` (from the
         first to the last window), ``status, reason, specification``.
     """
     return db.frame(

@@ -1,7 +1,7 @@
 -- The baseline and each choice that differs from it on one axis, with all that is stored of them.
 -- Where the choice is a moving window, numbers are medians over its admissible positions (over all
 -- that could be run where none is) and what has no median (statistic, degrees of freedom, standard
--- error) is left out.
+-- error) is left out.  Signs are turned where a measure is inverted: they speak of the role.
 , near AS (
     SELECT
         *,
@@ -36,9 +36,9 @@ summed AS (
         min(df_num) AS df_num, min(df_den) AS df_den,
         median(p_value) FILTER (shown) AS p_value,
         median(reverse_p_value) FILTER (shown) AS reverse_p_value,
-        median(coefficient_sum) FILTER (shown) AS coefficient_sum,
+        median(coefficient_sum * orientation) FILTER (shown) AS coefficient_sum,
         median(coefficient_sum_se) FILTER (shown) AS coefficient_sum_se,
-        median(reverse_coefficient_sum) FILTER (shown) AS reverse_coefficient_sum,
+        median(reverse_coefficient_sum * orientation) FILTER (shown) AS reverse_coefficient_sum,
         min(position) AS first_position, max(position) AS last_position,
         min(loss) AS loss, arg_min(reason, loss) AS reason, bool_or(lacks_sign) AS lacks_sign,
         min(spec_high) AS spec_high, min(spec_low) AS spec_low

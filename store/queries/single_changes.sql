@@ -1,7 +1,8 @@
 -- One row for each choice that differs from the baseline on its axis alone.
 -- p_middle_low and p_middle_high are the two middle values, from which the reader takes the
 -- median of z; p_value is their mean, the median.  So for the reverse.  All of these and the sum
--- are over the admissible positions; over all that could be run where none is admissible.
+-- are over the admissible positions; over all that could be run where none is admissible.  The
+-- sum's sign is turned where a measure is inverted: it speaks of the role.
 , singles AS (
     SELECT
         *,
@@ -43,7 +44,7 @@ summed AS (
         median(reverse_p_value) FILTER (shown) AS reverse_p_value,
         quantile_disc(reverse_p_value, 0.5) FILTER (shown) AS reverse_middle_low,
         -quantile_disc(-reverse_p_value, 0.5) FILTER (shown) AS reverse_middle_high,
-        median(coefficient_sum) FILTER (shown) AS coefficient_sum,
+        median(coefficient_sum * orientation) FILTER (shown) AS coefficient_sum,
         min(loss) AS loss,
         arg_min(reason, loss) AS reason,
         bool_or(lacks_sign) AS lacks_sign,

@@ -2,16 +2,19 @@
 
 from __future__ import annotations
 
+from pathlib import Path
 from statistics import NormalDist
 
 import numpy as np
 import pandas as pd
 import plain_twin
 import pytest
+import small_plans
 from store_samples import Filled
 
+import sweep
 from store import read
-from store.database import Database
+from store.database import Database, open_reading
 from store.errors import Ambiguous, NotFound
 from store.read_changes import z_value
 from store.schema import AXES
@@ -49,6 +52,7 @@ COLUMNS = {
     "positive median baseline_scale",
     "effects_overall": "quantity rows positive negative minimum lower_quartile median "
     "upper_quartile maximum",
+    "strata": "window_name is_baseline weight rows admissible survived size",
 }
 
 
@@ -83,6 +87,45 @@ def test_survival_is_in_plan_order(filled: Filled) -> None:
     assert frame[frame["axis"] == "lags"]["choice"].tolist() == ["1", "2", "AIC"]
     lags = read.survival(filled.db, filled.sweep, FINDING, "lags")
     pd.testing.assert_frame_equal(lags, frame[frame["axis"] == "lags"].reset_index(drop=True))
+
+
+def test_strata_follow_the_twin(filled: Filled, twin: pd.DataFrame) -> None:
+    frame = read.strata(filled.db, filled.sweep, FINDING)
+    names = ["window_label", "weight"]
+    for keys, part in twin.groupby(names):
+        rows = frame[(frame["window_name"] == keys[0]) & np.isclose(frame["weight"], keys[1])]
+        assert rows["rows"].sum() == len(part)
+        assert rows["admissible"].sum() == part["admissible"].sum()
+        survived = part["admissible"] & part["survives"].astype("boolean").fillna(False)
+        assert rows["survived"].sum() == survived.sum()
+    assert frame["rows"].sum() == len(twin)
+    codes = filled.content.codes
+    others = np.prod([len(codes[axis]) for axis in AXES if axis != "window"])
+    for window, size in zip(frame["window_name"], frame["size"], strict=True):
+        (entry,) = {c.positions for c in filled.content.choices if c.label == window}
+        assert size == entry * others
+
+
+def test_sums_speak_of_the_role_where_a_measure_is_inverted(tmp_path: Path) -> None:
+    """w falls when x rises: its sum is turned wherever effects of choices stand side by side."""
+    axes = (
+        '[axes]\nmeasures = { x = ["x", "w", { series = "v", inverted = true }] }\n'
+        'windows = ["full sample", { rolling = 90, step = 35 }]\n'
+    )
+    results = sweep.run(small_plans.write_plan(tmp_path, axes), jobs=1)
+    stored = results.outcomes(where="window_name = 'full sample'").set_index("measures")
+    with open_reading(results.store) as db:
+        changes = read.single_changes(db, 1, 0).query("axis == 'measures'").set_index("choice")
+        near = read.alternatives(db, 1, 0).query("axis == 'measures'").set_index("measures")
+        scales = read.effects(db, 1, 0)
+    for name, turned in (("w", 1), ("v", -1)):
+        wanted = turned * stored.loc[name, "coefficient_sum"]
+        assert changes.loc[name, "coefficient_sum"] == wanted
+        assert near.loc[name, "coefficient_sum"] == wanted
+        reverse = turned * stored.loc[name, "reverse_coefficient_sum"]
+        assert near.loc[name, "reverse_coefficient_sum"] == reverse
+        of_scale = scales[scales["measures"] == name].iloc[0]
+        assert of_scale["minimum"] <= wanted <= of_scale["maximum"]
 
 
 def test_attrition_adds_up(filled: Filled, twin: pd.DataFrame) -> None:
