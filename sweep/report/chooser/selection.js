@@ -80,20 +80,6 @@
       (total.other_sign === 1 ? "it does" : "they do") + " not count as survived.";
   }
 
-  // A 95% interval of the weighted share of a sampled plan; the strata are window entries.
-  function interval(total, strata) {
-    var used = strata.filter(function (one) { return one.admissible > 0; });
-    if (total.share === null || !used.length) { return ""; }
-    var variance = used.reduce(function (sum, one) {
-      var p = (one.survived + 2) / (one.admissible + 4);
-      return sum + p * (1 - p) / one.admissible;
-    }, 0) / (used.length * used.length);
-    var reach = 1.959964 * Math.sqrt(variance);
-    return "These rows are a sample of the plan; the 95% sampling interval of the weighted " +
-      "share is " + percent(Math.max(0, total.share - reach)) + " to " +
-      percent(Math.min(1, total.share + reach)) + ".";
-  }
-
   // Places of the ticked choices, counted from 1, as "1-3.7"; "0" for none.
   function ranges(flags) {
     var parts = [];
@@ -135,6 +121,6 @@
   window.crosswindSelection = {
     whole: whole, percent: percent, counted: counted, ofWhole: ofWhole, joined: joined,
     inWords: inWords, headline: headline, losses: losses, otherSign: otherSign,
-    interval: interval, ranges: ranges, flagsOf: flagsOf, check: check
+    ranges: ranges, flagsOf: flagsOf, check: check
   };
 })();

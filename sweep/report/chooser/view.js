@@ -215,12 +215,9 @@
       : " At " + data.levels[level] + " instead of the plan’s " + data.levels[data.level] + ".";
     this.selected.textContent = "Selected: " + words.inWords(data.axes, ticked) + other;
     this.live.textContent = words.headline(total, data, ticked);
-    var strata = this.cube.windowAxis < 0 ? [total]
-      : (found.split[this.cube.windowAxis] || []).filter(function (_, c) {
-        return ticked[self.cube.windowAxis][c];
-      });
     this.more.textContent = [words.losses(total), words.otherSign(total),
-      data.sampled ? words.interval(total, strata) : ""].filter(Boolean).join(" ");
+      data.sampled ? "These rows are a sample of the plan; the summary gives the interval of the " +
+        "whole share." : ""].filter(Boolean).join(" ");
     this.place.classList.toggle("narrowed", !this.isWhole());
     found.split.forEach(function (split, a) {
       self.rows[a].forEach(function (row, c) {
