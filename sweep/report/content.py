@@ -183,8 +183,11 @@ def summary(finding: FindingContent) -> list[str]:
             "coefficients has the other sign; "
             f"{'it does' if counts.other_sign == 1 else 'they do'} not count as survived."
         )
+    single = flips.single_sentence(frames["single_changes"], holds, design=context.design)
+    if frames["baseline"].empty:
+        single = "The baseline was not run yet, so no change can be set beside it."
     sentences += [
-        flips.single_sentence(frames["single_changes"], holds, design=context.design),
+        single,
         flips.pair_sentence(frames["flip_counts"], holds, context.design),
         flips.path_sentence(frames["shortest_flips"], holds, context.design),
         directions.sentence(frames["directions"]),

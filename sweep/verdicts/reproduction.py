@@ -120,6 +120,11 @@ def compare(baseline: Mapping[str, Any], finding: Mapping[str, Any]) -> Reproduc
             "The plan gives no reported numbers, so whether the baseline reproduces a printed "
             "result was not checked.",
         )
+    if baseline["status"] == "not run yet":
+        said = (
+            "Whether the baseline reproduces the reported numbers is not known: it was not run yet."
+        )
+        return Reproduction(False, said, tuple(differences))
     if baseline["status"] != "ok":
         why = reason_text(baseline["status"], baseline["reason"])
         return Reproduction(

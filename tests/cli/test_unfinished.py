@@ -22,6 +22,8 @@ lags = [1, 2, 3, "AIC"]
 windows = ["full sample", { rolling = 80, step = 4 }]
 transformations = ["level", "difference"]
 tests = ["F", "LM"]
+[baseline.reported]
+statistic = 3.2
 [[rule_out]]
 when = { transformation = ["difference"], lags = [3] }
 because = "three lags of a difference are too many"
@@ -133,7 +135,7 @@ def test_nothing_stored_yet_is_one_message(
     tmp_path: Path, arguments: tuple[str, ...], monkeypatch: pytest.MonkeyPatch,
     capsys: pytest.CaptureFixture[str],
 ) -> None:  # fmt: skip
-    plan = small_plans.write_plan(tmp_path, AXES.split("[[rule_out]]", maxsplit=1)[0])
+    plan = small_plans.write_plan(tmp_path, AXES.split("[baseline.reported]", maxsplit=1)[0])
     store = stopped(plan, 0, monkeypatch)
     before = sorted(tmp_path.iterdir())
     monkeypatch.chdir(tmp_path)
@@ -157,6 +159,9 @@ def test_only_ruled_out_rows_are_stored(
     assert call("show", store) == 0
     assert "not run yet" in capsys.readouterr().out
     assert call("report", store) == 0
+    page = store.with_suffix(".html").read_text(encoding="utf-8")
+    assert "The baseline was not run yet, so no change can be set beside it." in page
+    assert "is not known: it was not run yet" in page
     assert call("export", store, tmp_path / "files") == 0
     assert call("explain", store) == 2
     assert "specifications are stored; run the plan again" in capsys.readouterr().err
