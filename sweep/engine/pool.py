@@ -1,4 +1,8 @@
-"""Worker processes by joblib's executor, begun anew when one dies."""
+"""Worker processes by joblib's executor, begun anew when one dies.
+
+The executor is our own, not the one that joblib keeps for whoever asks: what a user's session
+does with joblib beside us must find that one as joblib left it.
+"""
 
 from __future__ import annotations
 
@@ -9,7 +13,7 @@ from collections.abc import Callable, Iterator
 from concurrent.futures import FIRST_COMPLETED, Future, wait
 from typing import Any
 
-from joblib.externals.loky import get_reusable_executor
+from joblib.externals.loky import ProcessPoolExecutor
 from joblib.externals.loky.process_executor import BrokenProcessPool
 
 from sweep.engine import waves
@@ -17,7 +21,7 @@ from sweep.engine.stop import StopRequest, interrupts_held
 from sweep.engine.task import Outcome, Task
 from sweep.engine.waves import Broken, _guarded
 
-__all__ = ["WorkerPool"]
+__all__ = ["WorkerPool", "end_workers"]
 
 DIED = "a worker process died twice on this task"
 IN_HAND = 2
@@ -29,6 +33,16 @@ IDLE_SECONDS = 300
 ONE_THREAD = dict.fromkeys(("OMP_NUM_THREADS", "OPENBLAS_NUM_THREADS", "MKL_NUM_THREADS"), "1")
 
 Done = Outcome | Broken
+
+_kept: dict[int, Any] = {}
+"""The executor of this process by its number of workers; one at a time."""
+
+
+def end_workers() -> None:
+    """End the workers that stay for a later run."""
+    for executor in _kept.values():
+        executor.shutdown(wait=True)
+    _kept.clear()
 
 
 class WorkerPool:
@@ -50,11 +64,21 @@ class WorkerPool:
         self._executor = self._open()
 
     def _open(self) -> Any:
+        """Return the executor that is kept for as many workers, or a new one."""
+        if self._jobs not in _kept:
+            with interrupts_held():
+                end_workers()
+                _kept[self._jobs] = ProcessPoolExecutor(
+                    max_workers=self._jobs, timeout=IDLE_SECONDS, initializer=_ignore_interrupts,
+                    env=ONE_THREAD,
+                )  # fmt: skip
+        return _kept[self._jobs]
+
+    def _anew(self) -> Any:
+        """Let go of an executor whose worker died, and return another."""
         with interrupts_held():
-            return get_reusable_executor(
-                max_workers=self._jobs, timeout=IDLE_SECONDS, initializer=_ignore_interrupts,
-                env=ONE_THREAD,
-            )  # fmt: skip
+            end_workers()
+        return self._open()
 
     def _submit(self, task: Task) -> Future[Done]:
         # Workers are begun in here, whenever there are too few of them.
@@ -62,7 +86,7 @@ class WorkerPool:
             try:
                 future: Future[Done] = self._executor.submit(_work, self._work, task)
             except BrokenProcessPool:
-                self._executor = self._open()
+                self._executor = self._anew()
                 future = self._executor.submit(_work, self._work, task)
         return future
 
@@ -87,6 +111,7 @@ class WorkerPool:
             # A second Ctrl-C: nothing is waited for.  Every task in hand is in the workers'
             # queue already, so that the executor ends without a complaint.
             self._executor.shutdown(wait=True, kill_workers=True)
+            _kept.clear()
             raise
 
     def _gathered(
@@ -106,11 +131,11 @@ class WorkerPool:
         return done + [self._alone(task) for task in lost]
 
     def _alone(self, task: Task) -> Done:
-        self._executor = self._open()
+        self._executor = self._anew()
         try:
             return self._submit(task).result()
         except BrokenProcessPool:
-            self._executor = self._open()
+            self._executor = self._anew()
             return Broken(task, DIED)
 
 

@@ -10,6 +10,7 @@ import sys
 import time
 from pathlib import Path
 
+import joblib
 import numpy as np
 import pandas as pd
 import pytest
@@ -52,6 +53,18 @@ def test_numbers_do_not_depend_on_jobs(tmp_path: Path, monkeypatch: pytest.Monke
     one = sweep.run(plan, store=tmp_path / "one.duckdb", jobs=1)
     two = sweep.run(plan, store=tmp_path / "two.duckdb", jobs=2)
     same(table(one), table(two))
+
+
+def test_joblib_of_the_session_is_left_as_it_was(
+    tmp_path: Path, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    """A run with workers neither takes joblib's own executor nor leaves it another."""
+    monkeypatch.setattr(waves, "INLINE_SECONDS", 0.0)
+    plan = small_plans.write_plan(tmp_path, AXES)
+    for number in range(2):
+        sweep.run(plan, store=tmp_path / f"{number}.duckdb", jobs=2)
+        squares = joblib.Parallel(n_jobs=2)(joblib.delayed(pow)(n, 2) for n in range(5))
+        assert squares == [0, 1, 4, 9, 16]
 
 
 def test_running_again_computes_nothing(tmp_path: Path) -> None:

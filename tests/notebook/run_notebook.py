@@ -20,8 +20,8 @@ LONGEST_CELL = 300
 
 # A kernel is ended from outside, so the workers of its runs would outlive it by minutes.
 END_WORKERS = """
-from joblib.externals.loky import get_reusable_executor
-get_reusable_executor().shutdown(wait=True)
+from sweep.engine.pool import end_workers
+end_workers()
 """
 
 
