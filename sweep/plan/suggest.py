@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterable
+from collections.abc import Iterable, Set
 from difflib import get_close_matches
 
 __all__ = ["suggestion"]
@@ -16,7 +16,8 @@ def suggestion(word: str, known: Iterable[str], *, list_all: int = 12) -> str:
     word : str
         What was written.
     known : iterable of str
-        What would have been understood.
+        What would have been understood; a set is put in order, so that a message is always
+        the same.
     list_all : int
         Longest list that is written out when nothing is close.
 
@@ -27,7 +28,7 @@ def suggestion(word: str, known: Iterable[str], *, list_all: int = 12) -> str:
     >>> suggestion("zebra", ["lags", "tests"])
     '; known: lags, tests'
     """
-    names = list(dict.fromkeys(known))
+    names = sorted(known) if isinstance(known, Set) else list(dict.fromkeys(known))
     close = get_close_matches(word, names, n=1, cutoff=0.6)
     if not close:
         lowered = {name.lower(): name for name in names}
