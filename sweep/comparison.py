@@ -193,7 +193,7 @@ def _gathered(
         drawn[name] = [(plain, p_values.describe(frames, names, statement))]
         counts = frames["counts"].iloc[0]
         changed = frames["changed"]
-        total = max(int(counts["verdict_changed"]), len(changed))
+        total = int(counts["changed"])
         laid[name] = [
             tables.survival_table(frames["survival"], names, name),
             tables.verdicts_table(frames["verdicts"], names, name),

@@ -16,6 +16,9 @@ SELECT
                      AND NOT their_survives) AS neither_survives,
     count(*) FILTER (my_admissible AND their_admissible AND my_verdict <> their_verdict)
         AS verdict_changed,
+    count(*) FILTER (my_admissible IS DISTINCT FROM their_admissible
+                     OR (my_admissible AND (my_survives <> their_survives
+                                            OR my_verdict <> their_verdict))) AS changed,
     -- Rounding aside: a changed value moves the last digits of windows that it is not in, because
     -- neighbouring windows are standardised together.
     count(*) FILTER (my_admissible AND their_admissible AND abs(my_p - their_p) <= 1e-9

@@ -86,6 +86,8 @@ def test_changed_rows_are_all_there_and_ordered(vintages: tuple[Results, Results
     expected = both[(both["admissible_my"] != both["admissible_their"]) | (good & unlike)]
     assert set(changed["specification"]) == set(expected["specification"])
     assert len(changed) == len(expected) > 0
+    # The count is of all of them, however many are listed.
+    assert mine.compare(theirs).frame("counts")["changed"].iloc[0] == len(expected)
     move = (np.log(changed["my_p"]) - np.log(changed["their_p"])).abs().dropna()
     assert (np.diff(move) <= 1e-9).all()
     row = changed.iloc[-1]
